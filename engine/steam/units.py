@@ -50,6 +50,10 @@ UNITS: dict[str, dict[str, tuple[float, float]]] = {
     "time": {"s": (1, 0), "min": (60, 0), "h": (3600, 0)},
     "rate": {"K/s": (1, 0), "K/min": (1 / 60, 0), "°F/min": (1 / 108, 0)},
     "density": {"kg/m³": (1, 0), "lb/ft³": (_LB / _FT**3, 0)},
+    "volume": {"m³": (1, 0), "L": (1e-3, 0), "in³": (_IN**3, 0), "ft³": (_FT**3, 0)},
+    "viscosity": {"Pa s": (1, 0), "µPa s": (1e-6, 0), "lb/(ft h)": (_LB / _FT / 3600, 0)},
+    "expansion": {"1/K": (1, 0), "1/°F": (1.8, 0)},
+    "heat capacity": {"J/K": (1, 0), "kJ/K": (1e3, 0), "Btu/°F": (_BTU * 1.8, 0)},
     "number": {"1": (1, 0)},
 }
 
@@ -142,14 +146,16 @@ _SI = {"pressure": ("bar", 3), "temperature": ("°C", 1), "difference": ("K", 1)
        "velocity": ("m/s", 1), "length": ("mm", 1), "area": ("mm²", 1), "mass": ("kg", 3),
        "mass flow": ("kg/h", 1), "mass flux": ("kg/(m² s)", 1), "power": ("W", 0), "conductance": ("W/K", 3),
        "conductivity": ("W/(m K)", 3), "film coefficient": ("W/(m² K)", 1), "time": ("min", 1),
-       "rate": ("K/min", 3), "density": ("kg/m³", 2), "number": ("1", 3)}
+       "rate": ("K/min", 3), "density": ("kg/m³", 2), "volume": ("L", 3), "viscosity": ("µPa s", 2),
+       "expansion": ("1/K", 6), "heat capacity": ("kJ/K", 2), "number": ("1", 3)}
 _US = {"pressure": ("psi", 2), "temperature": ("°F", 1), "difference": ("°F", 1), "fraction": ("1", 4),
        "enthalpy": ("Btu/lb", 1), "entropy": ("Btu/(lb °F)", 4), "specific volume": ("ft³/lb", 3),
        "velocity": ("ft/s", 1), "length": ("in", 3), "area": ("in²", 4), "mass": ("lb", 3),
        "mass flow": ("lb/h", 1), "mass flux": ("lb/(ft² s)", 2), "power": ("Btu/h", 0),
        "conductance": ("Btu/(h °F)", 3), "conductivity": ("Btu in/(h ft² °F)", 3),
        "film coefficient": ("Btu/(h ft² °F)", 2), "time": ("min", 1), "rate": ("°F/min", 3),
-       "density": ("lb/ft³", 3), "number": ("1", 3)}
+       "density": ("lb/ft³", 3), "volume": ("in³", 1), "viscosity": ("lb/(ft h)", 4),
+       "expansion": ("1/°F", 7), "heat capacity": ("Btu/°F", 3), "number": ("1", 3)}
 
 SI = UnitSystem("SI", _SI)
 US = UnitSystem("US", _US)
