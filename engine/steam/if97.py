@@ -1,0 +1,213 @@
+"""IAPWS-IF97 regions 1, 2 and 4 as plain array kernels: no range checks, no shapes, no errors.
+
+Each region's dimensionless Gibbs energy is a double power sum. Over a block of points the powers
+of both variables stand in two small tables; one matrix product with the coefficients and one
+weighted sum then give every derivative asked for. That costs ten or so NumPy calls whatever the
+number of terms, so a single state is cheap and a million are limited by arithmetic alone.
+
+Callers check ranges and phase first. The kernels are smooth a little beyond the regions' edges,
+which the iterations above them rely on.
+"""
+
+from __future__ import annotations
+
+import threading
+from collections.abc import Sequence
+
+import numpy as np
+
+from engine.steam import if97_tables as tab
+
+# Derivatives of the Gibbs energy, as (order in pi, order in tau)
+G, G_P, G_T, G_PP, G_PT, G_TT = (0, 0), (1, 0), (0, 1), (2, 0), (1, 1), (0, 2)
+
+
+# Columns of one matrix product. Larger ones are shared out over threads by the linear-algebra library,
+# whose waiting costs more than these small products take.
+_PRODUCT = 512
+_FEW = 48  # points up to which one slow pow() call is quicker than many fast products
+
+
+class _Scratch(threading.local):
+    """Per-thread work space that grows to the largest block seen: no page is asked for twice."""
+
+    def __init__(self):
+        self.rooms: dict[str, np.ndarray] = {}
+
+    def room(self, name: str, rows: int, columns: int) -> np.ndarray:
+        store = self.rooms.get(name)
+        if store is None or store.size < rows * columns:
+            store = self.rooms[name] = np.empty(rows * columns)
+        return store[:rows * columns].reshape(rows, columns)
+
+
+_scratch = _Scratch()
+
+
+def _powers(base: np.ndarray, exponents: np.ndarray, out: np.ndarray) -> None:
+    """Row k of ``out`` = base**exponents[k]: pow() for a few points, all powers by doubling for many."""
+    if base.size <= _FEW:
+        np.power(base, exponents[:, None], out=out)
+        return
+    rows = _scratch.room("powers", int(exponents.max()) + 1, base.size)
+    rows[0] = 1.0
+    filled, step = 1, base
+    while filled < len(rows):
+        take = min(filled, len(rows) - filled)
+        np.multiply(rows[:take], step, out=rows[filled:filled + take])
+        filled += take
+        step = step * step
+    np.take(rows, exponents, axis=0, out=out, mode="clip")
+
+
+class PowerSum:
+    """sum n * a**I * b**J and its derivatives over 1-d arrays a and b."""
+
+    def __init__(self, table: np.ndarray):
+        I, J, n = table[:, 0].astype(int), table[:, 1].astype(int), table[:, 2]  # noqa: E741 (the release's letters)
+        self.I, self.J = np.unique(I), np.unique(J)
+        self.negative, self.positive = -self.J[self.J < 0], self.J[self.J >= 0]
+        self.coefficients = np.zeros((self.I.size, self.J.size))
+        self.coefficients[np.searchsorted(self.I, I), np.searchsorted(self.J, J)] = n
+        self._matrices: dict[tuple[int, int], np.ndarray] = {}
+
+    def _matrix(self, order: tuple[int, int]) -> np.ndarray:
+        """Coefficients times the factors that a derivative brings down."""
+        if order not in self._matrices:
+            factor_I = np.prod([self.I - k for k in range(order[0])], axis=0) if order[0] else np.ones(self.I.size)
+            factor_J = np.prod([self.J - k for k in range(order[1])], axis=0) if order[1] else np.ones(self.J.size)
+            self._matrices[order] = self.coefficients * factor_I[:, None] * factor_J
+        return self._matrices[order]
+
+    def __call__(self, a: np.ndarray, b: np.ndarray, wanted: Sequence[tuple[int, int]]) -> list[np.ndarray]:
+        n = a.size
+        of_a, of_b = _scratch.room("of_a", self.I.size, n), _scratch.room("of_b", self.J.size, n)
+        _powers(a, self.I, of_a)
+        if self.negative.size:
+            _powers(1.0 / b, self.negative, of_b[:self.negative.size])
+        _powers(b, self.positive, of_b[self.negative.size:])
+        slab, results = _scratch.room("slab", self.I.size, n), []
+        for i, j in wanted:
+            matrix = self._matrix((i, j))
+            for start in range(0, n, _PRODUCT):
+                part = slice(start, start + _PRODUCT)
+                np.matmul(matrix, of_b[:, part], out=slab[:, part])
+            np.multiply(slab, of_a, out=slab)
+            total = slab.sum(axis=0)
+            results.append(total / (a**i * b**j) if i or j else total)
+        return results
+
+
+_REGION_1 = PowerSum(tab.REGION_1)
+_REGION_2 = PowerSum(tab.REGION_2_RESIDUAL)
+_IDEAL_2 = PowerSum(np.insert(tab.REGION_2_IDEAL, 0, 0, axis=1))
+
+
+def gibbs_1(p: np.ndarray, T: np.ndarray, wanted: Sequence[tuple[int, int]]) -> list[np.ndarray]:
+    """Region 1 (liquid), eq. (7): derivatives of g/(RT) with respect to pi and tau, 1-d arrays."""
+    a, b = tab.PI_SHIFT_1 - p / tab.P_STAR_1, tab.T_STAR_1 / T - tab.TAU_SHIFT_1
+    results = _REGION_1(a, b, tuple(wanted))
+    return [-r if order[0] == 1 else r for r, order in zip(results, wanted, strict=True)]  # d/dpi = -d/da
+
+
+def gibbs_2(p: np.ndarray, T: np.ndarray, wanted: Sequence[tuple[int, int]]) -> list[np.ndarray]:
+    """Region 2 (vapour), eqs. (15) to (17): derivatives of g/(RT), 1-d arrays."""
+    wanted = tuple(wanted)
+    pi, tau = p / tab.P_STAR_2, tab.T_STAR_2 / T
+    results = _REGION_2(pi, tau - tab.TAU_SHIFT_2, wanted)
+    ideal_orders = tuple(w for w in wanted if w[0] == 0)
+    ideal = dict(zip(ideal_orders, _IDEAL_2(pi, tau, ideal_orders), strict=True)) if ideal_orders else {}
+    pressure_part = {G: np.log, G_P: lambda z: 1.0 / z, G_PP: lambda z: -1.0 / (z * z)}
+    for k, order in enumerate(wanted):
+        if order in ideal:
+            results[k] += ideal[order]
+        if order in pressure_part:
+            results[k] += pressure_part[order](pi)
+    return results
+
+
+def _h(g_t, T, T_star):
+    return tab.R * T_star * g_t  # R T tau g_tau, and T tau = T*
+
+
+def enthalpy_1(p, T):
+    """h [J/kg] of liquid."""
+    return _h(gibbs_1(p, T, (G_T,))[0], T, tab.T_STAR_1)
+
+
+def enthalpy_2(p, T):
+    """h [J/kg] of vapour."""
+    return _h(gibbs_2(p, T, (G_T,))[0], T, tab.T_STAR_2)
+
+
+def _hsv(gibbs, p, T, p_star, T_star):
+    g, g_p, g_t = gibbs(p, T, (G, G_P, G_T))
+    return _h(g_t, T, T_star), tab.R * (T_star / T * g_t - g), tab.R * T / p_star * g_p
+
+
+def liquid_hsv(p, T):
+    """h [J/kg], s [J/(kg K)], v [m³/kg] of liquid (region 1)."""
+    return _hsv(gibbs_1, p, T, tab.P_STAR_1, tab.T_STAR_1)
+
+
+def vapour_hsv(p, T):
+    """h [J/kg], s [J/(kg K)], v [m³/kg] of vapour (region 2)."""
+    return _hsv(gibbs_2, p, T, tab.P_STAR_2, tab.T_STAR_2)
+
+
+def _all_properties(gibbs, p, T, p_star, T_star):
+    g, g_p, g_t, g_pp, g_pt, g_tt = gibbs(p, T, (G, G_P, G_T, G_PP, G_PT, G_TT))
+    tau = T_star / T
+    cp = -tab.R * tau * tau * g_tt
+    # Table 3: w² = R T g_p² / ((g_p - tau g_pt)² / (tau² g_tt) - g_pp)
+    w = np.sqrt(tab.R * T * g_p**2 / ((g_p - tau * g_pt) ** 2 / (tau * tau * g_tt) - g_pp))
+    return _h(g_t, T, T_star), tab.R * (tau * g_t - g), tab.R * T / p_star * g_p, cp, w
+
+
+def liquid_properties(p, T):
+    """h, s, v, cp [J/(kg K)] and sound speed [m/s] of liquid (region 1)."""
+    return _all_properties(gibbs_1, p, T, tab.P_STAR_1, tab.T_STAR_1)
+
+
+def vapour_properties(p, T):
+    """h, s, v, cp [J/(kg K)] and sound speed [m/s] of vapour (region 2)."""
+    return _all_properties(gibbs_2, p, T, tab.P_STAR_2, tab.T_STAR_2)
+
+
+def vapour_h_cp(p, T):
+    """h and cp of vapour: what a search for T at given h needs."""
+    g_t, g_tt = gibbs_2(p, T, (G_T, G_TT))
+    return _h(g_t, T, tab.T_STAR_2), -tab.R * (tab.T_STAR_2 / T) ** 2 * g_tt
+
+
+def vapour_s_cp(p, T):
+    """s and cp of vapour: what a search for T at given s needs."""
+    g, g_t, g_tt = gibbs_2(p, T, (G, G_T, G_TT))
+    tau = tab.T_STAR_2 / T
+    return tab.R * (tau * g_t - g), -tab.R * tau * tau * g_tt
+
+
+def vapour_h_v_slopes(p, T):
+    """h, v, (dh/dT)_p = cp and (dv/dT)_p of vapour: what a search along a constant-bore path needs."""
+    g_p, g_t, g_pt, g_tt = gibbs_2(p, T, (G_P, G_T, G_PT, G_TT))
+    tau = tab.T_STAR_2 / T
+    return (_h(g_t, T, tab.T_STAR_2), tab.R * T / tab.P_STAR_2 * g_p, -tab.R * tau * tau * g_tt,
+            tab.R / tab.P_STAR_2 * (g_p - tau * g_pt))
+
+
+def saturation_p(T):
+    """Saturation pressure [Pa], eq. (30)."""
+    n1, n2, n3, n4, n5, n6, n7, n8, n9, n10 = tab.SATURATION
+    theta = T + n9 / (T - n10)
+    A, B, C = (theta + n1) * theta + n2, (n3 * theta + n4) * theta + n5, (n6 * theta + n7) * theta + n8
+    ratio = 2 * C / (np.sqrt(B * B - 4 * A * C) - B)
+    return 1e6 * (ratio * ratio) ** 2
+
+
+def saturation_T(p):
+    """Saturation temperature [K], eq. (31)."""
+    n1, n2, n3, n4, n5, n6, n7, n8, n9, n10 = tab.SATURATION
+    beta = np.sqrt(np.sqrt(p * 1e-6))
+    E, F, G_ = (beta + n3) * beta + n6, (n1 * beta + n4) * beta + n7, (n2 * beta + n5) * beta + n8
+    D = 2 * G_ / (-F - np.sqrt(F * F - 4 * E * G_)) + n10
+    return 0.5 * (D - np.sqrt(D * D - 4 * (n9 + n10 * (D - n10))))
