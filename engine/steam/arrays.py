@@ -44,16 +44,23 @@ def give_back(array: np.ndarray, scalar: bool):
 
 
 def in_blocks(kernel: Callable[..., tuple], outputs: int, *arrays: np.ndarray) -> list[np.ndarray]:
-    """Evaluate ``kernel`` over equally shaped arrays, a cache-sized block at a time."""
+    """Evaluate ``kernel`` over equally shaped arrays, a cache-sized block at a time.
+
+    A single value broadcast to the whole shape is never spelled out beyond one block, so memory
+    stays at the inputs, the outputs and a few blocks.
+    """
     shape, size = arrays[0].shape, arrays[0].size
-    flat = [np.ascontiguousarray(a).ravel() for a in arrays]
     if size <= BLOCK:
-        return [np.reshape(r, shape) for r in kernel(*flat)]
+        return [np.reshape(r, shape) for r in kernel(*(np.ascontiguousarray(a).ravel() for a in arrays))]
+    constant = [not any(a.strides) for a in arrays]
+    flat = [np.full(BLOCK, a[(0,) * a.ndim]) if c else np.ascontiguousarray(a).ravel()
+            for a, c in zip(arrays, constant, strict=True)]
     results = [np.empty(size) for _ in range(outputs)]
     for start in range(0, size, BLOCK):
-        part = slice(start, start + BLOCK)
-        for result, values in zip(results, kernel(*(a[part] for a in flat)), strict=True):
-            result[part] = values
+        part, head = slice(start, start + BLOCK), slice(min(BLOCK, size - start))
+        values = kernel(*(a[head] if c else a[part] for a, c in zip(flat, constant, strict=True)))
+        for result, value in zip(results, values, strict=True):
+            result[part] = value
     return [r.reshape(shape) for r in results]
 
 

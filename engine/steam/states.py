@@ -116,6 +116,11 @@ def search_T(p: np.ndarray, target: np.ndarray, T: np.ndarray, kernel: Callable,
     return T
 
 
+def search_T_ph(p: np.ndarray, h: np.ndarray, T: np.ndarray) -> np.ndarray:
+    """Vapour temperature at which the enthalpy is ``h`` (1-d arrays), searched upwards from ``T``."""
+    return search_T(p, h, T, if97.vapour_h_cp, lambda cp, T: cp)
+
+
 def state_kernel(p: np.ndarray, target: np.ndarray, column: int, kernel: Callable, slope: Callable):
     """T, x, h, s, v over 1-d arrays in range; T > T_MAX and x < 0 mark elements without a state."""
     sat = saturated_kernel(p)

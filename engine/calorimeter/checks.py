@@ -1,0 +1,101 @@
+"""The door of the throttling functions: one table of limits, a status per element, one refusal."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from typing import NamedTuple
+
+import numpy as np
+
+from engine.calorimeter.status import Status
+from engine.steam import P_SAT_MAX, P_TRIPLE, T_MAX
+from engine.steam.arrays import at_the_door, in_blocks, refuse_outside
+from engine.steam.errors import InputError
+from engine.steam.saturation import p_in_range
+
+T_LEAST = 273.15  # K: colder readings are no steam readings
+
+Named = dict[str, np.ndarray]
+
+
+class Limit(NamedTuple):
+    """``inside`` sees all the inputs, so that one may be compared with another; NaN must fail it."""
+
+    inside: Callable[[Named], np.ndarray]
+    allowed: str
+    why: str = ""
+    hint: str = ""
+    harmless: float = 0.0  # stands in for an unusable value while the rest of an array is evaluated
+
+
+def _between(name: str, low: float, high: float) -> Callable[[Named], np.ndarray]:
+    return lambda a: (a[name] >= low) & (a[name] <= high)
+
+
+_PRESSURES = f"{P_TRIPLE:g} Pa to {P_SAT_MAX / 1e6:.5g} MPa absolute"
+_SPEED = "the energy balance needs it"
+
+LIMITS: dict[str, Limit] = {
+    "p_line": Limit(lambda a: p_in_range(a["p_line"]), _PRESSURES, "the saturation properties used here end there",
+                    "check the unit, and gauge or absolute", 1e6),
+    "p_exhaust": Limit(lambda a: p_in_range(a["p_exhaust"]) & (a["p_exhaust"] < a["p_line"]),
+                       f"{_PRESSURES}, and less than the line pressure",
+                       "steam only flows and expands towards a lower pressure",
+                       "check the unit, and that both pressures are meant absolute", 1e5),
+    "T_exhaust": Limit(_between("T_exhaust", T_LEAST, T_MAX), f"{T_LEAST} to {T_MAX} K",
+                       "the steam equations hold there", "check the unit: °C or °F", 400.0),
+    "x": Limit(_between("x", 0.0, 1.0), "0 to 1", "it is the share of vapour in the mass",
+               "give a fraction, not a percentage", 1.0),
+    "heat_loss": Limit(_between("heat_loss", -1e7, 1e7), "a loss within ±10 MJ/kg", _SPEED,
+                       "give it per kg of sample; negative where heat is gained"),
+    "line_velocity": Limit(_between("line_velocity", 0.0, 1e4), "0 to 10 000 m/s", _SPEED),
+    "exhaust_velocity": Limit(_between("exhaust_velocity", 0.0, 1e4), "0 to 10 000 m/s", _SPEED),
+    "recovery": Limit(_between("recovery", 0.0, 1.0), "0 to 1",
+                      "a probe takes up between none and all of the kinetic energy"),
+    "least_superheat": Limit(_between("least_superheat", 0.0, 500.0), "0 to 500 K",
+                             "it is a difference above saturation", "give it in kelvin"),
+}
+
+
+def refuse(inputs: Named) -> None:
+    """Raise InputError for every element outside its limits, all inputs at once."""
+    faults = []
+    for name, values in inputs.items():
+        limit = LIMITS[name]
+        faults += refuse_outside(name, values, limit.inside(inputs), limit.allowed, why=limit.why, hint=limit.hint)
+    if faults:
+        raise InputError(*faults)
+
+
+def door(**inputs) -> tuple[Named, bool]:
+    """Named arrays of one shape, and whether the call was scalar."""
+    arrays, scalar = at_the_door(**inputs)
+    return dict(zip(inputs, arrays, strict=True)), scalar
+
+
+def with_status(kernel: Callable[..., tuple], outputs: int, **inputs):
+    """Run ``kernel(a, usable, missing)`` over the inputs in blocks; its last output is the status.
+
+    Unusable elements reach the kernel with harmless values. Arrays come back with an int8 status
+    beside them; a scalar call gives floats and a Status, or raises InputError.
+    """
+    named, scalar = door(**inputs)
+
+    def block(*values):
+        a = dict(zip(named, values, strict=True))
+        inside = {name: LIMITS[name].inside(a) for name in a}
+        usable = np.logical_and.reduce(list(inside.values()))
+        missing = np.logical_or.reduce([np.isnan(v) for v in a.values()])
+        if not usable.all():
+            a = {name: np.where(usable, v, LIMITS[name].harmless) for name, v in a.items()}
+        return kernel(a, usable, missing)
+
+    *values, status = in_blocks(block, outputs, *named.values())
+    if not scalar:
+        return values, status.astype(np.int8)
+    if int(status) >= Status.OUT_OF_RANGE:
+        refuse(named)
+        raise InputError(*refuse_outside("h", np.array(np.nan), np.array(False), "an enthalpy that steam can have",
+                                         why="the terms of the energy balance lead outside wet and superheated steam",
+                                         hint="check the heat loss and the velocities"))
+    return [float(v) for v in values], Status(int(status))
