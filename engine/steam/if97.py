@@ -44,20 +44,34 @@ class _Scratch(threading.local):
 _scratch = _Scratch()
 
 
-def _powers(base: np.ndarray, exponents: np.ndarray, out: np.ndarray) -> None:
-    """Row k of ``out`` = base**exponents[k]: pow() for a few points, all powers by doubling for many."""
-    if base.size <= _FEW:
-        np.power(base, exponents[:, None], out=out)
-        return
-    rows = _scratch.room("powers", int(exponents.max()) + 1, base.size)
-    rows[0] = 1.0
-    filled, step = 1, base
-    while filled < len(rows):
-        take = min(filled, len(rows) - filled)
-        np.multiply(rows[:take], step, out=rows[filled:filled + take])
-        filled += take
-        step = step * step
-    np.take(rows, exponents, axis=0, out=out, mode="clip")
+class Powers:
+    """base**e for a fixed set of exponents >= 0, each the product of two others already there."""
+
+    def __init__(self, wanted: Sequence[int]):
+        self.exponents = [0, 1]
+        self._factors: list[tuple[int, int]] = []
+        for exponent in sorted(wanted):
+            self._reach(int(exponent))
+
+    def _reach(self, exponent: int) -> None:
+        if exponent in self.exponents:
+            return
+        pair = next((a for a in self.exponents if exponent - a in self.exponents), None)
+        if pair is None:  # go by way of an exponent that nobody asked for
+            self._reach(exponent // 2)
+            pair = exponent // 2
+            self._reach(exponent - pair)
+        self._factors.append((self.exponents.index(pair), self.exponents.index(exponent - pair)))
+        self.exponents.append(exponent)
+
+    def __call__(self, base: np.ndarray, rows: np.ndarray) -> None:
+        """Fill row k with base**exponents[k]: pow() for a few points, one product a row for many."""
+        if base.size <= _FEW:
+            np.power(base, np.array(self.exponents)[:, None], out=rows)
+            return
+        rows[0], rows[1] = 1.0, base
+        for k, (i, j) in enumerate(self._factors, start=2):
+            np.multiply(rows[i], rows[j], out=rows[k])
 
 
 class PowerSum:
@@ -65,10 +79,14 @@ class PowerSum:
 
     def __init__(self, table: np.ndarray):
         I, J, n = table[:, 0].astype(int), table[:, 1].astype(int), table[:, 2]  # noqa: E741 (the release's letters)
-        self.I, self.J = np.unique(I), np.unique(J)
-        self.negative, self.positive = -self.J[self.J < 0], self.J[self.J >= 0]
+        self.of_a, self.of_b, self.of_inverse_b = Powers(I), Powers(J[J >= 0]), Powers(-J[J < 0])
+        self.below = len(self.of_inverse_b.exponents) if (J < 0).any() else 0
+        self.I = np.array(self.of_a.exponents)
+        self.J = np.array([-e for e in self.of_inverse_b.exponents[:self.below]] + self.of_b.exponents)
         self.coefficients = np.zeros((self.I.size, self.J.size))
-        self.coefficients[np.searchsorted(self.I, I), np.searchsorted(self.J, J)] = n
+        rows, columns = self.I.tolist(), self.J.tolist()
+        for i, j, coefficient in zip(I, J, n, strict=True):
+            self.coefficients[rows.index(i), columns.index(j)] = coefficient
         self._matrices: dict[tuple[int, int], np.ndarray] = {}
 
     def _matrix(self, order: tuple[int, int]) -> np.ndarray:
@@ -82,10 +100,10 @@ class PowerSum:
     def __call__(self, a: np.ndarray, b: np.ndarray, wanted: Sequence[tuple[int, int]]) -> list[np.ndarray]:
         n = a.size
         of_a, of_b = _scratch.room("of_a", self.I.size, n), _scratch.room("of_b", self.J.size, n)
-        _powers(a, self.I, of_a)
-        if self.negative.size:
-            _powers(1.0 / b, self.negative, of_b[:self.negative.size])
-        _powers(b, self.positive, of_b[self.negative.size:])
+        self.of_a(a, of_a)
+        if self.below:
+            self.of_inverse_b(1.0 / b, of_b[:self.below])
+        self.of_b(b, of_b[self.below:])
         slab, results = _scratch.room("slab", self.I.size, n), []
         for i, j in wanted:
             matrix = self._matrix((i, j))
