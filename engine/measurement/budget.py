@@ -15,7 +15,7 @@ from math import floor, inf, log10, sqrt
 from typing import NamedTuple
 
 import numpy as np
-from scipy.special import ndtri, stdtrit
+from scipy.special import stdtrit
 
 from engine.measurement.inputs import Component, Input
 from engine.measurement.sources import Correlations, Model, evaluate, gather, linked
@@ -165,8 +165,7 @@ def coverage_factor(coverage: float, dof: float = inf) -> float:
     2.23
     """
     _check_coverage(coverage)
-    upper = (1 + coverage) / 2
-    return float(ndtri(upper) if dof > 1e9 else stdtrit(dof, upper))
+    return float(stdtrit(dof, (1 + coverage) / 2))
 
 
 def numerical_tolerance(u: float, digits: int = 2) -> float:
