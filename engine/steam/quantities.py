@@ -39,6 +39,8 @@ _ROWS = (
     ("h_line", "h₁", "enthalpy", "J/kg", "specific enthalpy in the line"),
     ("s", "s", "entropy", "J/(kg K)", "specific entropy"),
     ("v", "v", "specific volume", "m³/kg", "specific volume"),
+    ("v_line", "v₁", "specific volume", "m³/kg", "specific volume in the line"),
+    ("v_exhaust", "v₂", "specific volume", "m³/kg", "specific volume at the exhaust"),
     ("cp", "c_p", "entropy", "J/(kg K)", "specific heat capacity"),
     ("sound_speed", "w", "velocity", "m/s", "sound speed"),
     ("velocity", "c", "velocity", "m/s", "velocity"),
@@ -50,6 +52,7 @@ _ROWS = (
     ("mass_flux", "G", "mass flux", "kg/(m² s)", "mass flux"),
     ("heat_loss", "q", "enthalpy", "J/kg", "heat loss per kg of sample"),
     ("kinetic_energy", "c²/2", "enthalpy", "J/kg", "kinetic energy"),
+    ("kinetic_error", "δx_k", "fraction", "1", "kinetic error of the quality"),
     ("recovery", "r", "fraction", "1", "recovery factor"),
     # the rig: pressure and temperature readings
     ("altitude", "z", "length", "m", "altitude"),
@@ -106,6 +109,8 @@ _ROWS = (
     ("aspiration", "A", "number", "1", "aspiration efficiency"),
     ("wall_film", "f_w", "fraction", "1", "part of the water running on the wall"),
     ("wetness_read", "y_r", "fraction", "1", "wetness as sampled"),
+    # the log of readings
+    ("condensate", "M_c", "mass", "kg", "condensate mass"),
     # the rig: heat
     ("conductance", "UA", "conductance", "W/K", "heat loss conductance"),
     ("lagging", "s", "length", "m", "lagging thickness"),

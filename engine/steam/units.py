@@ -30,7 +30,8 @@ _BTU = 1055.05585262  # J, International Table
 # kind -> unit -> (scale, offset): SI value = value * scale + offset. The first is the engine's own.
 UNITS: dict[str, dict[str, tuple[float, float]]] = {
     "pressure": {"Pa": (1, 0), "kPa": (1e3, 0), "mbar": (100, 0), "bar": (1e5, 0), "MPa": (1e6, 0),
-                 "psi": (_PSI, 0), "inHg": (3386.389, 0), "mmHg": (133.322387415, 0), "kgf/cm²": (98066.5, 0)},
+                 "psi": (_PSI, 0), "inHg": (3386.389, 0), "mmHg": (133.322387415, 0), "kgf/cm²": (98066.5, 0),
+                 "mmH2O": (G_STANDARD, 0), "inH2O": (249.0889, 0)},  # conventional columns of water, SP 811
     "temperature": {"K": (1, 0), "°C": (1, ZERO_CELSIUS), "°F": (1 / 1.8, ZERO_CELSIUS - 32 / 1.8)},
     "difference": {"K": (1, 0), "°C": (1, 0), "°F": (1 / 1.8, 0)},
     "fraction": {"1": (1, 0), "%": (0.01, 0), "%pt": (0.01, 0)},
@@ -41,7 +42,8 @@ UNITS: dict[str, dict[str, tuple[float, float]]] = {
     "length": {"m": (1, 0), "mm": (1e-3, 0), "µm": (1e-6, 0), "in": (_IN, 0), "ft": (_FT, 0)},
     "area": {"m²": (1, 0), "mm²": (1e-6, 0), "in²": (_IN**2, 0)},
     "mass": {"kg": (1, 0), "g": (1e-3, 0), "lb": (_LB, 0)},
-    "mass flow": {"kg/s": (1, 0), "kg/h": (1 / 3600, 0), "t/h": (1000 / 3600, 0), "lb/h": (_LB / 3600, 0)},
+    "mass flow": {"kg/s": (1, 0), "kg/h": (1 / 3600, 0), "t/h": (1000 / 3600, 0), "lb/h": (_LB / 3600, 0),
+                  "kg/min": (1 / 60, 0), "g/s": (1e-3, 0)},
     "mass flux": {"kg/(m² s)": (1, 0), "lb/(ft² s)": (_LB / _FT**2, 0)},
     "power": {"W": (1, 0), "kW": (1e3, 0), "Btu/h": (_BTU / 3600, 0)},
     "conductance": {"W/K": (1, 0), "Btu/(h °F)": (_BTU / 3600 * 1.8, 0)},
