@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
@@ -90,6 +91,10 @@ _BY_NAME: dict[str, Limits] = {
     "recovery": Limits(0.0, 1.0),
     "water_mass": Limits(0.0, hint="0 when nothing was drained"),
     "water_volume": _NOT_NEGATIVE,
+    "superheat": Limits(0.0, 500.0, hint="a difference above saturation, in kelvin"),
+    "least_superheat": Limits(0.0, 500.0, hint="a difference above saturation, in kelvin"),
+    "power": _POSITIVE,
+    "power_loss": _NOT_NEGATIVE,
     "mach": _NOT_NEGATIVE,
 }
 
@@ -125,6 +130,19 @@ def admit(**named) -> tuple[list[np.ndarray], bool]:
 def require(name: str, values: np.ndarray, inside: np.ndarray, limit: str, *, why: str = "", hint: str = "") -> None:
     """InputError for the elements of ``values`` that are not ``inside``: a limit set by the other inputs."""
     faults = refuse_outside(name, values, inside, limit, why=why, hint=hint)
+    if faults:
+        raise InputError(*faults)
+
+
+def gather(*checks: Callable[[], object]) -> None:
+    """Run all the checks and raise one InputError for all they find, each quantity named once."""
+    faults: list[Fault] = []
+    for check in checks:
+        try:
+            check()
+        except InputError as error:
+            told = {fault.name for fault in faults}
+            faults += [fault for fault in error.faults if fault.name not in told]
     if faults:
         raise InputError(*faults)
 

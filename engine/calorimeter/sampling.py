@@ -19,6 +19,7 @@ import numpy as np
 
 from engine.calorimeter.friction import steam_viscosity
 from engine.calorimeter.rig_inputs import admit, require
+from engine.calorimeter.wet import wet_steam
 from engine.steam import saturated
 from engine.steam.arrays import give_back
 
@@ -45,17 +46,6 @@ def pipe_area(pipe_bore):
     return give_back(np.pi / 4 * D * D, scalar)
 
 
-def wet_volume(p_line, x):
-    """Specific volume of wet steam [m³/kg], homogeneous: v_f + x (v_g - v_f).
-
-    >>> wet_volume(1e6, 0.98)
-    0.1905
-    """
-    (p, x), scalar = admit(p_line=p_line, x=x)
-    sat = saturated(p)
-    return give_back(np.asarray(sat.v_f + x * (sat.v_g - sat.v_f)), scalar)
-
-
 def pipe_velocity(line_flow, pipe_bore, p_line, x):
     """Velocity of wet steam in a pipe [m/s]: flow times specific volume over area.
 
@@ -67,7 +57,7 @@ def pipe_velocity(line_flow, pipe_bore, p_line, x):
     22.7
     """
     (m, D, p, x), scalar = admit(line_flow=line_flow, pipe_bore=pipe_bore, p_line=p_line, x=x)
-    return give_back(m * np.asarray(wet_volume(p, x)) / (np.pi / 4 * D * D), scalar)
+    return give_back(m * np.asarray(wet_steam(p, x).v) / (np.pi / 4 * D * D), scalar)
 
 
 def isokinetic_port_area(sample_flow, line_flow, pipe_bore):
@@ -166,7 +156,7 @@ def sample_bias(wetness, p_line, line_flow, pipe_bore, sample_flow, port_area, p
     (y, p, m_line, D, m, A, D_port, d, f), scalar = admit(
         wetness=wetness, p_line=p_line, line_flow=line_flow, pipe_bore=pipe_bore, sample_flow=sample_flow,
         port_area=port_area, port_bore=port_bore, drop_diameter=drop_diameter, wall_film=wall_film)
-    v = np.asarray(wet_volume(p, 1 - y))
+    v = np.asarray(wet_steam(p, 1 - y).v)
     line, port = m_line * v / (np.pi / 4 * D * D), m * v / A
     ratio = line / port
     stokes = np.asarray(stokes_number(d, line, D_port, p))

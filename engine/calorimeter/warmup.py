@@ -120,8 +120,8 @@ def body_temperature(run: WarmUp, time):
 
     >>> run = warm_up(1470.0, 0.04, 25 / 3600, 101_325.0, 423.15, 293.15, 293.15)
     >>> import numpy as np
-    >>> body_temperature(run, np.array([0.0, 10.0, 600.0, 3600.0])) - 273.15
-    array([ 20.0,  80.6, 136.9, 149.99])
+    >>> (body_temperature(run, np.array([0.0, 10.0, 600.0, 3600.0])) - 273.15).tolist()
+    [20.0, 80.6, 136.9, 149.99]
     """
     (time, _), scalar = _with_run(run, time)
     T = np.zeros_like(time)
