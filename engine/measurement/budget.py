@@ -28,7 +28,7 @@ _STENCIL = np.array([1.0, -1.0, 2.0, -2.0])
 _WEIGHTS = np.array([8.0, -8.0, -1.0, 1.0]) / 12.0
 
 
-class Row(NamedTuple):
+class BudgetRow(NamedTuple):
     """One cause in the budget.
 
     ``u`` is in the unit of the quantity (of the first, if it reaches several), ``c`` the result's
@@ -78,7 +78,7 @@ class Budget:
     coverage: float
     k: float
     U: float
-    rows: tuple[Row, ...]
+    rows: tuple[BudgetRow, ...]
     sensitivity: dict[str, float]
     correlation: np.ndarray
 
@@ -141,7 +141,7 @@ def uncertainty_budget(model: Model, inputs: Sequence[Input], *, on_result: Sequ
     size = np.abs(sources.spread).max(axis=0, initial=0.0)
     per_unit = np.array([sensitivity.get(q[0], 1.0) for q in sources.quantities])  # stands where u is zero
     np.divide(contribution, size, out=per_unit, where=size > 0)
-    rows = [Row(label, group, quantities, c.distribution, c.dof, float(u), float(slope), float(part), 0.0)
+    rows = [BudgetRow(label, group, quantities, c.distribution, c.dof, float(u), float(slope), float(part), 0.0)
             for label, group, quantities, c, u, slope, part in zip(
                 sources.labels, sources.groups, sources.quantities, sources.components, size, per_unit, contribution,
                 strict=True)]
@@ -208,7 +208,7 @@ def _differences(model: Model, inputs: Sequence[Input], u: np.ndarray) -> tuple[
     return float(y[0]), (around - y[0]) @ _WEIGHTS / step
 
 
-def _combine(value: float, rows: Sequence[Row], correlation: np.ndarray, coverage: float,
+def _combine(value: float, rows: Sequence[BudgetRow], correlation: np.ndarray, coverage: float,
              sensitivity: dict[str, float]) -> Budget:
     part = np.array([row.contribution for row in rows], dtype=float)
     variances = part * (correlation @ part)

@@ -64,7 +64,7 @@ class MonteCarlo:
         return float(max(up_to - below, 0.0))
 
 
-class Reason(NamedTuple):
+class Difference(NamedTuple):
     """Why the two methods part: a ``code``, how much (its meaning depends on the code), and a sentence."""
 
     code: str
@@ -84,7 +84,7 @@ class Comparison(NamedTuple):
     off_lower: float
     off_upper: float
     tolerance: float
-    reasons: tuple[Reason, ...]
+    reasons: tuple[Difference, ...]
 
     @property
     def sentence(self) -> str:
@@ -156,27 +156,27 @@ def compare(budget: Budget, drawn: MonteCarlo, *, digits: int = 2) -> Comparison
     reasons = list(_reasons(budget, drawn, agree))
     if not agree and not reasons:
         change = drawn.u / budget.u - 1 if budget.u else np.inf
-        reasons.append(Reason("spread", change, f"the standard uncertainties differ by {change:+.1%}"))
+        reasons.append(Difference("spread", change, f"the standard uncertainties differ by {change:+.1%}"))
     return Comparison(agree, low, high, tolerance, tuple(reasons))
 
 
 def _reasons(budget: Budget, drawn: MonteCarlo, agree: bool):
     if drawn.unusable > 0:
-        yield Reason("unusable", drawn.unusable,
+        yield Difference("unusable", drawn.unusable,
                      f"{drawn.unusable:.2%} of the draws have no result, so the reading lies near an edge that the "
                      "budget does not see")
     if agree:
         return
     moved = (drawn.value - budget.value) / drawn.u if drawn.u else 0.0
     if abs(moved) > 0.02 or abs(drawn.skewness) > 0.1:
-        yield Reason("curved", moved, "the result does not change in proportion to the inputs within their "
+        yield Difference("curved", moved, "the result does not change in proportion to the inputs within their "
                      f"uncertainties (mean moved by {moved:+.2f} u, skewness {drawn.skewness:+.2f}), which Monte Carlo "
                      "follows and the budget does not")
     elif drawn.kurtosis < 2.85:
-        yield Reason("flat", drawn.kurtosis, "limits without a known distribution dominate, so the true interval is "
+        yield Difference("flat", drawn.kurtosis, "limits without a known distribution dominate, so the true interval is "
                      f"narrower than k u (kurtosis {drawn.kurtosis:.2f}, normal 3)")
     if drawn.kurtosis > 3.2 and budget.dof < 100:
-        yield Reason("tails", budget.dof, f"few readings stand behind the uncertainty ({budget.dof:.0f} effective "
+        yield Difference("tails", budget.dof, f"few readings stand behind the uncertainty ({budget.dof:.0f} effective "
                      "degrees of freedom), which draws treat as long tails and the budget as a larger k")
 
 
