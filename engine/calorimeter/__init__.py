@@ -13,6 +13,7 @@ from engine.calorimeter.atmosphere import (
 from engine.calorimeter.electric import HeaterReading, electric_quality, heater_reading, power_needed
 from engine.calorimeter.exhaust import ExhaustPipe, exhaust_pipe, exhaust_velocity
 from engine.calorimeter.friction import FITTINGS, STEEL_ROUGHNESS, fittings_loss, friction_factor, steam_viscosity
+from engine.calorimeter.flux import CriticalFlow, critical_flow, critical_mass_flux
 from engine.calorimeter.heatloss import (
     LAGGING_CONDUCTIVITY,
     OUTER_FILMS,
@@ -43,6 +44,7 @@ from engine.calorimeter.orifice import (
     rateau_mass_flux,
     weighed_flow,
 )
+from engine.calorimeter.paths import Path, constant_bore_path, isenthalpic_path
 from engine.calorimeter.sampling import (
     SampleBias,
     aspiration_efficiency,
@@ -66,6 +68,7 @@ from engine.calorimeter.separating import (
     separated_quality,
     separated_reading,
 )
+from engine.calorimeter.status import SENTENCES, Status, reasons
 from engine.calorimeter.thermometer import (
     RECOVERY_FACTORS,
     STEM_COEFFICIENTS,
@@ -82,6 +85,16 @@ from engine.calorimeter.thermometer import (
     radiation_error,
     settling_time,
     stem_error,
+)
+from engine.calorimeter.throttle import Exhaust, Quality, exhaust_temperature, least_quality, quality
+from engine.calorimeter.velocity import (
+    bore_ratio_keeping_velocity,
+    kinetic_energy,
+    kinetic_quality,
+    kinetic_superheat,
+    least_exhaust_bore,
+    velocity,
+    velocity_ratio,
 )
 from engine.calorimeter.warmup import (
     Stage,
@@ -115,4 +128,10 @@ __all__ = [  # the rig
     "steam_used", "steam_viscosity", "stem_error", "stokes_number", "storage_heat", "tapping_pressure",
     "time_to_within", "warm_up", "water_leg", "weighed_flow", "wet_steam", "wetness_by_normal_reading",
     "wetness_in_line", "wetness_sampled",
+]
+__all__ += [  # throttling
+    "CriticalFlow", "Exhaust", "Path", "Quality", "SENTENCES", "Status", "bore_ratio_keeping_velocity",
+    "constant_bore_path", "critical_flow", "critical_mass_flux", "exhaust_temperature", "isenthalpic_path",
+    "kinetic_energy", "kinetic_quality", "kinetic_superheat", "least_exhaust_bore", "least_quality", "quality",
+    "reasons", "velocity", "velocity_ratio",
 ]

@@ -52,6 +52,7 @@ class Powers:
         self._factors: list[tuple[int, int]] = []
         for exponent in sorted(wanted):
             self._reach(int(exponent))
+        self._column = np.array(self.exponents)[:, None]
 
     def _reach(self, exponent: int) -> None:
         if exponent in self.exponents:
@@ -67,7 +68,7 @@ class Powers:
     def __call__(self, base: np.ndarray, rows: np.ndarray) -> None:
         """Fill row k with base**exponents[k]: pow() for a few points, one product a row for many."""
         if base.size <= _FEW:
-            np.power(base, np.array(self.exponents)[:, None], out=rows)
+            np.power(base, self._column, out=rows)
             return
         rows[0], rows[1] = 1.0, base
         for k, (i, j) in enumerate(self._factors, start=2):
@@ -118,7 +119,29 @@ class PowerSum:
 
 _REGION_1 = PowerSum(tab.REGION_1)
 _REGION_2 = PowerSum(tab.REGION_2_RESIDUAL)
-_IDEAL_2 = PowerSum(np.insert(tab.REGION_2_IDEAL, 0, 0, axis=1))
+
+
+def _ideal_polynomials(orders: int) -> list[tuple[int, np.ndarray]]:
+    """For each order of derivative in tau: the lowest exponent, and coefficients from the highest down."""
+    J, n = tab.REGION_2_IDEAL[np.argsort(-tab.REGION_2_IDEAL[:, 0])].T
+    polynomials = []
+    for order in range(orders):
+        polynomials.append((int(J.min()) - order, n))
+        n = n * (J - order)
+    return polynomials
+
+
+_IDEAL_2 = _ideal_polynomials(3)
+
+
+def _ideal(tau: np.ndarray, order: int) -> np.ndarray:
+    """Ideal-gas part of region 2 without ln pi, derived ``order`` times: the exponents have no gaps."""
+    lowest, coefficients = _IDEAL_2[order]
+    total = np.full(tau.shape, coefficients[0])
+    for coefficient in coefficients[1:]:
+        total *= tau
+        total += coefficient
+    return total / tau ** -lowest
 
 
 def gibbs_1(p: np.ndarray, T: np.ndarray, wanted: Sequence[tuple[int, int]]) -> list[np.ndarray]:
@@ -133,12 +156,10 @@ def gibbs_2(p: np.ndarray, T: np.ndarray, wanted: Sequence[tuple[int, int]]) -> 
     wanted = tuple(wanted)
     pi, tau = p / tab.P_STAR_2, tab.T_STAR_2 / T
     results = _REGION_2(pi, tau - tab.TAU_SHIFT_2, wanted)
-    ideal_orders = tuple(w for w in wanted if w[0] == 0)
-    ideal = dict(zip(ideal_orders, _IDEAL_2(pi, tau, ideal_orders), strict=True)) if ideal_orders else {}
     pressure_part = {G: np.log, G_P: lambda z: 1.0 / z, G_PP: lambda z: -1.0 / (z * z)}
     for k, order in enumerate(wanted):
-        if order in ideal:
-            results[k] += ideal[order]
+        if order[0] == 0:
+            results[k] += _ideal(tau, order[1])
         if order in pressure_part:
             results[k] += pressure_part[order](pi)
     return results
