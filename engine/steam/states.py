@@ -2,7 +2,7 @@
 
 The phase is always decided by comparing with the saturated states of the forward equations; the
 temperature of superheated steam is then searched on those same equations, so that a state found
-from (p, h) gives back exactly that h.
+from (p, h) gives back that h.
 """
 
 from __future__ import annotations
@@ -15,13 +15,16 @@ import numpy as np
 from engine.steam import if97
 from engine.steam.arrays import at_the_door, fault, in_blocks, refuse_outside
 from engine.steam.errors import InputError
-from engine.steam.saturation import p_in_range, refuse_p, saturated_kernel
+from engine.steam.quantities import QUANTITIES
+from engine.steam.saturation import p_in_range, refuse_p, saturated, saturated_kernel
 from engine.steam.status import SteamStatus
 
 T_MAX = 1073.15  # K, upper limit of region 2
 # A reading typed as the saturation temperature itself must count as saturated: one part in 1e12 is
 # the rounding of eq. (31), far below anything a thermometer can tell.
 _ROUNDING = 1e-12
+LAST_STEP = 3e-3  # K
+_T_CEILING = T_MAX + 1e-9  # the same, with room for the rounding of a temperature that was searched
 
 
 class Vapour(NamedTuple):
@@ -57,19 +60,29 @@ def vapour(p, T) -> Vapour:
     2549911.45
     """
     (p, T), scalar = at_the_door(p=p, T=T)
-    p_ok = p_in_range(p)
-    T_sat = in_blocks(lambda a: (if97.saturation_T(a),), 1, np.where(p_ok, p, 1e5))[0]
-    T_ok, above = (T > 0) & (T <= T_MAX + 1e-9), T_sat * (1 - _ROUNDING) <= T
-    usable = p_ok & T_ok & above
-    if scalar and not usable.all():
-        faults = refuse_p(p) + refuse_outside("T", T, T_ok, f"at most {T_MAX} K", why="the vapour equations end there")
-        raise InputError(*faults or [_below_saturation(float(T), float(T_sat))])
-    values = in_blocks(if97.vapour_properties, 5, np.where(usable, p, 1e5), np.where(usable, T, 400.0))
-    if scalar:
-        return Vapour(*(float(v) for v in values))
-    status = np.select([np.isnan(p) | np.isnan(T), ~(p_ok & T_ok), ~above],
-                       [SteamStatus.MISSING, SteamStatus.OUT_OF_RANGE, SteamStatus.LIQUID], SteamStatus.SUPERHEATED)
-    return Vapour(*(np.where(usable, v, np.nan) for v in values), status)
+    *values, status = in_blocks(_vapour_block, 6, p, T)
+    if not scalar:
+        return Vapour(*values, status.astype(np.int8))
+    if status > SteamStatus.SUPERHEATED:
+        faults = refuse_p(p) + refuse_outside("T", T, _T_in_range(T), f"more than 0 and at most {T_MAX} K",
+                                              why="the vapour equations end there", hint="check the unit: °C or °F")
+        raise InputError(*faults or [_below_saturation(float(T), float(if97.saturation_T(p)))])
+    return Vapour(*map(float, values), SteamStatus(int(status)))
+
+
+def _T_in_range(T: np.ndarray) -> np.ndarray:
+    return (T > 0) & (T <= _T_CEILING)
+
+
+def _vapour_block(p: np.ndarray, T: np.ndarray) -> tuple[np.ndarray, ...]:
+    """The properties over a 1-d block, NaN where there is no vapour, and the status."""
+    inside = p_in_range(p) & _T_in_range(T)
+    p_safe = np.where(inside, p, 1e5)
+    usable = inside & (if97.saturation_T(p_safe) * (1 - _ROUNDING) <= T)
+    values = if97.vapour_properties(p_safe, np.where(usable, T, T_MAX))
+    status = np.select([usable, inside, np.isnan(p) | np.isnan(T)],
+                       [SteamStatus.SUPERHEATED, SteamStatus.LIQUID, SteamStatus.MISSING], SteamStatus.OUT_OF_RANGE)
+    return *(np.where(usable, v, np.nan) for v in values), status
 
 
 def _below_saturation(T: float, T_sat: float):
@@ -103,15 +116,19 @@ def state_ps(p, s) -> State:
 def search_T(p: np.ndarray, target: np.ndarray, T: np.ndarray, kernel: Callable, slope: Callable) -> np.ndarray:
     """Newton search for the vapour temperature at which ``kernel`` gives ``target`` (1-d, from T upwards).
 
-    h and s rise with T and the slope falls, so from saturation every step stays short of the answer
-    and the search cannot overshoot. Elements that would need more than ``T_MAX`` stop there.
+    h and s rise with T everywhere. Near saturation their slope falls, so that steps stay short of the
+    answer; far above it the slope rises and a step may go a little beyond, from where the next ones
+    come back. The error after a step is at most 0.05 of its square (per kelvin), so a step below
+    ``LAST_STEP`` leaves less than 5e-7 K. Elements that would need more than ``T_MAX`` stop a kelvin
+    above it.
     """
-    T = T.copy()
+    T, ceiling = T.copy(), T_MAX + 1.0
     for _ in range(60):
         value, cp = kernel(p, T)
         step = (target - value) / slope(cp, T)
-        T = np.minimum(T + step, T_MAX + 1.0)
-        if not (np.abs(step) > 1e-10 * T).any() or (T > T_MAX).all():
+        pending = (np.abs(step) > LAST_STEP) & ((ceiling > T) | (step < 0))  # at the ceiling only the way down is left
+        T = np.minimum(T + step, ceiling)
+        if not pending.any():
             break
     return T
 
@@ -126,6 +143,7 @@ def state_kernel(p: np.ndarray, target: np.ndarray, column: int, kernel: Callabl
     sat = saturated_kernel(p)
     f, g = sat[column], sat[column + 1]
     x = (target - f) / (g - f)
+    x[np.abs(x) <= _ROUNDING] = 0.0
     T = sat[0].copy()
     h, s, v = (sat[k] + x * (sat[k + 1] - sat[k]) for k in (1, 3, 5))
     hot = x > 1.0
@@ -133,25 +151,38 @@ def state_kernel(p: np.ndarray, target: np.ndarray, column: int, kernel: Callabl
         T[hot] = search_T(p[hot], target[hot], T[hot], kernel, slope)
         h[hot], s[hot], v[hot] = if97.vapour_hsv(p[hot], T[hot])
         x[hot] = 1.0
-    return T, x, h, s, v, hot.astype(float)
+    return T, x, h, s, v, hot
 
 
 def _state(name: str, p, value, column: int, kernel: Callable, slope: Callable) -> State:
+    def block(p: np.ndarray, value: np.ndarray):
+        inside = p_in_range(p) & np.isfinite(value)
+        # the stand-in is liquid, which costs no search
+        *values, hot = state_kernel(np.where(inside, p, 1e5), np.where(inside, value, 0.0), column, kernel, slope)
+        T, x = values[:2]
+        status = np.select(
+            [np.isnan(p) | np.isnan(value), ~inside | (T > _T_CEILING), x < 0, hot],
+            [SteamStatus.MISSING, SteamStatus.OUT_OF_RANGE, SteamStatus.LIQUID, SteamStatus.SUPERHEATED],
+            SteamStatus.WET)
+        return *(np.where(status <= SteamStatus.SUPERHEATED, v, np.nan) for v in values), status
+
     (p, value), scalar = at_the_door(**{"p": p, name: value})
-    p_ok, finite = p_in_range(p), np.isfinite(value)
-    safe = p_ok & finite
-    T, x, h, s, v, hot = in_blocks(lambda a, b: state_kernel(a, b, column, kernel, slope), 6,
-                                   np.where(safe, p, 1e5), np.where(safe, value, (2e6, 5e3)[name == "s"]))
-    liquid, beyond = safe & (x < 0), T > T_MAX
-    if scalar and not (safe & ~liquid & ~beyond).all():
-        raise InputError(*(refuse_p(p) + refuse_outside(name, value, finite & ~liquid & ~beyond,
-                                                        f"a value between saturated liquid and {T_MAX} K",
-                                                        why="only wet and superheated steam are covered")))
-    if scalar:
-        status = SteamStatus.SUPERHEATED if hot else SteamStatus.WET
-        return State(*(float(a) for a in (T, x, h, s, v)), status)
-    status = np.select([np.isnan(p) | np.isnan(value), ~safe | beyond, liquid, hot > 0],
-                       [SteamStatus.MISSING, SteamStatus.OUT_OF_RANGE, SteamStatus.LIQUID, SteamStatus.SUPERHEATED],
-                       SteamStatus.WET)
-    usable = status <= SteamStatus.SUPERHEATED
-    return State(*(np.where(usable, a, np.nan) for a in (T, x, h, s, v)), status)
+    *values, status = in_blocks(block, 6, p, value)
+    if not scalar:
+        return State(*values, status.astype(np.int8))
+    if status > SteamStatus.SUPERHEATED:
+        faults = refuse_p(p)
+        if not faults:
+            faults = [fault(name, float(value), _allowed(name, float(p)),
+                            why=f"only wet and superheated steam are covered, up to {T_MAX} K",
+                            hint="check the unit and the pressure")]
+        elif not np.isfinite(value):
+            faults.append(fault(name, float(value), "a number"))
+        raise InputError(*faults)
+    return State(*map(float, values), SteamStatus(int(status)))
+
+
+def _allowed(name: str, p: float) -> str:
+    """h or s from saturated liquid to the hottest vapour at a pressure in range, in words."""
+    lowest, highest = getattr(saturated(p), f"{name}_f"), getattr(vapour(p, T_MAX), name)
+    return f"{lowest:.7g} to {highest:.7g} {QUANTITIES[name].unit} at this pressure"
