@@ -12,8 +12,8 @@ from engine.calorimeter.atmosphere import (
 )
 from engine.calorimeter.electric import HeaterReading, electric_quality, heater_reading, power_needed
 from engine.calorimeter.exhaust import ExhaustPipe, exhaust_pipe, exhaust_velocity
-from engine.calorimeter.friction import FITTINGS, STEEL_ROUGHNESS, fittings_loss, friction_factor, steam_viscosity
 from engine.calorimeter.flux import CriticalFlow, critical_flow, critical_mass_flux
+from engine.calorimeter.friction import FITTINGS, STEEL_ROUGHNESS, fittings_loss, friction_factor, steam_viscosity
 from engine.calorimeter.heatloss import (
     LAGGING_CONDUCTIVITY,
     OUTER_FILMS,
