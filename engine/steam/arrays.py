@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import reprlib
 from collections.abc import Callable
+from dataclasses import replace
 
 import numpy as np
 
@@ -10,6 +12,24 @@ from engine.steam.errors import Fault, InputError
 from engine.steam.quantities import QUANTITIES
 
 BLOCK = 4096  # elements: enough to hide the cost of a NumPy call, few enough to stay in cache
+LISTED = 5  # faults spelled out for one input; of the others only the number is given
+NUMBERS = "a number or an array of numbers"
+
+
+def as_floats(value) -> np.ndarray:
+    """A float64 array, 0-d for a single number; TypeError or ValueError for what is not real numbers.
+
+    Text, None, complex numbers and truth values are refused: each would convert to something.
+    """
+    array = np.asarray(value)
+    if array.dtype.kind not in "fiu" and array.size:
+        raise TypeError
+    return array.astype(float, copy=False)
+
+
+def shortened(value) -> str:
+    """What was given, for a message: a list of a million entries need not be read out."""
+    return reprlib.repr(value)
 
 
 def at_the_door(**named) -> tuple[list[np.ndarray], bool]:
@@ -21,12 +41,9 @@ def at_the_door(**named) -> tuple[list[np.ndarray], bool]:
     arrays, faults = [], []
     for name, value in named.items():
         try:
-            array = np.asarray(value)
-            if array.dtype.kind not in "fiu" and array.size:
-                raise TypeError
-            arrays.append(array.astype(float, copy=False))
+            arrays.append(as_floats(value))
         except (TypeError, ValueError):
-            faults.append(fault(name, repr(value), "a number or an array of numbers"))
+            faults.append(fault(name, shortened(value), NUMBERS))
     if faults:
         raise InputError(*faults)
     try:
@@ -71,9 +88,13 @@ def fault(name: str, value, limit: str, *, why: str = "", hint: str = "", index=
 
 
 def refuse_outside(name: str, values: np.ndarray, inside: np.ndarray, limit: str, *, why="", hint="") -> list[Fault]:
-    """Faults for the first few elements that are not inside (NaN never is)."""
+    """Faults for the first few elements that are not inside (NaN never is), the last with the number of others."""
     if inside.all():
         return []
-    return [fault(name, float(values[tuple(place)]), limit, why=why, hint=hint,
-                  index=tuple(int(i) for i in place) or None)
-            for place in np.argwhere(~inside)[:5]]
+    places = np.argwhere(~inside)
+    faults = [fault(name, float(values[tuple(place)]), limit, why=why, hint=hint,
+                    index=tuple(int(i) for i in place) or None)
+              for place in places[:LISTED]]
+    if (others := len(places) - LISTED) > 0:
+        faults[-1] = replace(faults[-1], hint="; ".join(filter(None, (hint, f"{others} more elements like this one"))))
+    return faults

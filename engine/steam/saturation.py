@@ -93,14 +93,20 @@ def saturated(p) -> Saturated:
     2777.1
     """
     (p,), scalar = at_the_door(p=p)
-    inside = p_in_range(p)
-    if scalar and not inside.all():
-        raise InputError(*refuse_p(p))
-    values = in_blocks(saturated_kernel, 7, np.where(inside, p, 1e5))
+    if scalar and (faults := refuse_p(p)):
+        raise InputError(*faults)
+    *values, status = in_blocks(_saturated_block, 8, p)
     if scalar:
-        return Saturated(*(float(v) for v in values))
-    status = np.where(inside, SteamStatus.WET, np.where(np.isnan(p), SteamStatus.MISSING, SteamStatus.OUT_OF_RANGE))
-    return Saturated(*(np.where(inside, v, np.nan) for v in values), status)
+        return Saturated(*map(float, values))
+    return Saturated(*values, status.astype(np.int8))
+
+
+def _saturated_block(p: np.ndarray) -> tuple[np.ndarray, ...]:
+    """The saturated states over a 1-d block, NaN out of range, and the status."""
+    inside = p_in_range(p)
+    values = saturated_kernel(np.where(inside, p, 1e5))
+    status = np.select([inside, np.isnan(p)], [SteamStatus.WET, SteamStatus.MISSING], SteamStatus.OUT_OF_RANGE)
+    return *(np.where(inside, v, np.nan) for v in values), status
 
 
 class Dome(NamedTuple):

@@ -17,6 +17,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from engine.steam.arrays import NUMBERS, as_floats, at_the_door, give_back, shortened
 from engine.steam.errors import Fault, InputError
 
 G_STANDARD = 9.80665  # m/s², standard acceleration of gravity (exact by convention)
@@ -72,16 +73,25 @@ def _row(unit: str, kind: str) -> tuple[float, float]:
     return found
 
 
+def _convert(value, unit: str, kind: str, formula):
+    """``formula(values, scale, offset)``: a Python float for a single number, else a float64 array."""
+    scale, offset = _row(unit, kind)
+    try:
+        values = as_floats(value)
+    except (TypeError, ValueError):
+        raise InputError(Fault(kind, shortened(value), unit, NUMBERS, name="value")) from None
+    return give_back(formula(values, scale, offset), values.ndim == 0)
+
+
 def to_si(value, unit: str, kind: str):
-    """A value in ``unit`` -> the engine's SI unit of that kind.
+    """A value in ``unit`` -> the engine's SI unit of that kind. Any shape; gauge stays gauge.
 
     >>> to_si(212.0, "°F", "temperature")
     373.15
     >>> to_si(9.0, "°F", "difference")
     5.0
     """
-    scale, offset = _row(unit, kind)
-    return value * scale + offset
+    return _convert(value, unit, kind, lambda v, scale, offset: v * scale + offset)
 
 
 def from_si(value, unit: str, kind: str):
@@ -90,8 +100,7 @@ def from_si(value, unit: str, kind: str):
     >>> round(from_si(101_325.0, "psi", "pressure"), 4)
     14.6959
     """
-    scale, offset = _row(unit, kind)
-    return (value - offset) / scale
+    return _convert(value, unit, kind, lambda v, scale, offset: (v - offset) / scale)
 
 
 def uncertainty_to_si(value, unit: str, kind: str):
@@ -100,22 +109,24 @@ def uncertainty_to_si(value, unit: str, kind: str):
     >>> round(uncertainty_to_si(1.8, "°F", "temperature"), 12)
     1.0
     """
-    return value * _row(unit, kind)[0]
+    return _convert(value, unit, kind, lambda v, scale, offset: v * scale)
 
 
 def uncertainty_from_si(value, unit: str, kind: str):
     """An uncertainty in SI -> ``unit``, by scale alone."""
-    return value / _row(unit, kind)[0]
+    return _convert(value, unit, kind, lambda v, scale, offset: v / scale)
 
 
 def absolute_from_gauge(p_gauge, p_barometer):
-    """Gauge pressure [Pa] + barometric pressure [Pa] -> absolute pressure [Pa]."""
-    return p_gauge + p_barometer
+    """Gauge pressure [Pa] + barometric pressure [Pa] -> absolute pressure [Pa], broadcast together."""
+    (p_gauge, p_barometer), scalar = at_the_door(p=p_gauge, p_barometer=p_barometer)
+    return give_back(p_gauge + p_barometer, scalar)
 
 
 def gauge_from_absolute(p, p_barometer):
-    """Absolute pressure [Pa] - barometric pressure [Pa] -> gauge pressure [Pa]."""
-    return p - p_barometer
+    """Absolute pressure [Pa] - barometric pressure [Pa] -> gauge pressure [Pa], broadcast together."""
+    (p, p_barometer), scalar = at_the_door(p=p, p_barometer=p_barometer)
+    return give_back(p - p_barometer, scalar)
 
 
 @dataclass(frozen=True)
