@@ -44,7 +44,7 @@ from engine.calorimeter.orifice import (
     rateau_mass_flux,
     weighed_flow,
 )
-from engine.calorimeter.paths import Path, constant_bore_path, isenthalpic_path
+from engine.calorimeter.paths import Path, constant_bore_path, isenthalpic_path, isenthalpic_path_at
 from engine.calorimeter.sampling import (
     SampleBias,
     aspiration_efficiency,
@@ -132,6 +132,7 @@ __all__ = [  # the rig
 __all__ += [  # throttling
     "CriticalFlow", "Exhaust", "Path", "Quality", "SENTENCES", "Status", "bore_ratio_keeping_velocity",
     "constant_bore_path", "critical_flow", "critical_mass_flux", "exhaust_temperature", "isenthalpic_path",
+    "isenthalpic_path_at",
     "kinetic_energy", "kinetic_quality", "kinetic_superheat", "least_exhaust_bore", "least_quality", "quality",
     "reasons", "velocity", "velocity_ratio",
 ]

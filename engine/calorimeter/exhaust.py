@@ -13,7 +13,6 @@ the surroundings. A real pipe chokes a little later, at Mach 1, so this errs tow
 
 from __future__ import annotations
 
-from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
@@ -63,41 +62,39 @@ def exhaust_pipe(sample_flow, exhaust_bore, length, p_discharge, T_exhaust, *, r
     >>> pipe.back_pressure / 1000, pipe.exit_velocity, pipe.choked
     (2.5, 36., False)
     """
-    constant = not callable(T_exhaust)
-    temperature: Callable = (lambda p: T_exhaust) if constant else T_exhaust
-    (m, D, L, p_d, rough, K), scalar = admit(
+    constant = {} if callable(T_exhaust) else {"T_exhaust": T_exhaust}
+    (m, D, L, p_d, rough, K, *T), scalar = admit(
         sample_flow=sample_flow, exhaust_bore=exhaust_bore, length=length, p_discharge=p_discharge,
-        roughness=roughness, loss_coefficient=loss_coefficient)
-    (m, D, L, p_d, rough, K, T), whole = admit(
-        sample_flow=m, exhaust_bore=D, length=L, p_discharge=p_d, roughness=rough, loss_coefficient=K,
-        T_exhaust=temperature(p_d))
-    scalar = scalar and whole
+        roughness=roughness, loss_coefficient=loss_coefficient, **constant)
+
+    def temperature(p):
+        return T[0] if constant else admit(T_exhaust=T_exhaust(p), p_exhaust=p)[0][0]
 
     G = m / (np.pi / 4 * D * D)
-    _, v_d, _ = _volume(p_d, T)
-    reynolds = G * D / np.asarray(steam_viscosity(1 / v_d, T))
+    T_a = temperature(p_d)
+    reynolds = G * D / np.asarray(steam_viscosity(1 / _volume(p_d, T_a)[1], T_a))
     f = np.asarray(friction_factor(reynolds, rough / D))
     resistance = f * L / D + K + (np.asarray(fittings_loss(fittings, reynolds, D)) if fittings else 0.0)
 
     p_a, p_b = p_d, p_d
     for _ in range(40):  # p v and T hardly move with pressure: a few rounds
         middle = (p_a + p_b) / 2
-        pv = middle * _volume(middle, T)[1]
-        own = G * np.sqrt(p_b * _volume(p_b, T)[1])
+        pv = middle * _volume(middle, T_a)[1]
+        own = G * np.sqrt(p_b * _volume(p_b, T_a)[1])
         p_b = np.maximum(p_d, own)
         before, p_a = p_a, _upstream(p_b, G * G * pv, resistance)
         require("exhaust_bore", D, p_a <= P_SAT_MAX, "a bore wide enough for this flow",
                 why="the exhaust pressure would pass the range of the steam properties")
-        T = T if constant else np.broadcast_to(np.asarray(temperature(p_a), dtype=float), p_a.shape)
+        T_a = temperature(p_a)
         if np.all(np.abs(p_a - before) <= 1e-11 * p_a):
             break
     else:
         raise InputError(Fault("exhaust temperature as a function of pressure", "no steady answer", "",
                                "a temperature that changes little with pressure", name="T_exhaust"))
 
-    above, v_a, sound = _volume(p_a, T)
-    _, v_b, exit_sound = _volume(p_b, T)
-    fields = (p_a, T, p_a - p_d, G * v_a, G * v_b, G * v_a / sound, G * v_b / exit_sound, reynolds, f, resistance)
+    above, v_a, sound = _volume(p_a, T_a)
+    _, v_b, exit_sound = _volume(p_b, T_a)
+    fields = (p_a, T_a, p_a - p_d, G * v_a, G * v_b, G * v_a / sound, G * v_b / exit_sound, reynolds, f, resistance)
     choked, status = p_b > p_d, np.where(above, Status.OK, Status.NOT_SUPERHEATED).astype(np.int8)
     if scalar:
         return ExhaustPipe(*(float(a) for a in fields), bool(choked), Status(int(status)))

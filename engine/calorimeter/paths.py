@@ -131,12 +131,29 @@ def isenthalpic_path(p_line, x, p_exhaust, *, points: int = POINTS) -> Path:
     named, scalar = door(p_line=p_line, x=x, p_exhaust=p_exhaust)
     shape, (p_line, x, p_exhaust) = _shaped(named, points)
     h, _ = _line(p_line, x)
+    return _isenthalpic_path(shape, scalar, p_line, h, p_exhaust, points)
+
+
+def isenthalpic_path_at(p_line, h_line, p_exhaust, *, points: int = POINTS) -> Path:
+    """As ``isenthalpic_path``, from the specific enthalpy in the line [J/kg]: the line may be superheated.
+
+    >>> path = isenthalpic_path_at(10e5, 2.80e6, 1e5)
+    >>> float(round(path.T[0] - 273.15, 1)), bool(path.dries_out)
+    (188.6, False)
+    """
+    named, scalar = door(p_line=p_line, h_line=h_line, p_exhaust=p_exhaust)
+    shape, (p_line, h, p_exhaust) = _shaped(named, points)
+    return _isenthalpic_path(shape, scalar, p_line, h, p_exhaust, points)
+
+
+def _isenthalpic_path(shape, scalar, p_line, h, p_exhaust, points) -> Path:
     p_dry = dry_out_pressure(h, p_line)
-    inside = (p_dry <= p_line) & (p_dry >= p_exhaust)
-    extra = np.where(inside & (p_dry < p_line), p_dry, np.sqrt(p_line * p_exhaust))
+    inside = (p_dry < p_line) & (p_dry >= p_exhaust)
+    extra = np.where(inside, p_dry, np.sqrt(p_line * p_exhaust))
     p = -np.sort(-np.column_stack([_grid(p_line, p_exhaust, points - 1), extra]), axis=1)
     columns = _isenthalpic(p.ravel(), np.repeat(h, points))
-    return _path(shape, points, scalar, p, columns, np.zeros(p.shape), np.where(inside, p_dry, np.nan),
+    starts_wet = columns[5].reshape(p.shape)[:, 0] == SteamStatus.WET
+    return _path(shape, points, scalar, p, columns, np.zeros(p.shape), np.where(inside & starts_wet, p_dry, np.nan),
                  np.full(h.shape, np.nan), np.zeros(h.shape))
 
 

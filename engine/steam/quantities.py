@@ -35,6 +35,8 @@ _ROWS = (
     ("superheat", "ΔT", "difference", "K", "superheat"),
     ("line_superheat", "ΔT₁", "difference", "K", "line superheat"),
     ("least_superheat", "ΔT_min", "difference", "K", "least superheat"),
+    ("comfortable_superheat", "ΔT_c", "difference", "K", "comfortable superheat"),
+    ("x_limit", "x_L", "fraction", "1", "quality limit"),
     ("h", "h", "enthalpy", "J/kg", "specific enthalpy"),
     ("h_line", "h₁", "enthalpy", "J/kg", "specific enthalpy in the line"),
     ("s", "s", "entropy", "J/(kg K)", "specific entropy"),

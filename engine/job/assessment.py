@@ -1,0 +1,237 @@
+"""One call from a case to everything that the Path page, and whatever follows it, shows."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from enum import StrEnum
+
+import numpy as np
+
+from engine.calorimeter import (
+    Path,
+    Quality,
+    Status,
+    bore_ratio_keeping_velocity,
+    constant_bore_path,
+    exhaust_temperature,
+    isenthalpic_path_at,
+    kinetic_energy,
+    kinetic_quality,
+    kinetic_superheat,
+    least_quality,
+    quality,
+    velocity,
+)
+from engine.job.case import Case, Resolved, resolve
+from engine.job.fields import BY_NORMAL, EXPECTED, UNDECIDED
+from engine.job.terms import Terms, check_method, terms_at
+from engine.steam import Saturated, saturated, saturation_temperature
+from engine.steam.errors import Fault, InputError
+
+
+class Verdict(StrEnum):
+    """What can be said about the case."""
+
+    READS = "reads"
+    THIN = "thin"
+    CANNOT = "cannot read"
+    SUPERHEATED = "line superheated"
+
+
+@dataclass(frozen=True)
+class StatePoint:
+    """One named state on the way, SI; ``velocity`` is None where none is known."""
+
+    name: str
+    p: float
+    T: float
+    x: float | None
+    h: float
+    s: float
+    v: float
+    velocity: float | None
+
+
+@dataclass(frozen=True)
+class Velocities:
+    """What the bores make of the sample flow; None where the case does not say."""
+
+    line: float | None
+    sample: float | None
+    exhaust: float | None
+    ratio: float | None
+    keeping_bore_ratio: float
+    kinetic_energy: float | None
+    kinetic_superheat: float | None
+    kinetic_quality: float | None
+
+
+@dataclass(frozen=True)
+class Assessment:
+    """Everything the case says, SI.
+
+    x           quality in the line: reduced from the reading, or as expected; None where it cannot be told
+    x_below     where the exhaust is too little superheated: the quality is below this; None otherwise
+    x_as_read   the same reading without heat loss and kinetic energy
+    x_without_kinetic   with the heat loss alone
+    T_exhaust, superheat   what the thermometer reads, or must read for the expected wetness
+    x_least     least readable quality, at the least superheat asked for
+    margin      superheat above the least readable one [K]
+    line_superheat      [K], 0 for a wet line
+    """
+
+    case: Case
+    si: Resolved
+    verdict: Verdict
+    status: Status
+    x: float | None
+    x_below: float | None
+    x_as_read: float | None
+    x_without_kinetic: float | None
+    T_exhaust: float
+    T_saturation: float
+    superheat: float
+    x_exhaust: float
+    x_least: float
+    margin: float
+    line_superheat: float
+    terms: Terms
+    line: Saturated
+    velocities: Velocities
+    path: Path
+    reach_path: Path | None
+    bore_path: Path | None
+    states: tuple[StatePoint, ...]
+
+    @property
+    def expected(self) -> bool:
+        """Whether the case asks what must be seen, rather than what was read."""
+        return self.case["question"] == EXPECTED
+
+    @property
+    def heat_loss_undecided(self) -> bool:
+        return self.case["heat_loss_method"] == UNDECIDED
+
+
+def assess(case: Case) -> Assessment:
+    """Assess a case. Raises InputError, with every fault at once, where an entry cannot be used.
+
+    >>> from engine.job.demo import DEMO
+    >>> result = assess(DEMO)
+    >>> result.verdict.value, round(result.x, 4), round(result.superheat, 1)
+    ('reads', 0.972, 20.9)
+    """
+    si = resolve(case)
+    check_method(case)
+    _check_normal(case, si)
+    p1, p2 = si["p_line"], si["p_exhaust"]
+    T_sat, line = saturation_temperature(p2), saturated(p1)
+    if case["question"] == EXPECTED:
+        x = 1.0 - si["wetness"]
+        T, superheat, x_exhaust, terms, status = _expected(case, si, x)
+        h_line, x_bound, line_superheat = line.h_f + x * (line.h_g - line.h_f), None, 0.0
+        as_read = without_kinetic = None
+    else:
+        T = si["T_exhaust"]
+        terms = terms_at(case, si, T)
+        result, as_read, without_kinetic = _read(p1, p2, T, terms)
+        x, x_bound, h_line, superheat, line_superheat, status = (
+            _known(result.x), _known(result.x_bound), result.h_line, result.superheat, result.line_superheat,
+            Status(result.status))
+        x_exhaust = 1.0
+    least, comfortable = si["least_superheat"], si["comfortable_superheat"]
+    x_least = least_quality(p1, p2, least, **terms.arguments())
+    if status == Status.LINE_SUPERHEATED:
+        verdict, x_below = Verdict.SUPERHEATED, None
+    elif status == Status.NOT_SUPERHEATED or superheat < least:
+        verdict = Verdict.CANNOT
+        x_below = None if case["question"] == EXPECTED else min(x_least, 1.0)
+        x = x if case["question"] == EXPECTED else None
+    else:
+        verdict, x_below = (Verdict.THIN if superheat < comfortable else Verdict.READS), None
+    if np.isnan(h_line):  # only a bound is known: the path of the driest steam that could read so
+        h_line = line.h_f + x_bound * (line.h_g - line.h_f)
+    h_least = line.h_f + x_least * (line.h_g - line.h_f)
+    both = isenthalpic_path_at(p1, np.array([h_line, h_least]), p2)
+    path, reach_path = _row(both, 0), _row(both, 1)
+    velocities = _velocities(si, path, terms, line)
+    bore_path = None
+    if velocities.sample and line_superheat == 0.0 and path.x[0] <= 1.0:
+        bore_path = constant_bore_path(p1, float(path.x[0]), p2, velocities.sample)
+    return Assessment(case, si, verdict, status, x, x_below, as_read, without_kinetic, T, T_sat, superheat, x_exhaust,
+                      x_least, superheat - least, line_superheat, terms, line, velocities, path, reach_path,
+                      bore_path, _states(path, bore_path, velocities))
+
+
+def _check_normal(case: Case, si: Resolved) -> None:
+    if case["heat_loss_method"] == BY_NORMAL and not si["T_normal"] > saturation_temperature(si["p_exhaust"]):
+        entry = case["T_normal"]
+        raise InputError(Fault("Normal reading, dry steam", entry.value, entry.unit,
+                               "a temperature above saturation at the exhaust pressure",
+                               "dry steam must arrive superheated, or it says nothing of the heat loss",
+                               "check it, or account for the heat loss in another way", "T_normal"))
+
+
+def _known(value: float) -> float | None:
+    return None if np.isnan(value) else value
+
+
+def _read(p1: float, p2: float, T: float, terms: Terms) -> tuple[Quality, float | None, float | None]:
+    """The reading reduced three ways in one call: in full, as read, and with the heat loss alone."""
+    q, c = terms.heat_loss, terms.exhaust_velocity
+    three = quality(p1, p2, T, heat_loss=np.array([q, 0.0, q]), recovery=terms.recovery,
+                    line_velocity=np.array([terms.line_velocity, 0.0, 0.0]), exhaust_velocity=np.array([c, 0.0, 0.0]))
+    full = Quality(*(float(column[0]) for column in three[:-1]), Status(int(three.status[0])))
+    if full.status >= Status.OUT_OF_RANGE:  # the scalar call names what is wrong
+        quality(p1, p2, T, **terms.arguments())
+    return full, _known(float(three.x[1])), _known(float(three.x[2]))
+
+
+def _expected(case: Case, si: Resolved, x: float):
+    """What must be seen: heat loss and velocity follow from the temperature they change, so a few rounds."""
+    T = saturation_temperature(si["p_exhaust"])
+    for _ in range(8):
+        terms = terms_at(case, si, T)
+        seen = exhaust_temperature(si["p_line"], x, si["p_exhaust"], **terms.arguments())
+        moved, T = abs(seen.T_exhaust - T), seen.T_exhaust
+        if moved < 1e-6:
+            break
+    return T, seen.superheat, seen.x_exhaust, terms, seen.status
+
+
+def _row(paths: Path, k: int) -> Path:
+    def pick(value):
+        return value[k]
+
+    return Path(*(pick(getattr(paths, name)) for name in Path.__dataclass_fields__))
+
+
+def _velocities(si: Resolved, path: Path, terms: Terms, line: Saturated) -> Velocities:
+    v1, v2 = float(path.v[0]), float(path.v[-1])
+    flow, d1, d2 = si["sample_flow"], si["line_bore"], si["exhaust_bore"]
+    sample = velocity(flow, d1, v1) if flow and d1 else None
+    exhaust = velocity(flow, d2, v2) if flow and d2 else None
+    ratio = exhaust / sample if sample and exhaust else None
+    if ratio is None and d1 and d2:
+        ratio = v2 / v1 * (d1 / d2) ** 2
+    c = exhaust
+    return Velocities(
+        si["line_velocity"], sample, exhaust, ratio, bore_ratio_keeping_velocity(v1, v2),
+        kinetic_energy(c) if c else None, kinetic_superheat(c, si["p_exhaust"], float(path.T[-1])) if c else None,
+        kinetic_quality(c, si["p_line"]) if c else None)
+
+
+def _states(path: Path, bore_path: Path | None, velocities: Velocities) -> tuple[StatePoint, ...]:
+    def point(name: str, of: Path, k: int, speed: float | None) -> StatePoint:
+        superheated = of.status[k] == 1
+        return StatePoint(name, *(float(column[k]) for column in (of.p, of.T)), None if superheated else
+                          float(of.x[k]), *(float(column[k]) for column in (of.h, of.s, of.v)), speed)
+
+    rows = [point("Line", path, 0, velocities.sample or velocities.line)]
+    if path.dries_out:
+        rows.append(point("Dries out", path, int(np.argmin(np.abs(path.p - path.p_dry))), None))
+    rows.append(point("Exhaust", path, -1, velocities.exhaust))
+    if bore_path is not None:
+        name = "Constant bore, chokes" if bore_path.chokes else "Constant bore, exhaust"
+        rows.append(point(name, bore_path, -1, float(bore_path.velocity[-1])))
+    return tuple(rows)

@@ -1,0 +1,156 @@
+"""The case: one frozen record of everything entered, as entered, resolved to SI in one place."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from types import MappingProxyType
+
+from engine.calorimeter import leg_density, standard_pressure
+from engine.job.fields import BY_ALTITUDE, CHOICE, FIELDS, QUANTITY, Entry, Field
+from engine.steam.errors import Fault, InputError
+from engine.steam.units import G_STANDARD, absolute_from_gauge, from_si, to_si
+
+Value = Entry | str | None
+GAUGE, ABSOLUTE = "gauge", "absolute"
+T_LEG = 293.15  # K, water leg at the temperature of the room unless measured
+
+
+@dataclass(frozen=True)
+class Case:
+    """Everything entered, by the names of ``fields.FIELDS``; what is absent there is None.
+
+    Immutable: ``with_`` gives a changed copy. Two cases are equal when everything entered is.
+    """
+
+    values: Mapping[str, Value]
+
+    def __post_init__(self):
+        unknown = set(self.values) - set(FIELDS)
+        if unknown:
+            raise InputError(Fault("case", ", ".join(sorted(unknown)), "", "entries that a case has"))
+        whole = {name: self.values.get(name, field.blank) for name, field in FIELDS.items()}
+        object.__setattr__(self, "values", MappingProxyType(whole))
+
+    def __eq__(self, other):
+        return isinstance(other, Case) and dict(self.values) == dict(other.values)
+
+    def __hash__(self):
+        return hash(tuple(self.values.items()))
+
+    def __reduce__(self):
+        return (Case, (dict(self.values),))
+
+    def __getitem__(self, name: str) -> Value:
+        return self.values[name]
+
+    def with_(self, **changes: Value) -> Case:
+        """A copy with some entries changed."""
+        return Case({**self.values, **changes})
+
+
+BLANK = Case({})
+
+
+def barometer(case: Case) -> float:
+    """Barometric pressure [Pa]: as read, or of the standard atmosphere at the altitude."""
+    if case["barometer_source"] == BY_ALTITUDE:
+        return standard_pressure(to_si(case["altitude"].value, case["altitude"].unit, "length"))
+    entry = case["p_barometer"]
+    return to_si(entry.value, entry.unit, "pressure")
+
+
+def entry_si(field: Field, entry: Entry, p_barometer: float) -> float:
+    """One entry in SI and absolute."""
+    si = to_si(entry.value, entry.unit, field.kind)
+    return absolute_from_gauge(si, p_barometer) if entry.basis == GAUGE else si
+
+
+def as_entered(field: Field, si: float, like: Entry, p_barometer: float) -> Entry:
+    """An SI value in the unit and basis of another entry."""
+    shown = si - p_barometer if like.basis == GAUGE else si
+    return Entry(from_si(shown, like.unit, field.kind), like.unit, like.basis)
+
+
+def describe(entry: Entry) -> str:
+    """``9 bar gauge``."""
+    unit = "" if entry.unit == "1" else f" {entry.unit}"
+    return f"{entry.value:.6g}{unit}{' ' + entry.basis if entry.basis else ''}"
+
+
+def entry_fault(field: Field, entry: Entry, p_barometer: float) -> Fault | None:
+    """What is wrong with one entry, in the words and the unit in which it was entered."""
+    si = entry_si(field, entry, p_barometer)
+    if field.low * (1 - 1e-12) - 1e-12 <= si <= field.high * (1 + 1e-12) + 1e-12:
+        return None
+    low, high = (as_entered(field, limit, entry, p_barometer).value for limit in (field.low, field.high))
+    unit = " ".join(part for part in (entry.unit if entry.unit != "1" else "", entry.basis) if part)
+    return Fault(field.label, entry.value, unit, f"{low:.5g} to {high:.5g} {unit}".rstrip(), field.why, field.hint,
+                 field.name)
+
+
+@dataclass(frozen=True)
+class Resolved:
+    """The case in SI and absolute: ``si[name]`` is a float, or None for what was not entered.
+
+    ``p_line`` is at the tapping: a water leg between it and the gauge is taken off.
+    """
+
+    si: Mapping[str, float | None]
+    p_barometer: float
+
+    def __getitem__(self, name: str) -> float | None:
+        return self.si[name]
+
+
+def faults_of(case: Case) -> list[Fault]:
+    """Every entry that cannot be used, and entries that do not go together."""
+    faults, p_barometer = [], 101_325.0
+    for name in ("p_barometer", "altitude"):
+        if fault := entry_fault(FIELDS[name], case[name], 0.0):
+            faults.append(fault)
+    if not faults:
+        p_barometer = barometer(case)
+    for name, field in FIELDS.items():
+        entry = case[name]
+        if field.form == CHOICE and entry not in field.options:
+            faults.append(Fault(field.label, entry, "", "one of: " + ", ".join(field.options), name=name))
+        if field.form == QUANTITY and entry is not None and name not in ("p_barometer", "altitude"):
+            fault = entry_fault(field, entry, p_barometer)
+            faults += [fault] if fault else []
+    if not faults:
+        faults += _faults_together(case, p_barometer)
+    return faults
+
+
+def _faults_together(case: Case, p_barometer: float) -> list[Fault]:
+    faults = []
+    p_line, p_exhaust = (entry_si(FIELDS[n], case[n], p_barometer) for n in ("p_line", "p_exhaust"))
+    if not p_exhaust < p_line:
+        entry = case["p_exhaust"]
+        limit = as_entered(FIELDS["p_exhaust"], p_line, entry, p_barometer)
+        faults.append(Fault("Exhaust pressure", entry.value, f"{entry.unit} {entry.basis}",
+                            f"less than the line pressure, {describe(limit)}",
+                            "steam only flows and expands towards a lower pressure",
+                            "check the unit of both, and gauge or absolute", "p_exhaust"))
+    low, high = (entry_si(FIELDS[n], case[n], 0.0) for n in ("least_superheat", "comfortable_superheat"))
+    if low > high:
+        entry = case["comfortable_superheat"]
+        faults.append(Fault("Comfortable superheat", entry.value, entry.unit,
+                            f"at least the least readable superheat, {describe(case['least_superheat'])}",
+                            name="comfortable_superheat"))
+    return faults
+
+
+def resolve(case: Case) -> Resolved:
+    """The case in SI, or InputError with every fault at once."""
+    if faults := faults_of(case):
+        raise InputError(*faults)
+    p_barometer = barometer(case)
+    si: dict[str, float | None] = {
+        name: entry_si(field, case[name], p_barometer) if case[name] is not None else None
+        for name, field in FIELDS.items() if field.form == QUANTITY}
+    si["p_barometer"] = p_barometer
+    if si["leg_height"]:
+        si["p_line"] -= leg_density(T_LEG) * G_STANDARD * si["leg_height"]
+    return Resolved(MappingProxyType(si), p_barometer)

@@ -1,0 +1,144 @@
+"""The case as a file and as a link: written in full, read with suspicion."""
+
+from __future__ import annotations
+
+import base64
+import binascii
+import json
+import math
+import zlib
+
+from engine import __version__
+from engine.job.case import ABSOLUTE, BLANK, GAUGE, Case, Value, faults_of
+from engine.job.fields import CHOICE, FIELDS, QUANTITY, Entry, Field
+from engine.steam.errors import Fault, InputError
+from engine.steam.units import ALIASES, UNITS
+
+FORMAT, SCHEMA = "steam quality case", 1
+MAX_BYTES = 5_000_000
+MAX_TEXT = 4_000
+_LINK_BYTES = 200_000
+
+
+def _refusal(what: str, got: object, needs: str, hint: str = "the open case stays as it was",
+             why: str = "") -> InputError:
+    return InputError(Fault(what, str(got)[:120], "", needs, why, hint))
+
+
+def _as_json(value: Value):
+    if isinstance(value, Entry):
+        row = {"value": value.value, "unit": value.unit}
+        return {**row, "basis": value.basis} if value.basis else row
+    return value
+
+
+def to_json(case: Case) -> str:
+    """The whole case as JSON text, with format, schema and program version."""
+    document = {"format": FORMAT, "schema": SCHEMA, "program": __version__,
+                "values": {name: _as_json(value) for name, value in case.values.items()}}
+    return json.dumps(document, ensure_ascii=False, indent=1, allow_nan=False) + "\n"
+
+
+def from_json(data: bytes | str) -> Case:
+    """Read a case file. InputError with the reason for anything that is not a case this program can use."""
+    if len(data) > MAX_BYTES:
+        raise _refusal("case file", f"{len(data)} bytes", f"at most {MAX_BYTES} bytes")
+    try:
+        text = data.decode("utf-8-sig") if isinstance(data, bytes) else data
+        document = json.loads(text, parse_constant=_no_constant)
+    except UnicodeDecodeError as error:
+        raise _refusal("case file", "bytes that are not text", "a JSON file in UTF-8") from error
+    except (ValueError, RecursionError) as error:
+        raise _refusal("case file", _first_line(error), "a JSON file as saved by this program") from error
+    return _from_document(document, "case file")
+
+
+def _first_line(error: Exception) -> str:
+    return (str(error).splitlines() or [type(error).__name__])[0]
+
+
+def _no_constant(name: str):
+    raise ValueError(f"{name} in place of a number")
+
+
+def _from_document(document: object, source: str) -> Case:
+    if not isinstance(document, dict) or document.get("format") != FORMAT:
+        raise _refusal(source, "a JSON document of another kind", f'a document with "format": "{FORMAT}"')
+    schema = document.get("schema")
+    if not isinstance(schema, int) or isinstance(schema, bool) or schema < 1:
+        raise _refusal(f"schema of the {source}", schema, f"a whole number from 1 to {SCHEMA}")
+    if schema > SCHEMA:
+        raise _refusal(f"schema of the {source}", schema, f"at most {SCHEMA}", "open it with the version that saved it",
+                       "it was saved by a newer version of this program")
+    values = document.get("values")
+    if not isinstance(values, dict):
+        raise _refusal(f"values of the {source}", type(values).__name__, "a JSON object of entries")
+    faults, read = [], {}
+    for name, raw in values.items():
+        try:
+            read[name] = _value(name, raw)
+        except InputError as error:
+            faults += error.faults
+    if not faults:
+        case = Case(read)
+        faults = faults_of(case)
+    if faults:
+        raise InputError(*faults)
+    return case
+
+
+def _value(name: str, raw: object) -> Value:
+    field = FIELDS.get(name)
+    if field is None:
+        raise _refusal("entry of the case", name, "an entry that this version knows")
+    if field.form == QUANTITY:
+        return _entry(field, raw)
+    if not isinstance(raw, str):
+        raise _refusal(field.label, raw, "text")
+    if field.form == CHOICE and raw not in field.options:
+        raise _refusal(field.label, raw, "one of: " + ", ".join(field.options))
+    if len(raw) > MAX_TEXT:
+        raise _refusal(field.label, f"{len(raw)} characters", f"at most {MAX_TEXT} characters")
+    return raw
+
+
+def _entry(field: Field, raw: object) -> Entry | None:
+    if raw is None and field.blank is None:
+        return None
+    if not isinstance(raw, dict) or not set(raw) <= {"value", "unit", "basis"}:
+        raise _refusal(field.label, raw, 'an object with "value" and "unit"')
+    value, unit, basis = raw.get("value"), raw.get("unit"), raw.get("basis", "")
+    try:
+        number = float(value) if isinstance(value, int | float) and not isinstance(value, bool) else math.nan
+    except OverflowError:
+        number = math.inf
+    if not math.isfinite(number):
+        raise _refusal(field.label, value, "a finite number")
+    unit = ALIASES.get(unit, unit) if isinstance(unit, str) else unit
+    if unit not in UNITS[field.kind] if isinstance(unit, str) else True:
+        raise _refusal(f"unit of {field.label.lower()}", unit, "one of: " + ", ".join(UNITS[field.kind]))
+    allowed = (GAUGE, ABSOLUTE) if field.kind == "pressure" else ("",)
+    if basis not in allowed:
+        raise _refusal(f"basis of {field.label.lower()}", basis, " or ".join(allowed) or "none")
+    return Entry(number, unit, basis)
+
+
+def to_link(case: Case) -> str:
+    """The case as one word for an address: what differs from a blank case, packed."""
+    changed = {n: _as_json(v) for n, v in case.values.items() if v != BLANK[n]}
+    packed = zlib.compress(json.dumps([SCHEMA, changed], ensure_ascii=False, separators=(",", ":")).encode(), 9)
+    return base64.urlsafe_b64encode(packed).decode().rstrip("=")
+
+
+def from_link(word: str) -> Case:
+    """Read a case from an address. InputError with the reason where the word holds none."""
+    try:
+        packed = base64.b64decode(word + "=" * (-len(word) % 4), altchars=b"-_", validate=True)
+        unpacker = zlib.decompressobj()
+        text = unpacker.decompress(packed, _LINK_BYTES)
+        if unpacker.unconsumed_tail or not unpacker.eof:
+            raise ValueError("too long or cut off")
+        schema, values = json.loads(text, parse_constant=_no_constant)
+    except (ValueError, TypeError, binascii.Error, zlib.error, RecursionError) as error:
+        raise _refusal("case in the link", _first_line(error), "a link made by this program, copied whole") from error
+    return _from_document({"format": FORMAT, "schema": schema, "values": values}, "link")
