@@ -258,7 +258,7 @@ def _constant_bore_dry_out(p: np.ndarray, wet: np.ndarray, h0: np.ndarray, G: np
             h, _, v = if97.vapour_hsv(q, if97.saturation_T(q))
             return h + k * v * v - h0
 
-        log_p = bracketed_root(excess, np.log(p[rows, first_hot]), np.log(p[rows, first_hot - 1]))
+        log_p = bracketed_root(excess, np.log(p[rows, first_hot]), np.log(p[rows, first_hot - 1]), 1e-8)
         p_dry[rows] = np.minimum(np.exp(log_p), p[rows, 0])
     return p_dry
 

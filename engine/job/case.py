@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass
+from functools import cache
 from types import MappingProxyType
 
 from engine.calorimeter import leg_density, standard_pressure
@@ -142,6 +143,11 @@ def _faults_together(case: Case, p_barometer: float) -> list[Fault]:
     return faults
 
 
+@cache
+def _leg_density() -> float:
+    return leg_density(T_LEG)
+
+
 def resolve(case: Case) -> Resolved:
     """The case in SI, or InputError with every fault at once."""
     if faults := faults_of(case):
@@ -152,5 +158,5 @@ def resolve(case: Case) -> Resolved:
         for name, field in FIELDS.items() if field.form == QUANTITY}
     si["p_barometer"] = p_barometer
     if si["leg_height"]:
-        si["p_line"] -= leg_density(T_LEG) * G_STANDARD * si["leg_height"]
+        si["p_line"] -= _leg_density() * G_STANDARD * si["leg_height"]
     return Resolved(MappingProxyType(si), p_barometer)

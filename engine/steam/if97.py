@@ -121,27 +121,21 @@ _REGION_1 = PowerSum(tab.REGION_1)
 _REGION_2 = PowerSum(tab.REGION_2_RESIDUAL)
 
 
-def _ideal_polynomials(orders: int) -> list[tuple[int, np.ndarray]]:
-    """For each order of derivative in tau: the lowest exponent, and coefficients from the highest down."""
-    J, n = tab.REGION_2_IDEAL[np.argsort(-tab.REGION_2_IDEAL[:, 0])].T
-    polynomials = []
-    for order in range(orders):
-        polynomials.append((int(J.min()) - order, n))
-        n = n * (J - order)
-    return polynomials
-
-
-_IDEAL_2 = _ideal_polynomials(3)
+# Ideal-gas part of region 2: exponents from the lowest up, without gaps, and coefficients per order of derivative
+_IDEAL_J, _IDEAL_n = tab.REGION_2_IDEAL[np.argsort(tab.REGION_2_IDEAL[:, 0])].T
+_IDEAL_2 = (_IDEAL_n, _IDEAL_n * _IDEAL_J, _IDEAL_n * _IDEAL_J * (_IDEAL_J - 1))
 
 
 def _ideal(tau: np.ndarray, order: int) -> np.ndarray:
-    """Ideal-gas part of region 2 without ln pi, derived ``order`` times: the exponents have no gaps."""
-    lowest, coefficients = _IDEAL_2[order]
-    total = np.full(tau.shape, coefficients[0])
-    for coefficient in coefficients[1:]:
+    """Ideal-gas part of region 2 without ln pi, derived ``order`` times: pow() for a few points, Horner for many."""
+    coefficients = _IDEAL_2[order]
+    if tau.size <= _FEW:
+        return coefficients @ tau ** (_IDEAL_J - order)[:, None]
+    total = np.full(tau.shape, coefficients[-1])
+    for coefficient in coefficients[-2::-1]:
         total *= tau
         total += coefficient
-    return total / tau ** -lowest
+    return total * tau ** (_IDEAL_J[0] - order)
 
 
 def gibbs_1(p: np.ndarray, T: np.ndarray, wanted: Sequence[tuple[int, int]]) -> list[np.ndarray]:
