@@ -10,7 +10,7 @@ from __future__ import annotations
 
 import numpy as np
 
-from engine.calorimeter.rig_inputs import admit, require
+from engine.calorimeter.rig_inputs import admit, limits_of, require
 from engine.steam import saturated, saturation_pressure
 from engine.steam.arrays import give_back
 from engine.steam.units import G_STANDARD, P_STANDARD
@@ -59,9 +59,11 @@ def altitude_of_pressure(p_barometer, *, geopotential=False):
     """
     (p,), scalar = admit(p_barometer=p_barometer)
     H = T_SEA_LEVEL / LAPSE_RATE * (1 - (p / P_STANDARD) ** (1 / EXPONENT))
-    require("p_barometer", p, (H >= -2000) & (H <= 11_000), "22 632 to 127 774 Pa",
-            why="the standard's lowest layer has no other pressures", hint="give the barometer in pascal")
-    return give_back(H if geopotential else EARTH_RADIUS * H / (EARTH_RADIUS - H), scalar)
+    z = H if geopotential else EARTH_RADIUS * H / (EARTH_RADIUS - H)
+    layer = limits_of("altitude")
+    require("p_barometer", p, (z > layer.low - 1e-6) & (z < layer.high + 1e-6), "a pressure found in the lowest layer",
+            why=f"it ends at {layer.low:g} and {layer.high:g} m", hint="give the barometer in pascal")
+    return give_back(z, scalar)
 
 
 def station_pressure(p_sea_level, altitude):
@@ -78,10 +80,8 @@ def station_pressure(p_sea_level, altitude):
     """
     (p0, z), scalar = admit(p_sea_level=p_sea_level, altitude=altitude)
     H = EARTH_RADIUS * z / (EARTH_RADIUS + z)
-    base = (p0 / P_STANDARD) ** (1 / EXPONENT) - LAPSE_RATE * H / T_SEA_LEVEL
-    require("p_sea_level", p0, base > 0, "a pressure that leaves air at this altitude",
-            hint="give the report in pascal (1013 hPa is 101 300 Pa)")
-    return give_back(P_STANDARD * base**EXPONENT, scalar)
+    relative = (p0 / P_STANDARD) ** (1 / EXPONENT) - LAPSE_RATE * H / T_SEA_LEVEL
+    return give_back(P_STANDARD * relative**EXPONENT, scalar)
 
 
 def leg_density(T_leg):

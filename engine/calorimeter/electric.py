@@ -110,7 +110,8 @@ def heater_reading(p_line, x, p_heater, power, sample_flow, *, power_loss=0.0, l
         p_line, x, p_heater, sample_flow, power=power, power_loss=power_loss, least_superheat=least_superheat)
     require("power_loss", lost, lost < P, _WORDS["power_loss"])
     h3 = np.asarray(wet_steam(p, x).h) + (P - lost) / m
-    after, state = saturated(p3), state_ph(p3, h3)
+    after, state = saturated(p3), state_ph(*np.atleast_1d(p3, h3))
+    state = state._replace(T=state.T.reshape(h3.shape), x=state.x.reshape(h3.shape))
     require("power", P, np.isfinite(state.T), "less: the steam would pass 1073.15 K",
             hint="check the power and the sample flow")
     superheat = np.asarray(state.T) - after.T

@@ -65,6 +65,7 @@ _BY_NAME: dict[str, Limits] = {
     "p_drain": _LINE_PRESSURE,
     "p_discharge": _LINE_PRESSURE,
     "altitude": Limits(-2000.0, 11_000.0, hint="the standard's lowest layer; altitude in metres"),
+    "p_sea_level": Limits(80e3, 110e3, hint="reports in hPa run from 870 to 1085; give pascal"),
     "leg_height": Limits(-300.0, 300.0, hint="metres, positive when the gauge is below the tapping"),
     "T_leg": Limits(273.16, 623.15, hint="the leg is filled with liquid water; give its temperature in kelvin"),
     "T_water": Limits(273.16, 373.15, hint="measure the volume of water cooled well below boiling"),

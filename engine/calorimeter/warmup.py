@@ -57,6 +57,7 @@ class WarmUp:
     effectiveness: float  # K of reading per K by which the body is short of steady
     condensate: float  # kg, formed while the body warms to saturation
     sample_flow: float  # kg/s
+    cp: float  # J/(kg K), of the steam that enters
     stages: tuple[Stage, Stage, Stage]
 
 
@@ -111,7 +112,8 @@ def warm_up(heat_capacity, area, sample_flow, p_exhaust, T_exhaust, T_start, T_a
     rate = (dry + UA) / C
     stages = (starved, condensing, Stage(t_2, T_2, (steady - T_2) * rate, rate))
     condensate = C * (T_2 - T_0) / np.asarray(sat.h_g - sat.h_f)
-    fields = (T_s, steady, T_in - effectiveness * (T_in - steady), t_2, 1 / rate, effectiveness, condensate, m)
+    final = T_in - effectiveness * (T_in - steady)
+    fields = (T_s, steady, final, t_2, 1 / rate, effectiveness, condensate, m, m_cp / m)
     return WarmUp(*(give_back(f, scalar) for f in fields), stages)
 
 
@@ -142,13 +144,17 @@ def reading_error(run: WarmUp, time):
     return give_back(np.where(time < run.time_condensing, run.T_saturation - run.T_final, dry), scalar)
 
 
-def storage_heat(run: WarmUp, time, cp):
-    """Heat stored by the body per kg of sample [J/kg] in the dry stage: a loss that fades; to be added to h.
+def storage_heat(run: WarmUp, time):
+    """Heat that the body still stores, per kg of sample [J/kg], at ``time`` [s]: a heat loss that fades.
 
-    ``cp`` of the exhaust steam [J/(kg K)].
+    It stands for the reading error of the dry stage as an enthalpy; before, there is nothing to read.
+
+    >>> run = warm_up(1470.0, 0.04, 25 / 3600, 101_325.0, 423.15, 293.15, 293.15)
+    >>> storage_heat(run, 1800.0)
+    385.
     """
-    (cp, error), scalar = admit(cp=cp, temperature_error=reading_error(run, time))
-    return give_back(-cp * error, scalar)
+    error = np.asarray(reading_error(run, time))
+    return give_back(-run.cp * error, error.ndim == 0)
 
 
 def time_to_within(run: WarmUp, temperature_error):
