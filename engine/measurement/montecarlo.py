@@ -173,8 +173,8 @@ def _reasons(budget: Budget, drawn: MonteCarlo, agree: bool):
                      f"uncertainties (mean moved by {moved:+.2f} u, skewness {drawn.skewness:+.2f}), which Monte Carlo "
                      "follows and the budget does not")
     elif drawn.kurtosis < 2.85:
-        yield Difference("flat", drawn.kurtosis, "limits without a known distribution dominate, so the true interval is "
-                     f"narrower than k u (kurtosis {drawn.kurtosis:.2f}, normal 3)")
+        yield Difference("flat", drawn.kurtosis, "limits without a known distribution dominate, so the true "
+                     f"interval is narrower than k u (kurtosis {drawn.kurtosis:.2f}, normal 3)")
     if drawn.kurtosis > 3.2 and budget.dof < 100:
         yield Difference("tails", budget.dof, f"few readings stand behind the uncertainty ({budget.dof:.0f} effective "
                      "degrees of freedom), which draws treat as long tails and the budget as a larger k")
@@ -279,7 +279,7 @@ def _summary(y: np.ndarray, tally: Counter, coverage: float, draws: int, seed: i
     """Describe the draws. Sorts ``y`` in place (NaN last), so that no copy is needed."""
     y.sort()
     usable = y[:len(y) - np.count_nonzero(np.isnan(y))]
-    needed = int(np.ceil(100 / (1 - coverage)))
+    needed = round(100 / (1 - coverage))
     if len(usable) < needed:
         raise InputError(Fault("draws with a result", len(usable), "", f"at least {needed} of {draws}",
                                why="too few are left to say where the result lies",
