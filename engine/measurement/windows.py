@@ -123,6 +123,8 @@ def settled_windows(time, channels: Mapping[str, object], limits: Mapping[str, S
     (1110, ['DRIFT', 'SIGNIFICANT'])
     """
     log = _checked(time, channels, limits, length, least)
+    if step is not None and not step >= 1:
+        raise InputError(Fault("step", step, "", "1 or more", why="it is the number of rows from window to window"))
     first, stop = _windows(log.time, length, step)
     flags = {name: np.empty(len(first), dtype=np.uint8) for name in limits}
     for part, rows in _stretches(first, stop):
