@@ -1,0 +1,142 @@
+"""The answer in words: what can be said, by how much, why, and what it assumes."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from engine.job.assessment import Assessment, Verdict
+from engine.job.case import T_LEG, describe
+from engine.job.fields import BY_ALTITUDE, NONE, UNDECIDED
+from engine.steam.units import UnitSystem, from_si
+
+# A shape beside the word, so that a verdict never hangs on colour alone
+SHAPES = {Verdict.READS: "●", Verdict.THIN: "◐", Verdict.CANNOT: "○", Verdict.SUPERHEATED: "△"}
+
+
+@dataclass(frozen=True)
+class Answer:
+    """``headline`` says what is known, ``reasons`` why and by how much, ``remedies`` what would change it,
+    ``assumed`` what was taken for granted; ``verdict`` in a word with its ``shape``."""
+
+    verdict: str
+    shape: str
+    headline: str
+    reasons: tuple[str, ...]
+    remedies: tuple[str, ...]
+    assumed: tuple[str, ...]
+
+
+def percent_points(share: float) -> str:
+    """A share of quality in percentage points, with its sign.
+
+    >>> percent_points(0.00123)
+    '+0.12 %pt'
+    """
+    return f"{100 * share:+.2f} %pt"
+
+
+def quality_text(x: float) -> str:
+    """Quality to four decimals, the most that any reading supports."""
+    return f"{x:.4f}"
+
+
+def answer(a: Assessment, units: UnitSystem) -> Answer:
+    """The answer for a reader who uses ``units``."""
+    headline, reasons, remedies = _BY_VERDICT[a.verdict](a, units)
+    return Answer(a.verdict.value, SHAPES[a.verdict], headline, reasons, remedies, assumptions(a, units))
+
+
+def _superheat(a: Assessment, units: UnitSystem) -> str:
+    return units.text(a.superheat, "difference")
+
+
+def _pressure(si: float, units: UnitSystem) -> str:
+    return f"{units.text(si, 'pressure')} abs"
+
+
+def _margin(a: Assessment, units: UnitSystem) -> str:
+    least = units.text(a.si["least_superheat"], "difference", 0)
+    return (f"The exhaust {'must be' if a.expected else 'is'} {_superheat(a, units)} superheated, "
+            f"{units.text(a.margin, 'difference')} above the least readable superheat of {least}.")
+
+
+def _reach(a: Assessment) -> str:
+    if a.x_least > 1:
+        return "Between these pressures not even dry steam arrives superheated enough to be read."
+    return f"Between these pressures the least readable quality is {quality_text(a.x_least)}."
+
+
+def _reads(a: Assessment, units: UnitSystem):
+    if a.expected:
+        headline = (f"For a wetness of {100 * (1 - a.x):.2f} % the exhaust thermometer must show "
+                    f"{units.text(a.T_exhaust, 'temperature')}.")
+    else:
+        headline = f"Quality in the line {quality_text(a.x)}, wetness {100 * (1 - a.x):.2f} %."
+    reasons, remedies = (_margin(a, units), _reach(a)), ()
+    if a.verdict is Verdict.THIN:
+        comfortable = units.text(a.si["comfortable_superheat"], "difference", 0)
+        reasons += (f"The margin is thin: below {comfortable} of superheat a small error of the thermometer or of the "
+                    "exhaust pressure can hide wet steam.",)
+        remedies = ("Lower the exhaust pressure or use a better thermometer, and check both before relying on it.",)
+    return headline, reasons, remedies
+
+
+def _cannot(a: Assessment, units: UnitSystem):
+    saturation = units.text(a.T_saturation, "temperature")
+    if a.expected:
+        wet = "" if a.superheat > 0 else f" The exhaust would be wet, quality {quality_text(a.x_exhaust)}."
+        headline = f"A wetness of {100 * (1 - a.x):.2f} % cannot be read here."
+        reasons = (f"The thermometer would show {units.text(a.T_exhaust, 'temperature')}; saturation at the exhaust is "
+                   f"{saturation}.{wet}",)
+    else:
+        bound = f"below {quality_text(a.x_below)}" if a.x_below < 1 else "not told at all"
+        headline = f"No quality can be given: it is {bound}."
+        shown = f"The thermometer shows {units.text(a.T_exhaust, 'temperature')}, "
+        if a.superheat > 0:
+            least = units.text(a.si["least_superheat"], "difference", 0)
+            reasons = (f"{shown}only {_superheat(a, units)} above saturation at the exhaust, {saturation}: less than "
+                       f"the {least} below which wet steam may pass for superheated.",)
+        else:
+            reasons = (f"{shown}not above saturation at the exhaust, {saturation}: wet exhaust steam has no enthalpy "
+                       "that pressure and temperature could tell.",)
+    remedies = ("A lower exhaust pressure, a separator ahead of the orifice, or electric superheating would extend "
+                "the reach; check first that both pressures are right, gauge or absolute.",)
+    return headline, (*reasons, _reach(a)), remedies
+
+
+def _superheated(a: Assessment, units: UnitSystem):
+    by = units.text(a.line_superheat, "difference")
+    headline = f"The line is superheated by {by}: there is no wetness to measure."
+    reasons = (f"The enthalpy found is above that of dry saturated steam at {_pressure(a.si['p_line'], units)}.",)
+    remedies = ("If the line should be wet, check the exhaust thermometer, and whether the line pressure was meant "
+                "gauge or absolute.",)
+    return headline, reasons, remedies
+
+
+_BY_VERDICT = {Verdict.READS: _reads, Verdict.THIN: _reads, Verdict.CANNOT: _cannot, Verdict.SUPERHEATED: _superheated}
+
+
+def assumptions(a: Assessment, units: UnitSystem) -> tuple[str, ...]:
+    """What the answer takes for granted, with the size of each correction where it has one."""
+    case, si = a.case, a.si
+    source = "standard atmosphere at the altitude" if case["barometer_source"] == BY_ALTITUDE else "as entered"
+    unit = {"SI": "kPa", "US": "inHg"}[units.name]
+    lines = [f"Barometer {from_si(si.p_barometer, unit, 'pressure'):.2f} {unit}, {source}."]
+    if case["leg_height"] and case["leg_height"].value:
+        lines.append(f"Water leg of {describe(case['leg_height'])} taken off the line gauge, water at "
+                     f"{units.text(T_LEG, 'temperature', 0)}.")
+    method = case["heat_loss_method"]
+    if method == UNDECIDED:
+        lines.append("Heat loss not decided: taken as nothing, so the steam may be drier than shown.")
+    elif method == NONE:
+        lines.append("Heat loss knowingly taken as nothing.")
+    else:
+        size = f", {percent_points(a.terms.heat_loss / (a.line.h_g - a.line.h_f))}"
+        lines.append(f"Heat loss {units.text(a.terms.heat_loss, 'enthalpy')} of sample, by {method}{size}.")
+    if a.velocities.exhaust:
+        effect = 0.5 * (1 - a.terms.recovery) * a.terms.exhaust_velocity**2 - 0.5 * a.terms.line_velocity**2
+        lines.append(f"Exhaust velocity {units.text(a.velocities.exhaust, 'velocity')}, recovery factor "
+                     f"{a.terms.recovery:g}: kinetic energy {percent_points(effect / (a.line.h_g - a.line.h_f))}.")
+    else:
+        lines.append("Kinetic energy left out: no sample flow and exhaust bore given.")
+    return (*lines, "Steam properties: IAPWS-IF97. The figure carries no uncertainty yet.")
