@@ -16,11 +16,11 @@ import numpy as np
 from engine.calorimeter.rig_inputs import admit, gather, limits_of, require
 from engine.calorimeter.status import Status
 from engine.calorimeter.throttle import Quality
+from engine.calorimeter.verdict import verdict
 from engine.calorimeter.wet import wet_steam
-from engine.steam import saturated, state_ph, vapour
-from engine.steam.arrays import at_the_door, give_back
+from engine.steam import saturated, saturation_temperature, state_ph, vapour
+from engine.steam.arrays import at_the_door, give_back, in_blocks
 
-_ROUNDING = 1e-9
 _WORDS = {"p_heater": "at most the line pressure", "power_loss": "less than the power"}
 
 
@@ -48,38 +48,30 @@ def electric_quality(p_line, p_heater, T_heater, power, sample_flow, *, power_lo
     named = {"p_line": p_line, "p_heater": p_heater, "T_heater": T_heater, "power": power,
              "sample_flow": sample_flow, "power_loss": power_loss, "least_superheat": least_superheat}
     arrays, scalar = at_the_door(**named)
-    a = dict(zip(named, arrays, strict=True))
-    inside = np.logical_and.reduce([limits_of(name).hold(v) for name, v in a.items()])
-    inside &= (a["p_heater"] <= a["p_line"]) & (a["power_loss"] < a["power"])
-    missing = np.logical_or.reduce([np.isnan(v) for v in a.values()])
     if scalar:
+        p, p3, _, P, _, lost, _ = arrays
         gather(lambda: admit(**named),
-               lambda: require("p_heater", a["p_heater"], a["p_heater"] <= a["p_line"], _WORDS["p_heater"]),
-               lambda: require("power_loss", a["power_loss"], a["power_loss"] < a["power"], _WORDS["power_loss"]))
-    p, p3, T3, P, m, lost, least = (np.where(inside, v, w) for v, w in zip(
-        a.values(), (1e6, 1e6, 500.0, 1.0, 1.0, 0.0, 0.0), strict=True))
-
-    line, after = saturated(p), saturated(p3)
-    superheat = T3 - after.T
-    wet = ~(superheat > 0)
-    h3 = np.where(wet, after.h_g, np.asarray(vapour(p3, np.maximum(T3, after.T)).h))
-    h = h3 - (P - lost) / m
-    x = (h - line.h_f) / (line.h_g - line.h_f)
-    status = np.select(
-        [missing, ~inside | (x < 0), wet, x > 1 + _ROUNDING, superheat < least],
-        [Status.MISSING, Status.OUT_OF_RANGE, Status.NOT_SUPERHEATED, Status.LINE_SUPERHEATED, Status.THIN_MARGIN],
-        Status.OK).astype(np.int8)
+               lambda: require("p_heater", p3, p3 <= p, _WORDS["p_heater"]),
+               lambda: require("power_loss", lost, lost < P, _WORDS["power_loss"]))
+    *columns, status = in_blocks(lambda *block: _electric(dict(zip(named, block, strict=True))), 6, *arrays)
     if scalar:
-        require("power", P, status < Status.OUT_OF_RANGE, "no more than heats the sample from water",
-                why="the energy balance leaves the line colder than saturated water",
+        require("power", P, status < Status.OUT_OF_RANGE, "a power that fits the sample flow",
+                why="the energy balance leaves the line colder than saturated water, or hotter than steam is covered",
                 hint="check the power and the sample flow")
-    hot = status == Status.LINE_SUPERHEATED
-    answered, within = status <= Status.THIN_MARGIN, status < Status.OUT_OF_RANGE
-    T_hot = np.asarray(state_ph(p, np.where(hot, h, line.h_g)).T)
-    columns = (np.where(answered, x, np.nan), np.where(answered | hot, h, np.nan), np.where(within, superheat, np.nan),
-               np.where(within, np.where(hot, T_hot - line.T, 0.0), np.nan),
-               np.where(status == Status.NOT_SUPERHEATED, x, np.nan))
-    return Quality(*(give_back(c, scalar) for c in columns), Status(int(status)) if scalar else status)
+        return Quality(*map(float, columns), Status(int(status)))
+    return Quality(*columns, status.astype(np.int8))
+
+
+def _electric(a):
+    """The columns of ``Quality`` over 1-d arrays by name."""
+    inside = np.logical_and.reduce([limits_of(name).hold(values) for name, values in a.items()])
+    inside &= (a["p_heater"] <= a["p_line"]) & (a["power_loss"] < a["power"])
+    missing = np.logical_or.reduce([np.isnan(values) for values in a.values()])
+    p, p3, T3, P, m, lost, least = (np.where(inside, values, harmless) for values, harmless in zip(
+        a.values(), (1e6, 1e6, 500.0, 1.0, 1.0, 0.0, 0.0), strict=True))
+    T_sat = saturation_temperature(p3)
+    h3 = vapour(p3, np.maximum(T3, T_sat)).h
+    return verdict(p, h3 - (P - lost) / m, ~(T_sat < T3), T3 - T_sat, least, missing, inside)
 
 
 def power_needed(p_line, x, p_heater, sample_flow, superheat=5.0, *, power_loss=0.0):

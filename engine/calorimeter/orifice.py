@@ -101,7 +101,7 @@ def flux_at(p_line, x, p_throat):
     >>> flux_at(1e6, 1.0, 576_600.0)
     1444.0
     """
-    (p, x, p_t), scalar = admit(p_line=p_line, x=x, p=p_throat)
+    (p, x, p_t), scalar = admit(p_line=p_line, x=x, p_throat=p_throat)
     return give_back(_flux_at(p, x, p_t), scalar)
 
 
@@ -144,7 +144,7 @@ def orifice_flow(p_line, x, p_exhaust, bore, discharge, *, weighed=None) -> Orif
     >>> orifice_flow(1e6, 0.98, 101_325.0, 0.003, 0.85, weighed=30.0 / 3600).discharge
     0.809
     """
-    known = {} if weighed is None else {"sample_flow": weighed}
+    known = {} if weighed is None else {"weighed": weighed}
     (p, p2, x, d, Cd, *flow), scalar = _pressures(p_line, p_exhaust, x=x, bore=bore, discharge=discharge, **known)
     area = np.pi / 4 * d * d
     flux, choked = orifice_mass_flux(p, x, p2)

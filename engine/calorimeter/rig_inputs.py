@@ -63,6 +63,7 @@ _BY_NAME: dict[str, Limits] = {
     "p_separator": _LINE_PRESSURE,
     "p_heater": _LINE_PRESSURE,
     "p_drain": _LINE_PRESSURE,
+    "p_throat": _LINE_PRESSURE,
     "p_discharge": _LINE_PRESSURE,
     "altitude": Limits(-2000.0, 11_000.0, hint="the standard's lowest layer; altitude in metres"),
     "p_sea_level": Limits(80e3, 110e3, hint="reports in hPa run from 870 to 1085; give pascal"),

@@ -20,11 +20,12 @@ import numpy as np
 from engine.calorimeter.rig_inputs import admit, choose, gather, limits_of, require
 from engine.calorimeter.status import Status
 from engine.calorimeter.throttle import exhaust_temperature, least_quality, quality
+from engine.calorimeter.verdict import verdict
 from engine.calorimeter.wet import wet_steam
-from engine.steam import saturated, saturation_pressure, state_ph
-from engine.steam.arrays import at_the_door, give_back
+from engine.steam import saturated, saturation_pressure
+from engine.steam.arrays import at_the_door, give_back, in_blocks
 
-_ROUNDING = 1e-9  # a quality this little above 1 is rounding
+_ROUNDING = 1e-9  # of a quality of 1
 
 
 class MassBasis(StrEnum):
@@ -110,52 +111,57 @@ def separated_quality(p_line, p_exhaust, T_exhaust, water_mass, weighed_mass, ba
     0.9101
     """
     basis = choose("basis of the weighed mass", basis, MassBasis)
-    p_separator = p_line if p_separator is None else p_separator
-    names = tuple(terms)
-    (p, p2, T, M_w, M, p_s, q_s, *more), scalar = at_the_door(
-        p_line=p_line, p_exhaust=p_exhaust, T_exhaust=T_exhaust, water_mass=water_mass, weighed_mass=weighed_mass,
-        p_separator=p_separator, vessel_loss=vessel_loss, **terms)
-    terms = dict(zip(names, more, strict=True))
-    own = {"p_line": p, "p_separator": p_s, "water_mass": M_w, "weighed_mass": M, "vessel_loss": q_s}
-    floor = M_w if basis is MassBasis.TOTAL else np.zeros_like(M)
-    enough = floor < M
+    own = {"p_line": p_line, "p_separator": p_line if p_separator is None else p_separator, "water_mass": water_mass,
+           "weighed_mass": weighed_mass, "vessel_loss": vessel_loss}
+    named = own | {"p_exhaust": p_exhaust, "T_exhaust": T_exhaust, "least_superheat": 0.0} | terms
+    arrays, scalar = at_the_door(**named)
     if scalar:
-        gather(lambda: admit(**own),
-               lambda: require("p_separator", p_s, p_s <= p, "at most the line pressure"),
-               lambda: require("weighed_mass", M, enough, f"more than {float(floor):g} kg",
-                               why="some steam went through the throttle", hint="check which mass was weighed"),
-               lambda: quality(float(p_s), float(p2), float(T), **_floats(terms)))
-    inside = enough & (p_s <= p) & np.logical_and.reduce([limits_of(name).hold(v) for name, v in own.items()])
-    missing = np.logical_or.reduce([np.isnan(v) for v in own.values()])
-    p, p_s, M_w, M, q_s = (np.where(inside, v, w) for v, w in ((p, 1e6), (p_s, 1e6), (M_w, 0.0), (M, 1.0), (q_s, 0.0)))
+        _refuse(dict(zip(named, map(float, arrays), strict=True)), own, basis)
+    *columns, status = in_blocks(
+        lambda *block: _separated(dict(zip(named, block, strict=True)), own, basis), 8, *arrays)
+    if scalar:
+        require("vessel_loss", arrays[4], status < Status.OUT_OF_RANGE,
+                "a loss that leaves the line wet or superheated",
+                why="the energy balance leads outside the steam that is covered")
+        return Separated(*map(float, columns), Status(int(status)))
+    return Separated(*columns, status.astype(np.int8))
 
-    stage = quality(*_one_up(p_s, p2, T), **dict(zip(names, _one_up(*more), strict=True)))
-    stage = stage._replace(**{k: np.reshape(v, p.shape) for k, v in stage._asdict().items()})
-    line, sep = saturated(p), saturated(p_s)
-    whole = M if basis is MassBasis.TOTAL else M + M_w
-    z = M_w / whole
-    h_throttled = np.where(stage.status == Status.NOT_SUPERHEATED,
-                           sep.h_f + stage.x_bound * (sep.h_g - sep.h_f), stage.h_line)
-    h = (1 - z) * h_throttled + z * sep.h_f + q_s
-    x = (h - line.h_f) / (line.h_g - line.h_f)
 
-    thin = terms.get("least_superheat", 0.0)
-    status = np.select(
-        [missing | (stage.status == Status.MISSING), ~inside | (stage.status == Status.OUT_OF_RANGE) | (x < 0),
-         stage.status == Status.NOT_SUPERHEATED, x > 1 + _ROUNDING, stage.superheat < thin],
-        [Status.MISSING, Status.OUT_OF_RANGE, Status.NOT_SUPERHEATED, Status.LINE_SUPERHEATED, Status.THIN_MARGIN],
-        Status.OK).astype(np.int8)
-    hot = status == Status.LINE_SUPERHEATED
-    T_hot = np.asarray(state_ph(*_one_up(p, np.where(hot, h, line.h_g))).T).reshape(p.shape)
-    answered, within = status <= Status.THIN_MARGIN, status < Status.OUT_OF_RANGE
-    x_t = (h_throttled - sep.h_f) / (sep.h_g - sep.h_f)
-    columns = (np.where(answered, x, np.nan), np.where(answered | hot, h, np.nan), stage.superheat,
-               np.where(within, np.where(hot, T_hot - line.T, 0.0), np.nan),
-               np.where(status == Status.NOT_SUPERHEATED, x, np.nan), np.where(within, x_t, np.nan),
-               np.where(inside, z, np.nan))
-    if scalar and status >= Status.OUT_OF_RANGE:
-        require("vessel_loss", q_s, x >= 0, "terms that leave the line between water and steam")
-    return Separated(*(give_back(c, scalar) for c in columns), Status(int(status)) if scalar else status)
+def _separated(a, own, basis):
+    """The columns of ``Separated`` over 1-d arrays by name; ``own`` names those not handed to the throttle."""
+    inside = _weighed_enough(a, basis) & (a["p_separator"] <= a["p_line"])
+    inside &= np.logical_and.reduce([limits_of(name).hold(a[name]) for name in own])
+    missing = np.logical_or.reduce([np.isnan(a[name]) for name in own])
+    p, p_s, M_w, M, q_s = (np.where(inside, a[name], harmless)
+                           for name, harmless in zip(own, (1e6, 1e6, 0.0, 1.0, 0.0), strict=True))
+
+    stage = quality(p_s, **{name: values for name, values in a.items() if name not in own})
+    wet = stage.status == Status.NOT_SUPERHEATED
+    sep = saturated(p_s)
+    h_throttled = np.where(wet, sep.h_f + stage.x_bound * (sep.h_g - sep.h_f), stage.h_line)
+    z = M_w / (M if basis is MassBasis.TOTAL else M + M_w)
+    *columns, status = verdict(
+        p, (1 - z) * h_throttled + z * sep.h_f + q_s, wet, stage.superheat, a["least_superheat"],
+        missing | (stage.status == Status.MISSING), inside & (stage.status < Status.OUT_OF_RANGE))
+    x_throttled = (h_throttled - sep.h_f) / (sep.h_g - sep.h_f)
+    answered = status < Status.OUT_OF_RANGE
+    return (*columns, np.where(answered, x_throttled, np.nan), np.where(answered, z, np.nan), status)
+
+
+def _weighed_enough(a, basis):
+    return a["weighed_mass"] > (a["water_mass"] if basis is MassBasis.TOTAL else 0.0)
+
+
+def _refuse(a, own, basis):
+    """InputError for every unusable input of a scalar call, those of the throttled stage among them."""
+    least = a["water_mass"] if basis is MassBasis.TOTAL else 0.0
+    gather(lambda: admit(**{name: a[name] for name in own}),
+           lambda: require("p_separator", np.array(a["p_separator"]), np.array(a["p_separator"] <= a["p_line"]),
+                           "at most the line pressure"),
+           lambda: require("weighed_mass", np.array(a["weighed_mass"]), np.array(_weighed_enough(a, basis)),
+                           f"more than {least:g} kg", why="some steam went through the throttle",
+                           hint="check which mass was weighed"),
+           lambda: quality(a["p_separator"], **{name: value for name, value in a.items() if name not in own}))
 
 
 def separated_reading(p_line, x, p_exhaust, drain_fraction, *, p_separator=None, vessel_loss=0.0,
@@ -206,12 +212,3 @@ def _line_inputs(p_line, x, p_exhaust, p_separator, vessel_loss, **other):
                            p_separator=p_line if p_separator is None else p_separator, vessel_loss=vessel_loss)
     require("p_separator", arrays[-2], arrays[-2] <= arrays[0], "at most the line pressure")
     return arrays, scalar
-
-
-def _one_up(*arrays):
-    """At least one dimension, so that the functions below answer with a status and do not raise."""
-    return [np.atleast_1d(a) for a in arrays]
-
-
-def _floats(named):
-    return {name: float(value) for name, value in named.items()}

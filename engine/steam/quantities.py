@@ -93,6 +93,8 @@ _ROWS = (
     ("bore", "d_o", "length", "m", "orifice bore"),
     ("discharge", "C_d", "fraction", "1", "discharge coefficient"),
     ("mass", "M", "mass", "kg", "mass"),
+    ("weighed", "ṁ_w", "mass flow", "kg/s", "weighed sample flow"),
+    ("p_throat", "p_t", "pressure", "Pa", "throat pressure"),
     ("length", "L", "length", "m", "length"),
     ("roughness", "ε", "length", "m", "wall roughness"),
     ("loss_coefficient", "K", "number", "1", "loss coefficient of the fittings"),

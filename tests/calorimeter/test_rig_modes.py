@@ -127,6 +127,11 @@ def test_a_losing_vessel_needs_more_drained():
     assert drain_needed(P, 0.9, P2, vessel_loss=5000.0).drain_fraction > drain_needed(P, 0.9, P2).drain_fraction
 
 
+def test_a_loss_beyond_all_steam_is_refused():
+    with pytest.raises(InputError, match="a loss that leaves the line wet or superheated"):
+        separated_quality(P, P2, 385.0, 0.3, 3.0, STEAM, vessel_loss=-3e6)
+
+
 # --- electric ---------------------------------------------------------------------------------------
 
 M = 12 / 3600
@@ -178,5 +183,5 @@ def test_electric_refusals():
     assert {f.name for f in caught.value.faults} == {"p_heater", "sample_flow", "power_loss"}
     with pytest.raises(InputError, match="the steam would pass 1073.15 K"):
         heater_reading(6e5, 0.9, 6e5, 1e5, M)
-    with pytest.raises(InputError, match="leaves the line colder than saturated water"):
+    with pytest.raises(InputError, match="electric power: .* needs a power that fits the sample flow"):
         electric_quality(6e5, 6e5, 440.0, 1e5, M)
