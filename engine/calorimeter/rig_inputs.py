@@ -117,9 +117,9 @@ def admit(**named) -> tuple[list[np.ndarray], bool]:
 
     Keyword names are names of the quantity table, values numbers or arrays that broadcast.
 
-    >>> admit(emissivity=1.2, immersion=-0.01)
+    >>> admit(film=0.0, immersion=-0.01)
     Traceback (most recent call last):
-    engine.steam.errors.InputError: emissivity: got 1.2 1, needs at least 0 and at most 1
+    engine.steam.errors.InputError: film coefficient: got 0 W/(m² K), needs more than 0 W/(m² K)
     immersion length: got -0.01 m, needs at least 0 m
     """
     arrays, scalar = at_the_door(**named)

@@ -89,7 +89,7 @@ def test_an_exhaust_above_the_line_is_refused():
                  lambda: orifice_flow(1e5, 0.98, 2e5, 0.003, 0.6)):
         with pytest.raises(InputError, match="less than the line pressure"):
             call()
-    with pytest.raises(InputError, match="discharge coefficient: got 97 1, needs more than 0 and at most 1.5"):
+    with pytest.raises(InputError, match="discharge coefficient: got 97.*, needs more than 0 and at most 1.5"):
         orifice_flow(1e6, 0.98, 1e5, 0.003, 97.0)
 
 
@@ -235,6 +235,6 @@ def test_sampling_refusals():
         isokinetic_port_area(3.0, 2.0, 0.15)
     with pytest.raises(InputError, match="areas inside are in square metres"):
         isokinetic_sample_flow(60.0, 2.0, 0.15)
-    with pytest.raises(InputError, match="wetness: got 2 1, needs at least 0 and less than 1\n.*not a percentage"):
+    with pytest.raises(InputError, match="wetness: got 2.*, needs at least 0 and less than 1\n.*not a percentage"):
         wetness_sampled(2.0, 1.0)
     assert pipe_area(0.2) == pytest.approx(np.pi / 100)
