@@ -53,6 +53,8 @@ class Component:
             faults.append(Fault(f"sign of '{self.name}'", self.sign, "", "1 or -1"))
         if faults:
             raise InputError(*faults)
+        object.__setattr__(self, "u", float(self.u))
+        object.__setattr__(self, "dof", float(self.dof))
 
 
 @dataclass(frozen=True)
@@ -75,6 +77,7 @@ class Input:
                    for name in sorted({n for n in names if names.count(n) > 1})]
         if faults:
             raise InputError(*faults)
+        object.__setattr__(self, "value", float(self.value))
 
     @property
     def u(self) -> float:
@@ -121,7 +124,9 @@ def type_a(name: str, s: float, n: int, n_eff: float | None = None, **labels) ->
 
     For independent readings this is s/√n with n - 1 degrees of freedom (GUM 4.2.3). Readings that
     follow one another scatter less than their true spread, by the factor (1 - 1/n_eff) in s²; this
-    is put back, so that u² = s² (n - 1)/(n (n_eff - 1)), which is s²/n again when n_eff = n.
+    is put back, so that u² = s² (n - 1)/(n (n_eff - 1)), which is s²/n again when n_eff = n. Readings
+    worth fewer than two independent ones are taken as two: the mean is then about as doubtful as a
+    single reading, with one degree of freedom.
 
     >>> round(type_a("scatter", 1.489, 20).u, 3)  # JCGM 100, 4.4.3
     0.333
@@ -129,11 +134,13 @@ def type_a(name: str, s: float, n: int, n_eff: float | None = None, **labels) ->
     0.726
     """
     n_eff = n if n_eff is None else n_eff
-    if not (_is_number(n_eff) and _is_number(n) and 1 < n_eff <= n < inf):
-        raise InputError(Fault(f"number of independent readings of '{name}'", n_eff, "",
-                               f"more than 1 and no more than the {n} readings",
-                               why="one independent reading says nothing about its own scatter",
-                               hint="take more readings, further apart"))
+    if not (_is_number(n) and 2 <= n < inf):
+        raise InputError(Fault(f"number of readings of '{name}'", n, "", "2 or more",
+                               why="one reading says nothing about its own scatter",
+                               hint="take more readings, or give the scatter known from elsewhere with 'normal'"))
+    if not (_is_number(n_eff) and 1 <= n_eff <= n):
+        raise InputError(Fault(f"number of independent readings of '{name}'", n_eff, "", f"1 to {n}, the readings"))
+    n_eff = max(n_eff, 2.0)
     return Component(name, s * sqrt((n - 1) / (n * (n_eff - 1))), "t", n_eff - 1, **labels)
 
 

@@ -159,15 +159,17 @@ class Instrument:
             return Doubt(float(total), {name: float(u) for name, u in terms.items()})
         return Doubt(total, terms)
 
-    def components(self, reading: float, *, group: str = "", shared: str = "") -> tuple[Component, ...]:
+    def components(self, reading: float, *, group: str = "", shared: str = "",
+                   read_once: bool = False) -> tuple[Component, ...]:
         """The same as components for a budget, at one reading.
 
         ``group`` names the instrument in the budget. ``shared`` is a label for an instrument that
-        reads more than one quantity: its errors are then the same in all of them, except what is
-        lost in reading it off, which is new each time.
+        serves more than one quantity: its errors are then the same in all of them, except what is
+        lost in reading it off, which is new each time; unless it was ``read_once`` for all of them,
+        as a barometer is.
         """
         own = () if self.kind == "certificate" else (rectangular(self._class_name, float(self.tolerance(reading))),)
-        return tuple(replace(c, group=c.group or group, source=c.source or _shared_source(c, shared))
+        return tuple(replace(c, group=c.group or group, source=c.source or _shared_source(c, shared, read_once))
                      for c in own + self.extra)
 
     def cautions(self, reading: float) -> tuple[str, ...]:
@@ -189,8 +191,8 @@ class Instrument:
         return f"{self.grade} % of span" if self.kind == "transmitter" else f"class {self.grade}"
 
 
-def _shared_source(term: Component, shared: str) -> str:
-    return f"{shared}: {term.name}" if shared and term.name not in _READ_ANEW else ""
+def _shared_source(term: Component, shared: str, read_once: bool) -> str:
+    return f"{shared}: {term.name}" if shared and (read_once or term.name not in _READ_ANEW) else ""
 
 
 def _percent(text: str) -> float:

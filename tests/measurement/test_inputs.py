@@ -62,10 +62,23 @@ def test_type_a_of_dependent_readings_is_larger_and_surer_of_nothing():
     assert (independent.dof, dependent.dof) == (29, 9)
 
 
-@pytest.mark.parametrize("n_eff", [1.0, 0.0, 31.0, nan])
-def test_type_a_refuses(n_eff):
-    with pytest.raises(InputError, match="number of independent readings of 'scatter'"):
-        type_a("scatter", 1.0, 30, n_eff=n_eff)
+def test_type_a_of_hardly_independent_readings_is_that_of_one_reading():
+    for n_eff in (1.0, 1.5, 2.0):
+        got = type_a("scatter", 1.0, 30, n_eff=n_eff)
+        assert (got.u, got.dof) == (pytest.approx(sqrt(29 / 30)), 1.0)
+    assert type_a("scatter", 0.0, 30, n_eff=1.0).u == 0.0  # a gauge that was never seen to move
+
+
+@pytest.mark.parametrize(("n", "n_eff", "message"), [
+    (1, None, "number of readings of 'scatter': got 1, needs 2 or more"),
+    (nan, None, "number of readings of 'scatter': got nan"),
+    (30, 0.5, "number of independent readings of 'scatter': got 0.5, needs 1 to 30, the readings"),
+    (30, 31.0, "got 31, needs 1 to 30"),
+    (30, nan, "got nan, needs 1 to 30"),
+])
+def test_type_a_refuses(n, n_eff, message):
+    with pytest.raises(InputError, match=message):
+        type_a("scatter", 1.0, n, n_eff=n_eff)
 
 
 def test_type_a_spread_is_unbiased_for_readings_that_follow_one_another():

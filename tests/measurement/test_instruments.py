@@ -109,6 +109,8 @@ def test_one_instrument_for_two_quantities_cancels_in_their_difference_but_for_t
     budget = uncertainty_budget(lambda a, b: a - b, inputs)
     assert budget.u == pytest.approx(sqrt(2) * 50 / sqrt(3), rel=1e-6)
     assert budget.groups == ("gauge",)
+    inputs = [Input(n, p, gauge.components(p, shared="gauge", read_once=True)) for n, p in (("a", 9e5), ("b", 2e5))]
+    assert uncertainty_budget(lambda a, b: a - b, inputs).u == pytest.approx(0, abs=1e-6)
 
 
 def test_cautions():
