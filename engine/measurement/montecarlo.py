@@ -116,7 +116,7 @@ def monte_carlo(model: Model, inputs: Sequence[Input], *, on_result: Sequence[Co
     """
     _check_coverage(coverage)
     sources = gather(inputs, on_result, correlations)
-    _check_draws(sources, draws, seed)
+    _check_draws(sources, draws, seed, coverage)
     instruments, sampling = _split(sources)
     y = np.empty(draws)
     shift = np.empty(draws) if sampling.labels else None
@@ -279,9 +279,8 @@ def _summary(y: np.ndarray, tally: Counter, coverage: float, draws: int, seed: i
     """Describe the draws. Sorts ``y`` in place (NaN last), so that no copy is needed."""
     y.sort()
     usable = y[:len(y) - np.count_nonzero(np.isnan(y))]
-    needed = round(100 / (1 - coverage))
-    if len(usable) < needed:
-        raise InputError(Fault("draws with a result", len(usable), "", f"at least {needed} of {draws}",
+    if len(usable) < _needed(coverage):
+        raise InputError(Fault("draws with a result", len(usable), "", f"at least {_needed(coverage)} of {draws}",
                                why="too few are left to say where the result lies",
                                hint="the reading cannot be evaluated: see what its status says"))
     mean, deviation = usable.mean(), usable - usable.mean()
@@ -307,10 +306,17 @@ def _intervals(ordered: np.ndarray, coverage: float) -> tuple[tuple[float, float
             (float(ordered[least]), float(ordered[least + span])))
 
 
-def _check_draws(sources: Sources, draws: int, seed: int) -> None:
+def _needed(coverage: float) -> int:
+    """Results without which an end of the interval would hang on a few draws (100 lie beyond the two ends)."""
+    return round(100 / (1 - coverage))
+
+
+def _check_draws(sources: Sources, draws: int, seed: int, coverage: float) -> None:
     faults = []
-    if not isinstance(draws, int | np.integer) or not _LEAST_DRAWS <= draws <= _MOST_DRAWS:
-        faults.append(Fault("number of draws", draws, "", f"a whole number from {_LEAST_DRAWS} to {_MOST_DRAWS}"))
+    least = max(_LEAST_DRAWS, _needed(coverage))
+    if not isinstance(draws, int | np.integer) or not least <= draws <= _MOST_DRAWS:
+        faults.append(Fault("number of draws", draws, "", f"a whole number from {least} to {_MOST_DRAWS}",
+                            why=f"an interval for {coverage:g} needs draws beyond its ends"))
     if not isinstance(seed, int | np.integer) or seed < 0:
         faults.append(Fault("seed", seed, "", "a whole number, zero or more"))
     tied = (sources.correlation != 0).sum(axis=0) > 1
