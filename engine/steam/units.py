@@ -66,10 +66,11 @@ ALIASES = {"C": "°C", "degC": "°C", "F": "°F", "degF": "°F", "psia": "psi", 
 
 def _row(unit: str, kind: str) -> tuple[float, float]:
     if kind not in UNITS:
-        raise InputError(Fault("kind of quantity", kind, "", "one of: " + ", ".join(UNITS)))
+        raise InputError(Fault("kind of quantity", shortened(kind), "", "one of: " + ", ".join(UNITS)))
     found = UNITS[kind].get(ALIASES.get(unit, unit)) if isinstance(unit, str) else None
     if found is None:
-        raise InputError(Fault(f"unit of a {kind}", unit, "", "one of: " + ", ".join(UNITS[kind]), name="unit"))
+        known = "one of: " + ", ".join(UNITS[kind])
+        raise InputError(Fault(f"unit of a {kind}", shortened(unit), "", known, name="unit"))
     return found
 
 
