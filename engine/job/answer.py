@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 from engine.job.assessment import Assessment, Verdict
 from engine.job.case import T_LEG, describe
-from engine.job.fields import BY_ALTITUDE, NONE, UNDECIDED
+from engine.job.fields_path import BY_ALTITUDE, NONE, UNDECIDED
 from engine.steam.units import UnitSystem, from_si
 
 # A shape beside the word, so that a verdict never hangs on colour alone

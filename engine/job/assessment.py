@@ -23,9 +23,9 @@ from engine.calorimeter import (
     velocity,
 )
 from engine.job.case import Case, Resolved, resolve
-from engine.job.fields import BY_NORMAL, EXPECTED, UNDECIDED
+from engine.job.fields_path import BY_NORMAL, EXPECTED, UNDECIDED
 from engine.job.terms import Terms, check_method, terms_at
-from engine.steam import Saturated, saturated, saturation_temperature
+from engine.steam import Saturated, saturated, saturation_temperature, vapour
 from engine.steam.errors import Fault, InputError
 
 
@@ -78,6 +78,7 @@ class Assessment:
     x_least     least readable quality, at the least superheat asked for
     margin      superheat above the least readable one [K]
     line_superheat      [K], 0 for a wet line
+    read_state  the exhaust steam as the thermometer reads it; None where that is not superheated
     """
 
     case: Case
@@ -102,6 +103,7 @@ class Assessment:
     reach_path: Path | None
     bore_path: Path | None
     states: tuple[StatePoint, ...]
+    read_state: StatePoint | None
 
     @property
     def expected(self) -> bool:
@@ -160,7 +162,8 @@ def assess(case: Case) -> Assessment:
         bore_path = constant_bore_path(p1, float(path.x[0]), p2, velocities.sample)
     return Assessment(case, si, verdict, status, x, x_below, as_read, without_kinetic, T, T_sat, superheat, x_exhaust,
                       x_least, superheat - least, line_superheat, terms, line, velocities, path, reach_path,
-                      bore_path, _states(path, bore_path, velocities))
+                      bore_path, _states(path, bore_path, velocities),
+                      _read_state(p2, T, superheat, velocities))
 
 
 def _check_normal(case: Case, si: Resolved) -> None:
@@ -221,6 +224,13 @@ def _velocities(si: Resolved, path: Path, terms: Terms, line: Saturated) -> Velo
         kinetic_quality(c, si["p_line"]) if c else None)
 
 
+def _read_state(p: float, T: float, superheat: float, velocities: Velocities) -> StatePoint | None:
+    if not superheat > 0:
+        return None
+    steam = vapour(p, T)
+    return StatePoint("Exhaust as read", p, T, None, steam.h, steam.s, steam.v, velocities.exhaust)
+
+
 def _states(path: Path, bore_path: Path | None, velocities: Velocities) -> tuple[StatePoint, ...]:
     def point(name: str, of: Path, k: int, speed: float | None) -> StatePoint:
         superheated = of.status[k] == 1
@@ -228,7 +238,7 @@ def _states(path: Path, bore_path: Path | None, velocities: Velocities) -> tuple
                           float(of.x[k]), *(float(column[k]) for column in (of.h, of.s, of.v)), speed)
 
     rows = [point("Line", path, 0, velocities.sample or velocities.line)]
-    if path.dries_out:
+    if path.dries_out and path.p_dry > path.p[-1]:
         rows.append(point("Dries out", path, int(np.argmin(np.abs(path.p - path.p_dry))), None))
     rows.append(point("Exhaust", path, -1, velocities.exhaust))
     if bore_path is not None:

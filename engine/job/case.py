@@ -8,7 +8,9 @@ from functools import cache
 from types import MappingProxyType
 
 from engine.calorimeter import leg_density, standard_pressure
-from engine.job.fields import BY_ALTITUDE, CHOICE, FIELDS, QUANTITY, Entry, Field
+from engine.job.fields import FIELDS
+from engine.job.fields_path import BY_ALTITUDE
+from engine.job.rows import CHOICE, QUANTITY, Entry, Field
 from engine.steam.errors import Fault, InputError
 from engine.steam.units import G_STANDARD, absolute_from_gauge, from_si, to_si
 

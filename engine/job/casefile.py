@@ -10,7 +10,8 @@ import zlib
 
 from engine import __version__
 from engine.job.case import ABSOLUTE, BLANK, GAUGE, Case, Value, faults_of
-from engine.job.fields import CHOICE, FIELDS, QUANTITY, Entry, Field
+from engine.job.fields import FIELDS
+from engine.job.rows import CHOICE, QUANTITY, Entry, Field
 from engine.steam.errors import Fault, InputError
 from engine.steam.units import ALIASES, UNITS
 

@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 from engine.job.case import Case
-from engine.job.fields import BY_CONDUCTANCE, Entry
+from engine.job.fields_path import BY_CONDUCTANCE
+from engine.job.rows import Entry
 
 FACTORY_MAIN = Case({
     "title": "Factory main at 10 bar",

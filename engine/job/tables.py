@@ -9,7 +9,8 @@ from collections.abc import Sequence
 from engine.job.answer import SHAPES, percent_points, quality_text
 from engine.job.assessment import Assessment, Verdict
 from engine.job.case import describe
-from engine.job.fields import FIELDS, Entry
+from engine.job.fields import FIELDS
+from engine.job.rows import Entry
 from engine.steam.units import UnitSystem
 
 _STATE_COLUMNS = (("p", "pressure", "p"), ("T", "temperature", "T"), ("h", "enthalpy", "h"), ("s", "entropy", "s"),

@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 from engine.calorimeter import heat_loss_per_kg, velocity
 from engine.job.case import Case, Resolved
-from engine.job.fields import BY_CONDUCTANCE, BY_KG, BY_NORMAL
+from engine.job.fields_path import BY_CONDUCTANCE, BY_KG, BY_NORMAL
 from engine.steam import saturated, saturation_temperature, vapour
 from engine.steam.errors import Fault, InputError
 

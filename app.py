@@ -1,0 +1,13 @@
+"""The door: page configuration and the list of pages. Start with ``streamlit run app.py``."""
+
+import streamlit as st
+
+from engine.screen import shell
+
+st.set_page_config(page_title="Steam quality by throttling", page_icon="♨️", layout="wide")
+
+PAGES = (
+    st.Page("engine/screen/pages/path.py", title="Path", default=True),
+)
+
+shell.run(PAGES)

@@ -1,0 +1,96 @@
+"""Widgets that show one entry of the case and write it back as entered."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+from typing import NamedTuple
+
+import streamlit as st
+
+from engine.job.fields import FIELDS
+from engine.job.rows import Entry
+from engine.screen import session
+
+BASES = ("gauge", "absolute")
+
+
+class Range(NamedTuple):
+    """Ends and step of a slider, per unit. They are for dragging; what is allowed the case decides."""
+
+    low: float
+    high: float
+    step: float
+
+
+SLIDERS: dict[str, dict[str, Range]] = {
+    "p_line": {"bar": Range(0.5, 165.0, 0.1), "psi": Range(5.0, 2390.0, 1.0)},
+    "p_exhaust": {"bar": Range(0.05, 4.0, 0.005), "psi": Range(0.5, 60.0, 0.1)},
+    "T_exhaust": {"°C": Range(40.0, 220.0, 0.1), "°F": Range(100.0, 430.0, 0.2)},
+    "wetness": {"%": Range(0.0, 10.0, 0.05)},
+}
+_STEPS = {"bar": 0.01, "psi": 0.1, "°C": 0.1, "°F": 0.1, "%": 0.01, "1": 0.01, "mm": 0.1, "in": 0.01, "kPa": 0.1,
+          "inHg": 0.01, "m": 0.1, "ft": 0.1, "m/s": 0.5, "ft/s": 1.0, "kg/h": 0.1, "lb/h": 0.1, "W/K": 0.01,
+          "Btu/(h °F)": 0.01, "kJ/kg": 0.1, "Btu/lb": 0.1, "K": 0.5}
+
+
+def slider(name: str) -> None:
+    """A slider with an exact entry below it, and for pressures the choice of gauge or absolute."""
+    entry, unit = session.shown_entry(name), session.display_unit(name)
+    span = SLIDERS[name][unit]
+    key = f"slide {name} {unit}"
+    session.mirror(key, min(max(entry.value, span.low), span.high))
+    st.slider(FIELDS[name].label, span.low, span.high, step=span.step, format=f"%g {unit}", key=key,
+              on_change=session.callback(name, key, lambda v: Entry(v, unit, entry.basis)))
+    if entry.basis:
+        with st.container(horizontal=True, vertical_alignment="bottom"):
+            number(name, label_hidden=True)
+            basis(name)
+    else:
+        number(name, label_hidden=True)
+
+
+def number(name: str, *, help: str | None = None, label_hidden: bool = False) -> None:
+    """An exact entry, in the reader's units; empty where the case has nothing and needs nothing."""
+    field, entry, unit = FIELDS[name], session.shown_entry(name), session.display_unit(name)
+    key = f"exact {name} {unit}"
+    named = f"{field.label}, {unit}" if unit != "1" else field.label
+    basis_now = entry.basis if entry is not None else ""
+
+    def read(value: object) -> Entry | None:
+        return field.blank if value is None else Entry(float(value), unit, basis_now)
+
+    session.mirror(key, None if entry is None else entry.value)
+    st.number_input(named, value=None, step=_STEPS.get(unit, 0.1), format="%.7g", key=key,
+                    help=help or field.hint or None, on_change=session.callback(name, key, read),
+                    label_visibility="collapsed" if label_hidden else "visible")
+
+
+def basis(name: str) -> None:
+    """Gauge or absolute. Changing it keeps the number and changes its meaning."""
+    key = f"basis {name}"
+    entry = session.case()[name]
+    session.mirror(key, entry.basis)
+    st.segmented_control(f"{FIELDS[name].label} is", BASES, key=key, label_visibility="collapsed", required=True,
+                         help="Keeps the number typed and changes what it means.",
+                         on_change=session.callback(name, key, lambda v: replace(entry, basis=v or entry.basis)))
+
+
+def choice(name: str, words: dict[str, str], *, horizontal: bool = False) -> None:
+    """One of a few choices, in words."""
+    field, key = FIELDS[name], f"choice {name}"
+    session.mirror(key, session.case()[name])
+    if horizontal:
+        st.segmented_control(field.label, field.options, key=key, format_func=lambda o: words.get(o, o), required=True,
+                             label_visibility="collapsed", on_change=session.callback(name, key, lambda v: v))
+    else:
+        st.selectbox(field.label, field.options, key=key, format_func=lambda o: words.get(o, o),
+                     help=field.hint or None, on_change=session.callback(name, key, lambda v: v))
+
+
+def words(name: str, *, area: bool = False) -> None:
+    """Free words."""
+    key = f"words {name}"
+    session.mirror(key, session.case()[name])
+    widget = st.text_area if area else st.text_input
+    widget(FIELDS[name].label, key=key, max_chars=4000 if area else 200,
+           on_change=session.callback(name, key, lambda v: v))

@@ -1,0 +1,146 @@
+"""The Path page: from three readings to the quality, along the process on T–s, h–s and P–h."""
+
+from __future__ import annotations
+
+import streamlit as st
+
+from engine.job.answer import answer
+from engine.job.assessment import Assessment
+from engine.job.cautions import CAUTIONS, SHORT
+from engine.job.fields_path import BY_ALTITUDE, BY_CONDUCTANCE, BY_KG, BY_NORMAL, EXPECTED, NONE, READING, UNDECIDED
+from engine.job.tables import as_csv, comparison_rows, state_rows, velocity_rows
+from engine.screen import entries, live, session, style
+from engine.screen.charts.process import process_diagrams
+from engine.screen.charts.speed import velocity_diagram
+from engine.screen.shell import assessed
+from engine.screen.style import escaped_lines
+from engine.steam.errors import InputError
+
+QUESTIONS = {READING: "I have a reading", EXPECTED: "I expect this wetness"}
+LEGEND = (("vermilion", "solid", "constant enthalpy: ● line, ◆ dries out, ■ exhaust"),
+          ("blue", "dashed", "one constant bore; ✚ exhaust as read"),
+          ("text", "dashed", "reach limit: the wettest steam still readable"), ("green", "solid", "pinned cases"))
+LOSSES = {UNDECIDED: "Not decided yet", NONE: "Knowingly none", BY_CONDUCTANCE: "By conductance UA",
+          BY_KG: "Known per kg of sample", BY_NORMAL: "By a normal reading on dry steam"}
+
+
+def page() -> None:
+    """Answer first, then what was entered, then the pictures and tables."""
+    answer_place = st.container(key="answer", border=True)
+    _inputs()
+    a = _assessment(answer_place)
+    st.caption(SHORT)
+    if a is None:
+        return
+    units = session.units()
+    others = _pinned()
+    live.show(process_diagrams(a, units, others), key="process", height=420)
+    style.legend(LEGEND)
+    _velocities(a)
+    _states(a)
+    _comparison(a, others)
+    with st.expander("Cautions"):
+        st.markdown("\n".join(f"- {line}" for line in CAUTIONS))
+
+
+def _inputs() -> None:
+    entries.choice("question", QUESTIONS, horizontal=True)
+    asked = "T_exhaust" if session.case()["question"] == READING else "wetness"
+    for column, name in zip(st.columns(3, gap="large"), ("p_line", "p_exhaust", asked), strict=True):
+        with column:
+            entries.slider(name)
+    with st.expander("What the answer takes for granted: barometer, water leg, heat loss, velocities, limits"):
+        _assumed()
+
+
+def _assumed() -> None:
+    case = session.case()
+    site, loss, speed, limits = st.columns(4, gap="medium")
+    with site:
+        entries.choice("barometer_source", {BY_ALTITUDE: "From the altitude", "reading": "As read"})
+        entries.number("altitude" if case["barometer_source"] == BY_ALTITUDE else "p_barometer")
+        entries.number("leg_height")
+    with loss:
+        entries.choice("heat_loss_method", LOSSES)
+        for name in {BY_CONDUCTANCE: ("conductance", "T_ambient"), BY_KG: ("heat_loss",),
+                     BY_NORMAL: ("T_normal",)}.get(case["heat_loss_method"], ()):
+            entries.number(name)
+    with speed:
+        for name in ("sample_flow", "line_velocity", "line_bore", "exhaust_bore", "recovery"):
+            entries.number(name)
+    with limits:
+        for name in ("least_superheat", "comfortable_superheat", "x_limit"):
+            entries.number(name)
+
+
+def _assessment(place) -> Assessment | None:
+    """The open case assessed; where an entry cannot be used, the refusal and the last case that could be."""
+    try:
+        a = st.session_state["last good"] = assessed(session.case())
+    except InputError as error:
+        with place:
+            st.error(escaped_lines(str(error)))
+            st.caption("Nothing is lost: correct the entry, or undo. The diagrams show the last usable case.")
+        return st.session_state.get("last good")
+    with place:
+        _say(a)
+    return a
+
+
+def _say(a: Assessment) -> None:
+    said = answer(a, session.units())
+    st.markdown(f"### {said.shape} {said.headline}")
+    st.markdown(" ".join((*said.reasons, *said.remedies)))
+    st.caption(" ".join(said.assumed))
+
+
+def _pinned() -> list[tuple[str, Assessment]]:
+    return [(name, assessed(case)) for name, case in session.pinned()]
+
+
+def _velocities(a: Assessment) -> None:
+    units = session.units()
+    st.subheader("Velocities", anchor=False)
+    left, right = st.columns([3, 2], gap="large")
+    diagram = velocity_diagram(a, units)
+    with left:
+        if diagram is None:
+            st.caption("Give the sample flow and a bore to see the velocities along the path.")
+        else:
+            live.show((diagram,), key="velocities", height=320, columns=1)
+    with right:
+        st.table([{"Quantity": label, "Value": value} for label, value in velocity_rows(a, units)])
+
+
+def _states(a: Assessment) -> None:
+    units = session.units()
+    rows = state_rows(a, units)
+    st.subheader("States", anchor=False)
+    st.table([{name: _cell(name, value) for name, value in row.items()} for row in rows])
+    st.download_button("Save the states as CSV", as_csv(rows), "states.csv", "text/csv", key="states csv",
+                       on_click="ignore")
+
+
+_DECIMALS = {"p": 4, "T": 2, "x": 4, "h": 2, "s": 4, "v": 5, "c": 1}
+
+
+def _cell(name: str, value: str | float | None) -> str:
+    """A cell for reading; the file has every digit."""
+    if value is None:
+        return "superheated" if name == "x" else "–"
+    return value if isinstance(value, str) else f"{value:.{_DECIMALS[name.split(',')[0]]}f}"
+
+
+def _comparison(a: Assessment, others: list[tuple[str, Assessment]]) -> None:
+    if not others:
+        return
+    st.subheader("Side by side", anchor=False)
+    st.table(comparison_rows([("open", a), *others], session.units()))
+    for name, _ in others:
+        with st.container(horizontal=True):
+            st.button(f"Open {name}", key=f"open pinned {name}", on_click=session.open_pinned, args=(name,))
+            st.button(f"Unpin {name}", key=f"unpin {name}", on_click=session.unpin, args=(name,))
+
+
+if __name__ == "__main__":
+    page()

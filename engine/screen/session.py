@@ -1,0 +1,164 @@
+"""What one reader's session holds: the open case, its history, pinned cases, units and notices.
+
+The case is the truth; widgets only mirror it. A widget's callback writes the case, and before a
+widget is drawn its state is set from the case where the two differ. Nothing else writes widget
+state, so fast key presses are never overwritten by an older run.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import replace
+
+import streamlit as st
+
+from engine.job.case import BLANK, Case, Value, as_entered, barometer, entry_si
+from engine.job.casefile import from_json, from_link, to_link
+from engine.job.demo import DEMO
+from engine.job.fields import FIELDS
+from engine.job.rows import Entry
+from engine.steam.errors import InputError
+from engine.steam.units import SYSTEMS, UnitSystem, from_si
+
+HISTORY = 200
+PINS = 4
+
+
+def start() -> None:
+    """Set up a new session: the case in the address if there is one, else the demo case."""
+    state = st.session_state
+    if "case" in state:
+        return
+    state["case"], state["past"], state["future"], state["pinned"], state["notice"] = DEMO, [], [], [], None
+    state["units"] = "SI"
+    word = st.query_params.get("case")
+    if word:
+        try:
+            state["case"] = from_link(word)
+        except InputError as error:
+            state["notice"] = ("error", f"The case in the link could not be opened; the demo case is shown.\n\n{error}")
+
+
+def case() -> Case:
+    return st.session_state["case"]
+
+
+def units() -> UnitSystem:
+    return SYSTEMS[st.session_state["units"]]
+
+
+def pinned() -> list[tuple[str, Case]]:
+    return st.session_state["pinned"]
+
+
+def link() -> str:
+    """The open case as a word for the address."""
+    return to_link(case())
+
+
+def change(new: Case) -> None:
+    """Make ``new`` the open case; the old one can be brought back."""
+    state = st.session_state
+    if new == state["case"]:
+        return
+    state["past"] = [*state["past"][-HISTORY + 1:], state["case"]]
+    state["future"], state["case"], state["notice"] = [], new, None
+
+
+def undo() -> None:
+    _step("past", "future")
+
+
+def redo() -> None:
+    _step("future", "past")
+
+
+def _step(source: str, target: str) -> None:
+    state = st.session_state
+    if state[source]:
+        state[target] = [*state[target], state["case"]]
+        *state[source], state["case"] = state[source]
+        state["notice"] = None
+
+
+def open_demo(demo: Case = DEMO) -> None:
+    change(demo)
+
+
+def open_blank() -> None:
+    change(BLANK)
+
+
+def open_file(key: str) -> None:
+    """Open the case file in the uploader ``key``; a file that cannot be used changes nothing but the notice."""
+    upload = st.session_state.get(key)
+    if upload is None:
+        return
+    try:
+        change(from_json(upload.getvalue()))
+        st.session_state["notice"] = ("success", f"Opened {upload.name}.")
+    except InputError as error:
+        st.session_state["notice"] = ("error", f"{upload.name} was not opened; the open case is unchanged.\n\n{error}")
+
+
+def pin() -> None:
+    """Keep the open case beside those to come, under the next free letter."""
+    taken = {name for name, _ in pinned()}
+    name = next(letter for letter in "ABCDEFGH" if letter not in taken)
+    st.session_state["pinned"] = [*pinned(), (name, case())][-PINS:]
+
+
+def unpin(name: str) -> None:
+    st.session_state["pinned"] = [(n, c) for n, c in pinned() if n != name]
+
+
+def open_pinned(name: str) -> None:
+    change(dict(pinned())[name])
+
+
+def mirror(key: str, wanted: object) -> str:
+    """Have widget ``key`` show ``wanted``; untouched where it does already. Returns the key."""
+    if key not in st.session_state or st.session_state[key] != wanted:
+        st.session_state[key] = wanted
+    return key
+
+
+def display_unit(name: str) -> str:
+    """The unit in which an entry is shown and typed."""
+    field, special = FIELDS[name], _ENTRY_UNITS.get(name)
+    return special[units().name] if special else units().unit(field.kind)
+
+
+# where the trade enters a quantity in another unit than the one results are shown in
+_ENTRY_UNITS = {
+    "wetness": {"SI": "%", "US": "%"},
+    "p_barometer": {"SI": "kPa", "US": "inHg"},
+    "altitude": {"SI": "m", "US": "ft"},
+    "leg_height": {"SI": "m", "US": "ft"},
+}
+
+
+def shown_entry(name: str) -> Entry | None:
+    """The entry as it is to stand in its widget: as entered, or converted for display."""
+    field, entry, unit = FIELDS[name], case()[name], display_unit(name)
+    if entry is None or entry.unit == unit:
+        return entry
+    if entry.basis:  # stays gauge or absolute, in another unit
+        return as_entered(field, entry_si(field, entry, 0.0), replace(entry, unit=unit), 0.0)
+    return Entry(from_si(entry_si(field, entry, 0.0), unit, field.kind), unit)
+
+
+def enter(name: str, value: Value) -> None:
+    change(case().with_(**{name: value}))
+
+
+def callback(name: str, key: str, read: Callable[[object], Value]) -> Callable[[], None]:
+    """A widget callback that turns the widget's value into an entry of the case."""
+    def changed() -> None:
+        enter(name, read(st.session_state[key]))
+    return changed
+
+
+def site_barometer() -> float:
+    """Barometric pressure of the open case [Pa]."""
+    return barometer(case())

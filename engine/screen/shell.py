@@ -1,0 +1,114 @@
+"""What stands on every page: the case bar, its tools, notices; then the page itself."""
+
+from __future__ import annotations
+
+import gc
+from collections.abc import Sequence
+from functools import lru_cache
+
+import streamlit as st
+
+from engine.job.answer import SHAPES, quality_text
+from engine.job.assessment import Assessment, Verdict, assess
+from engine.job.case import Case, describe
+from engine.job.casefile import to_json
+from engine.job.demo import DEMO
+from engine.screen import address, entries, session, style
+from engine.steam.errors import InputError
+from engine.steam.units import SYSTEMS
+
+
+@lru_cache(maxsize=1)
+def _settle() -> None:
+    """Leave what the imports brought out of every later garbage collection; once per process."""
+    gc.collect()
+    gc.freeze()
+
+
+@lru_cache(maxsize=64)
+def assessed(case: Case) -> Assessment:
+    """The assessment of a case; the same case is not computed twice. Raises InputError."""
+    return assess(case)
+
+
+def run(pages: Sequence) -> None:
+    """Draw the bar, then the chosen page."""
+    _settle()
+    session.start()
+    style.apply()
+    page = st.navigation(list(pages), position="top")
+    _bar()
+    _notice()
+    page.run()
+    address.keep(page.url_path, case=session.link())
+
+
+def _bar() -> None:
+    with st.container(key="casebar"):
+        told, tools = st.columns([5, 4], vertical_alignment="center")
+        with told:
+            st.markdown(_summary(session.case()))
+        with tools, st.container(horizontal=True, horizontal_alignment="right", vertical_alignment="center"):
+            _units()
+            state = st.session_state
+            st.button("Undo", key="undo", disabled=not state["past"], on_click=session.undo)
+            st.button("Redo", key="redo", disabled=not state["future"], on_click=session.redo)
+            st.button("Pin", key="pin", on_click=session.pin,
+                      help="Keep this case beside the ones to come: in the comparison and on the diagrams.")
+            _case_tools()
+
+
+def _units() -> None:
+    session.mirror("units choice", st.session_state["units"])
+
+    def changed() -> None:
+        st.session_state["units"] = st.session_state["units choice"] or "SI"
+
+    st.segmented_control("Units", list(SYSTEMS), key="units choice", required=True, label_visibility="collapsed",
+                         on_change=changed)
+
+
+def _summary(case: Case) -> str:
+    """The case in one line: what it is, what was entered, what can be said."""
+    asked = (f"reading {describe(case['T_exhaust'])}" if case["question"] == "reading"
+             else f"expected wetness {describe(case['wetness'])}")
+    title = style.escaped(case["title"]) or "Untitled case"
+    return (f"**{title}** · line {describe(case['p_line'])} · exhaust {describe(case['p_exhaust'])} · {asked} · "
+            f"**{_verdict(case)}**")
+
+
+def _verdict(case: Case) -> str:
+    try:
+        a = assessed(case)
+    except InputError:
+        return "✕ an entry cannot be used"
+    said = f"{SHAPES[a.verdict]} {a.verdict.value}"
+    return f"{said}, quality {quality_text(a.x)}" if a.x is not None and a.verdict is not Verdict.CANNOT else said
+
+
+def _case_tools() -> None:
+    case = session.case()
+    with st.popover("Case", help="Name, open, save, share, start anew"):
+        entries.words("title")
+        entries.words("note", area=True)
+        try:
+            assessed(case)
+            st.download_button("Save case file", to_json(case), "case.json", "application/json", key="save",
+                               on_click="ignore")
+        except InputError:
+            st.caption("The case file can be saved once every entry can be used.")
+        st.file_uploader("Open a case file", type=["json"], key="open", on_change=session.open_file, args=("open",))
+        st.caption("Link to this case: the page's own address holds it; copy it, or this word behind `?case=`.")
+        st.code(f"?case={session.link()}", language=None, wrap_lines=True)
+        left, right = st.columns(2)
+        left.button("Demo case", key="demo", on_click=session.open_demo, width="stretch")
+        right.button("Empty case", key="blank", on_click=session.open_blank, width="stretch")
+
+
+def _notice() -> None:
+    notice = st.session_state["notice"]
+    if notice:
+        kind, text = notice
+        {"error": st.error, "success": st.success}[kind](style.escaped_lines(text))
+    if session.case() == DEMO:
+        st.caption("This is an invented demo case. Change it, open your own, or start with an empty one under “Case”.")

@@ -1,0 +1,56 @@
+"""The little styling that Streamlit leaves to us, and the escaping of what users wrote."""
+
+from __future__ import annotations
+
+import html
+import re
+
+import streamlit as st
+
+from engine.screen.charts.diagram import COLOURS
+
+_CSS = """
+<style>
+.st-key-casebar {border-bottom: 1px solid var(--st-border-color-light, rgba(128,128,128,.3)); padding-bottom: .4rem;}
+.st-key-answer {min-height: 8.5rem;}
+.st-key-answer h3 {padding: 0 0 .3rem 0;}
+[data-testid="stMainBlockContainer"] {padding-top: 3.2rem; padding-bottom: 3rem;}
+@media (max-width: 640px) {
+  [data-testid="stMainBlockContainer"] {padding-left: .8rem; padding-right: .8rem;}
+}
+@media (min-width: 1800px) {
+  html {font-size: 19px;}
+}
+</style>
+"""
+
+_STROKES = {"solid": "solid", "dashed": "dashed", "dotted": "dotted"}
+
+
+def legend(rows: tuple[tuple[str, str, str], ...]) -> None:
+    """What the lines of the diagrams above are: (colour by meaning, stroke, words)."""
+    parts = []
+    for colour, stroke, words in rows:
+        paint = "currentColor" if colour == "text" else COLOURS[colour].light
+        parts.append(f'<span style="white-space:nowrap;margin-right:1.6em"><span style="display:inline-block;width:2.2em;'
+                     f'border-top:3px {_STROKES[stroke]} {paint};vertical-align:middle;margin-right:.5em"></span>'
+                     f"{html.escape(words)}</span>")
+    st.html(f'<div style="font-size:.9rem;line-height:1.7">{" ".join(parts)}</div>')
+
+
+_MARKDOWN = re.compile(r"([\\`*_{}\[\]()<>#+\-.!|~$:&])")
+
+
+def apply() -> None:
+    """Put the styles on the page."""
+    st.html(_CSS)
+
+
+def escaped(text: str) -> str:
+    """User's words inside Markdown: shown as typed, on one line, meaning nothing."""
+    return _MARKDOWN.sub(r"\\\1", " ".join(text.split()))
+
+
+def escaped_lines(text: str) -> str:
+    """The same for several lines: each stays a line of its own."""
+    return "  \n".join(escaped(line) if line.strip() else "" for line in text.split("\n"))
