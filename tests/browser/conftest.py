@@ -1,0 +1,145 @@
+"""A real browser in front of a real server.
+
+Every test in this folder is marked ``browser`` and skipped, with the reason, where there is no browser.
+A page that writes an error to its console, throws, or asks for anything outside this machine fails its test;
+so does a server that logs a traceback.
+"""
+
+from __future__ import annotations
+
+import os
+import re
+import socket
+import subprocess
+import sys
+import time
+import urllib.request
+from collections.abc import Iterator
+from contextlib import contextmanager
+from pathlib import Path
+from urllib.parse import urlsplit
+
+import pytest
+
+HERE = Path(__file__).parent
+ROOT = HERE.parents[1]
+CHROMIUM = Path("/usr/bin/chromium")
+# No sandbox: tests often run as root in a container. The rest keeps the browser itself from calling home.
+FLAGS = ["--no-sandbox", "--disable-gpu", "--disable-quic", "--no-first-run", "--disable-background-networking"]
+FLAGS += ["--disable-component-update", "--disable-sync"]
+PATIENCE = 30_000  # ms, for a busy machine; nothing waits longer than it has to
+
+
+def pytest_collection_modifyitems(items: list[pytest.Item]) -> None:
+    for item in items:
+        if HERE in item.path.parents:
+            item.add_marker("browser")
+
+
+@contextmanager
+def served(app: Path, log: Path, **environment: str) -> Iterator[str]:
+    """The address of the app, run by a server of its own with the project's settings."""
+    with socket.socket() as probe:
+        probe.bind(("127.0.0.1", 0))
+        port = probe.getsockname()[1]
+    base = environment.pop("base", "")
+    address = f"http://127.0.0.1:{port}/{base}"
+    command = [sys.executable, "-m", "streamlit", "run", str(app), f"--server.port={port}", "--server.headless=true"]
+    command += [f"--server.baseUrlPath={base}"] if base else []
+    with log.open("w") as out:
+        server = subprocess.Popen(command, cwd=ROOT, stdout=out, stderr=out, env=os.environ | environment)
+        try:
+            _await(f"{address.rstrip('/')}/_stcore/health", server, log)
+            yield address
+        finally:
+            server.terminate()
+            server.wait(20)
+    assert "Traceback" not in log.read_text(), log.read_text()[-4000:]
+
+
+def _await(address: str, server: subprocess.Popen, log: Path) -> None:
+    give_up = time.monotonic() + 60
+    while time.monotonic() < give_up and server.poll() is None:
+        try:
+            urllib.request.urlopen(address, timeout=2).close()
+            return
+        except OSError:
+            time.sleep(0.1)
+    raise RuntimeError(f"no answer from {address}:\n{log.read_text()[-4000:]}")
+
+
+@pytest.fixture(scope="session")
+def app_address(tmp_path_factory) -> Iterator[str]:
+    """The product."""
+    with served(ROOT / "app.py", tmp_path_factory.mktemp("server") / "app.log") as address:
+        yield address
+
+
+@pytest.fixture(scope="session")
+def sample_address(tmp_path_factory) -> Iterator[str]:
+    """The small app beside this file that shows the components."""
+    with served(HERE / "sample_app.py", tmp_path_factory.mktemp("server") / "sample.log") as address:
+        yield address
+
+
+# For this folder only: a running Playwright holds an event loop that other tests need not meet.
+@pytest.fixture(scope="package")
+def browser():
+    try:
+        from playwright.sync_api import sync_playwright
+    except ImportError:
+        pytest.skip("the package playwright is not installed")
+    if not CHROMIUM.exists():
+        pytest.skip(f"no browser at {CHROMIUM}: apt-get install chromium")
+    with sync_playwright() as playwright:
+        chromium = playwright.chromium.launch(executable_path=CHROMIUM, args=FLAGS)
+        yield chromium
+        chromium.close()
+
+
+@pytest.fixture
+def visit(browser):
+    """Open an address in a window of its own: ``visit(address, width=1440, height=900, dark=False, phone=False)``.
+
+    ``forgive`` is a pattern of complaints that the test provokes on purpose, ``prepare`` gets the page before it
+    goes anywhere. Every other complaint fails the test when it ends.
+    """
+    contexts, complaints = [], []
+
+    def go(address, *, width=1440, height=900, dark=False, phone=False, forgive=None, prepare=None):
+        def complain(words: str) -> None:
+            if not (forgive and re.search(forgive, words)):
+                complaints.append(words)
+
+        context = browser.new_context(
+            viewport={"width": width, "height": height},
+            color_scheme="dark" if dark else "light",
+            is_mobile=phone,
+            has_touch=phone,
+        )
+        context.set_default_timeout(PATIENCE)
+        contexts.append(context)
+        page = context.new_page()
+        page.on("console", lambda message: message.type == "error" and complain(f"console: {message.text}"))
+        page.on("pageerror", lambda error: complain(f"thrown: {error}"))
+        page.on("request", lambda request: _leaves(request.url) and complain(f"leaves the machine: {request.url}"))
+        page.on("websocket", lambda channel: _leaves(channel.url) and complain(f"leaves the machine: {channel.url}"))
+        if prepare:
+            prepare(page)
+        page.goto(address)
+        settle(page)
+        return page
+
+    yield go
+    for context in contexts:
+        context.close()
+    assert not complaints, "\n".join(complaints)
+
+
+def _leaves(url: str) -> bool:
+    return urlsplit(url).scheme in ("http", "https", "ws", "wss") and urlsplit(url).hostname != "127.0.0.1"
+
+
+def settle(page) -> None:
+    """Wait until the script has run and its page stands."""
+    page.wait_for_selector("[data-testid=stApp][data-test-script-state=notRunning]")
