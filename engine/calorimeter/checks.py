@@ -10,7 +10,7 @@ import numpy as np
 from engine.calorimeter.status import Status
 from engine.steam import P_SAT_MAX, P_TRIPLE, T_MAX
 from engine.steam.arrays import at_the_door, in_blocks, refuse_outside
-from engine.steam.errors import InputError
+from engine.steam.errors import Fault, InputError
 from engine.steam.saturation import p_in_range
 
 T_LEAST = 273.15  # K: colder readings are no steam readings
@@ -97,7 +97,7 @@ def with_status(kernel: Callable[..., tuple], outputs: int, **inputs):
         return values, status.astype(np.int8)
     if int(status) >= Status.OUT_OF_RANGE:
         refuse(named)
-        raise InputError(*refuse_outside("h", np.array(np.nan), np.array(False), "an enthalpy that steam can have",
-                                         why="the terms of the energy balance lead outside wet and superheated steam",
-                                         hint="check the heat loss and the velocities"))
+        raise InputError(Fault("energy balance", "neither wet nor superheated steam", "", "an enthalpy steam can have",
+                               "each input is possible, but not all of them together",
+                               "check the temperature, the heat loss and the velocities", "h"))
     return [float(v) for v in values], Status(int(status))

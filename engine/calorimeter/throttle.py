@@ -68,15 +68,25 @@ def saturation_enthalpies(p: np.ndarray) -> tuple[np.ndarray, np.ndarray, np.nda
     return T, if97.enthalpy_1(p, T), if97.enthalpy_2(p, T)
 
 
-def _terms(a: dict[str, np.ndarray]) -> np.ndarray:
+def balance_terms(a: dict[str, np.ndarray]) -> np.ndarray:
     """What is to be added to the exhaust enthalpy as read to get that of the line [J/kg]."""
     return (a["heat_loss"] + 0.5 * (1.0 - a["recovery"]) * a["exhaust_velocity"] ** 2
             - 0.5 * a["line_velocity"] ** 2)
 
 
-def _taken_up(a: dict[str, np.ndarray]) -> np.ndarray:
+def taken_up(a: dict[str, np.ndarray]) -> np.ndarray:
     """Kinetic energy that the probe takes up: by so much the stream is below what it reads [J/kg]."""
     return 0.5 * a["recovery"] * a["exhaust_velocity"] ** 2
+
+
+def least_enthalpy(a: dict[str, np.ndarray]) -> np.ndarray:
+    """Exhaust enthalpy as read [J/kg] that shows ``least_superheat``, and leaves the stream itself dry."""
+    p = a["p_exhaust"]
+    T_sat, superheat = if97.saturation_T(p), a["least_superheat"]
+    h_read = if97.enthalpy_2(p, T_sat + superheat)
+    if a["exhaust_velocity"].any():
+        h_read = np.maximum(h_read, if97.enthalpy_2(p, T_sat) + taken_up(a))
+    return h_read
 
 
 def _quality(a, usable, missing):
@@ -89,21 +99,21 @@ def _quality(a, usable, missing):
     h_read = if97.enthalpy_2(p_exhaust, np.where(wet, T_sat, T_exhaust))
     if a["exhaust_velocity"].any():
         # the stream is colder than the probe: it may be wet while the probe reads superheat
-        h_driest_wet = if97.enthalpy_2(p_exhaust, T_sat) + _taken_up(a)
-        wet = wet | ~(h_read > h_driest_wet)
+        h_driest_wet = if97.enthalpy_2(p_exhaust, T_sat) + taken_up(a)
+        wet = wet | (h_read < h_driest_wet)
         h_read = np.where(wet, h_driest_wet, h_read)
-    h_line = h_read + _terms(a)
+    h_line = h_read + balance_terms(a)
     x = (h_line - h_f) / (h_g - h_f)
     hot = usable & ~wet & (x > 1 + _ROUNDING)
     T_hot = np.zeros(x.shape)
     if hot.any():
         T_hot[hot] = search_T_ph(p_line[hot], h_line[hot], T_line[hot])
     status = np.select(
-        [missing, ~usable | (T_hot > T_MAX), wet, hot, superheat < a["least_superheat"]],
+        [missing, ~usable | (T_hot > T_MAX) | (x < 0), wet, hot, superheat < a["least_superheat"]],
         [Status.MISSING, Status.OUT_OF_RANGE, Status.NOT_SUPERHEATED, Status.LINE_SUPERHEATED, Status.THIN_MARGIN],
         Status.OK)
     answered, within = status <= Status.THIN_MARGIN, status < Status.OUT_OF_RANGE
-    return (np.where(answered, x, np.nan), np.where(answered | hot & within, h_line, np.nan),
+    return (np.where(answered, np.minimum(x, 1.0), np.nan), np.where(answered | hot & within, h_line, np.nan),
             np.where(within, superheat, np.nan), np.where(within, np.where(hot, T_hot - T_line, 0.0), np.nan),
             np.where(status == Status.NOT_SUPERHEATED, x, np.nan), status)
 
@@ -136,8 +146,8 @@ def quality(p_line, p_exhaust, T_exhaust, *, heat_loss=0.0, line_velocity=0.0, e
 def _exhaust(a, usable, missing):
     _, h_f, h_g = saturation_enthalpies(a["p_line"])
     T_sat, h_f2, h_g2 = saturation_enthalpies(a["p_exhaust"])
-    h_read = h_f + a["x"] * (h_g - h_f) - _terms(a)
-    h_stream = h_read - _taken_up(a)
+    h_read = h_f + a["x"] * (h_g - h_f) - balance_terms(a)
+    h_stream = h_read - taken_up(a)
     x_exhaust = (h_stream - h_f2) / (h_g2 - h_f2)
     hot = x_exhaust > 1.0
     T = T_sat.copy()
@@ -172,6 +182,7 @@ def least_quality(p_line, p_exhaust, superheat=5.0, *, heat_loss=0.0, line_veloc
                   recovery=1.0):
     """The reach: the quality at which the exhaust reads just ``superheat`` [K] above saturation.
 
+    In a stream so fast that its own steam would still be wet then, the quality at which it is dry.
     Pressures absolute [Pa]; any shapes; other arguments as for ``quality``. Above 1 means that not
     even dry steam can be read there. Raises InputError if any element is out of range or missing.
 
@@ -185,8 +196,6 @@ def least_quality(p_line, p_exhaust, superheat=5.0, *, heat_loss=0.0, line_veloc
     def kernel(*values):
         a = dict(zip(named, values, strict=True))
         _, h_f, h_g = saturation_enthalpies(a["p_line"])
-        p, superheat = a["p_exhaust"], a["least_superheat"]
-        h_read = if97.enthalpy_2(p, if97.saturation_T(p) + superheat)
-        return ((h_read + _terms(a) - h_f) / (h_g - h_f),)
+        return ((least_enthalpy(a) + balance_terms(a) - h_f) / (h_g - h_f),)
 
     return give_back(in_blocks(kernel, 1, *named.values())[0], scalar)
