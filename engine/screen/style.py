@@ -15,6 +15,9 @@ _CSS = """
 .st-key-answer {min-height: 8.5rem;}
 .st-key-answer h3 {padding: 0 0 .3rem 0;}
 [data-testid="stMainBlockContainer"] {padding-top: 3.2rem; padding-bottom: 3rem;}
+.legends {font-size: .9rem; line-height: 1.7;}
+.legend {white-space: nowrap; margin-right: 1.6em;}
+.legend i {display: inline-block; width: 2.2em; vertical-align: middle; margin-right: .5em;}
 @media (max-width: 640px) {
   [data-testid="stMainBlockContainer"] {padding-left: .8rem; padding-right: .8rem;}
 }
@@ -32,10 +35,9 @@ def legend(rows: tuple[tuple[str, str, str], ...]) -> None:
     parts = []
     for colour, stroke, words in rows:
         paint = "currentColor" if colour == "text" else COLOURS[colour].light
-        parts.append(f'<span style="white-space:nowrap;margin-right:1.6em"><span style="display:inline-block;width:2.2em;'
-                     f'border-top:3px {_STROKES[stroke]} {paint};vertical-align:middle;margin-right:.5em"></span>'
+        parts.append(f'<span class="legend"><i style="border-top:3px {_STROKES[stroke]} {paint}"></i>'
                      f"{html.escape(words)}</span>")
-    st.html(f'<div style="font-size:.9rem;line-height:1.7">{" ".join(parts)}</div>')
+    st.html(f'<div class="legends">{" ".join(parts)}</div>')
 
 
 _MARKDOWN = re.compile(r"([\\`*_{}\[\]()<>#+\-.!|~$:&])")
