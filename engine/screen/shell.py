@@ -45,7 +45,7 @@ def run(pages: Sequence) -> None:
 
 def _bar() -> None:
     with st.container(key="casebar"):
-        told, tools = st.columns([5, 4], vertical_alignment="center")
+        told, tools = st.columns([3, 2], vertical_alignment="center")
         with told:
             st.markdown(_summary(session.case()))
         with tools, st.container(horizontal=True, horizontal_alignment="right", vertical_alignment="center"):
@@ -83,7 +83,7 @@ def _verdict(case: Case) -> str:
     except InputError:
         return "✕ an entry cannot be used"
     said = f"{SHAPES[a.verdict]} {a.verdict.value}"
-    return f"{said}, quality {quality_text(a.x)}" if a.x is not None and a.verdict is not Verdict.CANNOT else said
+    return f"{said} {quality_text(a.x)}" if a.x is not None and a.verdict is not Verdict.CANNOT else said
 
 
 def _case_tools() -> None:

@@ -29,13 +29,15 @@ def page() -> None:
     answer_place = st.container(key="answer", border=True)
     _inputs()
     a = _assessment(answer_place)
-    st.caption(SHORT)
     if a is None:
+        _assumed()
         return
     units = session.units()
     others = _pinned()
     live.show(process_diagrams(a, units, others), key="process", height=420)
     style.legend(LEGEND)
+    st.caption(SHORT)
+    _assumed()
     _velocities(a)
     _states(a)
     _comparison(a, others)
@@ -49,13 +51,12 @@ def _inputs() -> None:
     for column, name in zip(st.columns(3, gap="large"), ("p_line", "p_exhaust", asked), strict=True):
         with column:
             entries.slider(name)
-    with st.expander("What the answer takes for granted: barometer, water leg, heat loss, velocities, limits"):
-        _assumed()
 
 
 def _assumed() -> None:
     case = session.case()
-    site, loss, speed, limits = st.columns(4, gap="medium")
+    with st.expander("What the answer takes for granted: barometer, water leg, heat loss, velocities, limits"):
+        site, loss, speed, limits = st.columns(4, gap="medium")
     with site:
         entries.choice("barometer_source", {BY_ALTITUDE: "From the altitude", "reading": "As read"})
         entries.number("altitude" if case["barometer_source"] == BY_ALTITUDE else "p_barometer")
