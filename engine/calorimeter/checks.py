@@ -46,7 +46,7 @@ LIMITS: dict[str, Limit] = {
                        "the steam equations hold there", "check the unit: °C or °F", 400.0),
     "x": Limit(_between("x", 0.0, 1.0), "0 to 1", "it is the share of vapour in the mass",
                "give a fraction, not a percentage", 1.0),
-    "h_line": Limit(_between("h_line", 1e3, 4.1e6), "1 kJ/kg to 4100 kJ/kg", "wet and superheated steam lie there",
+    "h_line": Limit(_between("h_line", 0.0, 4.2e6), "0 to 4200 kJ/kg", "wet and superheated steam lie there",
                     "check the unit", 2.7e6),
     "heat_loss": Limit(_between("heat_loss", -1e7, 1e7), "a loss within ±10 MJ/kg", _SPEED,
                        "give it per kg of sample; negative where heat is gained"),

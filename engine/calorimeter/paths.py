@@ -11,19 +11,23 @@ Cases broadcast together; a path adds one axis at the end, its points from line 
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import cache
 
 import numpy as np
 
 from engine.calorimeter.checks import door, refuse
 from engine.calorimeter.roots import bracketed_root
-from engine.steam import T_MAX, if97
-from engine.steam.arrays import give_back
+from engine.steam import P_TRIPLE, T_MAX, if97
+from engine.steam.arrays import give_back, refuse_outside
 from engine.steam.errors import Fault, InputError
-from engine.steam.saturation import dome, saturated_kernel
+from engine.steam.saturation import saturated_kernel
 from engine.steam.states import LAST_STEP, search_T_ph
 from engine.steam.status import SteamStatus
 
 POINTS = 33
+P_PEAK = 3.078376e6  # Pa, where the enthalpy of saturated vapour is greatest: 2803.3 kJ/kg
+ROUNDING = 1e-12  # relative: a quality or an enthalpy so little off saturation is on it
+_ASIDE = 0.382  # share of the way (in log p) of the point that dry-out does not need: never one of an even grid
 
 
 @dataclass(frozen=True)
@@ -58,25 +62,37 @@ class Path:
         return ~np.isnan(self.p_choke)
 
 
-def dry_out_pressure(h: np.ndarray, p_high: np.ndarray) -> np.ndarray:
-    """Highest pressure up to ``p_high`` at which steam of enthalpy ``h`` is dry saturated.
+def _dry_enthalpy(p: np.ndarray) -> np.ndarray:
+    """h_g [J/kg] over 1-d pressures."""
+    return if97.enthalpy_2(p, if97.saturation_T(p))
 
-    1-d arrays [J/kg], [Pa]. Searched below 30.8 bar, up to where the enthalpy of saturated vapour
-    rises with pressure. NaN where it is still wet at the triple pressure; the lower of ``p_high`` and
-    30.8 bar where it is dry already.
+
+@cache
+def _rising_vapour() -> tuple[float, np.ndarray, np.ndarray]:
+    """Greatest h_g, and log p over sqrt(greatest - h_g) from there down to the triple pressure.
+
+    h_g is a parabola about its greatest value, so log p is nearly straight over that root.
     """
-    table = dome()
-    rising = slice(int(table.h_g.argmax()) + 1)
-    # the diagram's own table brackets the answer closely; the equations then settle it
-    near = np.interp(h, table.h_g[rising], np.log(table.p[rising]))
-    high = np.log(np.minimum(p_high, table.p[rising][-1]))
+    log_p = np.linspace(np.log(P_PEAK), np.log(P_TRIPLE), 160)
+    h_g = _dry_enthalpy(np.exp(log_p))
+    return h_g[0], np.sqrt(h_g[0] - h_g), log_p
 
-    def excess(log_p):
-        p = np.exp(log_p)
-        return if97.enthalpy_2(p, if97.saturation_T(p)) - h
 
-    p = np.exp(np.minimum(bracketed_root(excess, near - 0.002, near + 0.002), high))
-    return np.where(h < table.h_g[0], np.nan, p)
+def dry_out_pressure(h: np.ndarray, p_high: np.ndarray) -> np.ndarray:
+    """Pressure below ``p_high`` at which wet steam of enthalpy ``h`` becomes dry as the pressure falls.
+
+    1-d arrays [J/kg], [Pa]. It lies below 30.8 bar, where the enthalpy of saturated vapour rises with
+    pressure; ``p_high`` itself for steam that is just dry there. NaN where there is none: for steam still
+    wet at the triple pressure, and for steam superheated all the way.
+    """
+    h_peak, root, log_p = _rising_vapour()
+    # the table brackets the answer closely; the equations then settle it
+    near = np.interp(np.sqrt(np.maximum(h_peak - h, 0.0)), root, log_p)
+    p = np.exp(bracketed_root(lambda log_p: _dry_enthalpy(np.exp(log_p)) - h, near - 0.0005, near + 0.0005))
+    top = np.minimum(p_high, P_PEAK)
+    above = h / _dry_enthalpy(top) - 1.0
+    p = np.where(np.abs(above) <= ROUNDING, top, np.minimum(p, top))
+    return np.where((above > ROUNDING) | (near <= log_p[-1]), np.nan, p)
 
 
 def _grid(p_line, p_end, points: int) -> np.ndarray:
@@ -99,7 +115,7 @@ def _isenthalpic(p: np.ndarray, h: np.ndarray):
     """States at enthalpy ``h`` over 1-d pressures."""
     sat = saturated_kernel(p)
     x = (h - sat[1]) / (sat[2] - sat[1])
-    hot, T = x > 1.0 + 1e-12, sat[0].copy()
+    hot, T = x > 1.0 + ROUNDING, sat[0].copy()
     if hot.any():
         T[hot] = search_T_ph(p[hot], h[hot], T[hot])
     return _states(p, np.minimum(x, 1.0), sat, T, hot)
@@ -112,8 +128,8 @@ def _line(p_line: np.ndarray, x: np.ndarray):
 
 
 def _shaped(named: dict, points: int) -> tuple[tuple[int, ...], list[np.ndarray]]:
-    if not (isinstance(points, int) and 5 <= points <= 100_000):
-        raise InputError(Fault("points", points, "", "a whole number from 5 to 100 000", name="points"))
+    if not (isinstance(points, int | np.integer) and 5 <= points <= 100_000):
+        raise InputError(Fault("points", repr(points), "", "a whole number from 5 to 100 000", name="points"))
     refuse(named)
     return next(iter(named.values())).shape, [np.ascontiguousarray(a).ravel() for a in named.values()]
 
@@ -143,18 +159,29 @@ def isenthalpic_path_at(p_line, h_line, p_exhaust, *, points: int = POINTS) -> P
     """
     named, scalar = door(p_line=p_line, h_line=h_line, p_exhaust=p_exhaust)
     shape, (p_line, h, p_exhaust) = _shaped(named, points)
+    T = if97.saturation_T(p_line)
+    steam = (h >= if97.enthalpy_1(p_line, T)) & (h <= if97.enthalpy_2(p_line, np.full(T.shape, T_MAX)))
+    if faults := refuse_outside("h_line", named["h_line"], steam.reshape(shape), "that of wet or superheated steam",
+                                why=f"the path starts between saturated water and vapour of {T_MAX} K",
+                                hint="check the unit, and the line pressure"):
+        raise InputError(*faults)
     return _isenthalpic_path(shape, scalar, p_line, h, p_exhaust, points)
 
 
 def _isenthalpic_path(shape, scalar, p_line, h, p_exhaust, points) -> Path:
     p_dry = dry_out_pressure(h, p_line)
-    inside = (p_dry < p_line) & (p_dry >= p_exhaust)
-    extra = np.where(inside, p_dry, np.sqrt(p_line * p_exhaust))
+    p_dry = np.where(p_dry >= p_exhaust, p_dry, np.nan)
+    extra = _extra(p_dry, p_line, p_exhaust)
     p = -np.sort(-np.column_stack([_grid(p_line, p_exhaust, points - 1), extra]), axis=1)
     columns = _isenthalpic(p.ravel(), np.repeat(h, points))
-    starts_wet = columns[5].reshape(p.shape)[:, 0] == SteamStatus.WET
-    return _path(shape, points, scalar, p, columns, np.zeros(p.shape), np.where(inside & starts_wet, p_dry, np.nan),
-                 np.full(h.shape, np.nan), np.zeros(h.shape))
+    nan, none = np.full(h.shape, np.nan), np.zeros(h.shape)
+    return _path(shape, points, scalar, p, columns, np.zeros(p.shape), p_dry, nan, none)
+
+
+def _extra(p_dry, p_line, p_end):
+    """The point that every path has beside its even grid: where it dries out, if that is on the way."""
+    on_the_way = (p_dry < p_line * (1 - 1e-9)) & (p_dry > p_end * (1 + 1e-9))
+    return np.where(on_the_way, p_dry, p_line * (p_end / p_line) ** _ASIDE)
 
 
 def _path(shape, points, scalar, p, columns, velocity, p_dry, p_choke, mass_flux) -> Path:
@@ -173,7 +200,7 @@ def _constant_bore(p: np.ndarray, h0: np.ndarray, G: np.ndarray):
     # wet: a quadratic in x, in the form that stays exact for small G
     b, c = 2 * k * v_f * v_fg + h_fg, k * v_f * v_f + h_f - h0
     x = -2 * c / (b + np.sqrt(np.maximum(b * b - 4 * k * v_fg * v_fg * c, 0.0)))
-    hot, T = x > 1.0 + 1e-12, sat[0].copy()
+    hot, T = x > 1.0 + ROUNDING, sat[0].copy()
     if hot.any():
         T[hot] = _search_constant_bore(p[hot], h0[hot], k[hot], T[hot])
     return _states(p, np.minimum(x, 1.0), sat, T, hot)
@@ -237,11 +264,12 @@ def constant_bore_path(p_line, x, p_exhaust, line_velocity, *, points: int = POI
     columns = _constant_bore(p.ravel(), np.repeat(h0, points - 1), np.repeat(G, points - 1))
     if _may_choke(columns[3].reshape(p.shape)).any():
         p_choke = _choking_pressure(p_line, p_exhaust, h0, G)
-        p_end = np.where(np.isnan(p_choke), p_exhaust, np.minimum(p_choke, p_line * (1 - 1e-9)))
+        p_choke = np.minimum(p_choke, p_line * (1 - 1e-9))  # a path has a length, even where the line is choked
+        p_end = np.where(np.isnan(p_choke), p_exhaust, p_choke)
         p = _grid(p_line, p_end, points - 1)
         columns = _constant_bore(p.ravel(), np.repeat(h0, points - 1), np.repeat(G, points - 1))
     p_dry = _constant_bore_dry_out(p, columns[5].reshape(p.shape) == SteamStatus.WET, h0, G)
-    extra = np.where(np.isnan(p_dry), np.sqrt(p_line * p_end), p_dry)
+    extra = _extra(p_dry, p_line, p_end)
     p, columns = _insert(p, columns, extra, _constant_bore(extra, h0, G))
     return _path(shape, points, scalar, p, columns, np.repeat(G, points) * columns[4], p_dry, p_choke, G)
 
