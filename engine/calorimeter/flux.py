@@ -7,8 +7,12 @@ from typing import NamedTuple
 import numpy as np
 
 from engine.calorimeter.checks import door, refuse
-from engine.steam.arrays import give_back, in_blocks
+from engine.steam import P_TRIPLE
+from engine.steam.arrays import give_back, in_blocks, refuse_outside
+from engine.steam.errors import InputError
 from engine.steam.saturation import saturated_kernel
+
+P_LEAST = 1100.0  # Pa: 0.585 of it, the greatest ratio of dry steam, is still above the triple pressure
 
 
 class CriticalFlow(NamedTuple):
@@ -22,8 +26,8 @@ def critical_flow(p_line, x) -> CriticalFlow:
     """Choked flow of wet or dry saturated steam by homogeneous equilibrium.
 
     The greatest rho sqrt(2 (h0 - h)) along the isentrope from (p_line, x); the steam stays in
-    equilibrium and both phases move together. ``p_line`` [Pa, absolute], ``x`` 0.2..1, any shapes.
-    Raises InputError for any input out of range.
+    equilibrium and both phases move together. ``p_line`` [Pa, absolute], at least 1100 Pa so that the
+    throat is above the triple pressure; ``x`` 0..1; any shapes. Raises InputError for any input out of range.
 
     >>> flow = critical_flow(10e5, 1.0)
     >>> round(flow.mass_flux), round(flow.pressure_ratio, 3)
@@ -31,6 +35,10 @@ def critical_flow(p_line, x) -> CriticalFlow:
     """
     named, scalar = door(p_line=p_line, x=x)
     refuse(named)
+    if faults := refuse_outside("p_line", named["p_line"], named["p_line"] >= P_LEAST, f"at least {P_LEAST:g} Pa",
+                                why="the throat would be below the triple pressure, where ice forms",
+                                hint="check the unit, and that the pressure was meant absolute"):
+        raise InputError(*faults)
     flux, ratio = in_blocks(_critical, 2, *named.values())
     return CriticalFlow(give_back(flux, scalar), give_back(ratio, scalar))
 
@@ -48,7 +56,7 @@ def _critical(p_line: np.ndarray, x: np.ndarray):
     """Zoom in on the greatest flux: three grids, then the vertex of a parabola."""
     sat = saturated_kernel(p_line)
     h0, s0 = (sat[k] + x * (sat[k + 1] - sat[k]) for k in (1, 3))
-    low, high = np.full(p_line.shape, 0.3), np.full(p_line.shape, 0.98)
+    low, high = np.full(p_line.shape, 0.3), np.full(p_line.shape, 0.9999)
     share = np.linspace(0.0, 1.0, 13)
     rows = np.arange(p_line.size)
     for _ in range(3):
@@ -65,7 +73,7 @@ def _critical(p_line: np.ndarray, x: np.ndarray):
 def _isentropic_flux(p_line, ratio, h0, s0):
     n = ratio.shape[1]
     T, h_f, h_g, s_f, s_g, v_f, v_g = (a.reshape(ratio.shape) for a in
-                                       saturated_kernel(np.maximum(p_line[:, None] * ratio, 611.657).ravel()))
+                                       saturated_kernel(np.maximum(p_line[:, None] * ratio, P_TRIPLE).ravel()))
     x = (np.broadcast_to(s0[:, None], (s0.size, n)) - s_f) / (s_g - s_f)
     h, v = h_f + x * (h_g - h_f), v_f + x * (v_g - v_f)
     return np.sqrt(np.maximum(2.0 * (h0[:, None] - h), 0.0)) / v

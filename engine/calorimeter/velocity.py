@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 
 from engine.calorimeter.throttle import saturation_enthalpies
-from engine.steam import if97
+from engine.steam import T_MAX, if97
 from engine.steam.arrays import at_the_door, give_back, in_blocks, refuse_outside
 from engine.steam.errors import InputError
 from engine.steam.saturation import refuse_p
@@ -18,7 +18,8 @@ def _positive(*optional: str, **named):
     for name, values in zip(named, arrays, strict=True):
         zero = name in optional
         inside = np.isfinite(values) & ((values >= 0) if zero else (values > 0))
-        faults += refuse_outside(name, values, inside, "0 or more" if zero else "more than 0")
+        faults += refuse_outside(name, values, inside, f"{'0 or more' if zero else 'more than 0'}, and finite",
+                                 why="it is the size of something that is there", hint="check the value and its unit")
     if faults:
         raise InputError(*faults)
     return arrays, scalar
@@ -27,7 +28,7 @@ def _positive(*optional: str, **named):
 def velocity(sample_flow, bore, v):
     """Velocity [m/s] of ``sample_flow`` [kg/s] in a round ``bore`` [m] at specific volume ``v`` [m³/kg].
 
-    Continuity. Any shapes; raises InputError for what is not positive.
+    Continuity. Any shapes; raises InputError for what is not positive (the flow may be 0).
 
     >>> velocity(40 / 3600, 0.0157, 1.791)  # 40 kg/h of exhaust steam in a 15.7 mm bore
     102.79
@@ -78,7 +79,9 @@ def kinetic_superheat(velocity, p, T):
     2.49
     """
     (c, p, T), scalar = _positive("velocity", velocity=velocity, p=p, T=T)
-    if faults := refuse_p(p):
+    faults = refuse_p(p) + refuse_outside("T", T, T <= T_MAX, f"at most {T_MAX} K",
+                                          why="the vapour equations end there", hint="check the unit: °C or °F")
+    if faults:
         raise InputError(*faults)
     cp = in_blocks(lambda a, b: (if97.vapour_h_cp(a, np.maximum(b, if97.saturation_T(a)))[1],), 1, p, T)[0]
     return give_back(0.5 * c * c / cp, scalar)
