@@ -25,7 +25,7 @@ G, G_P, G_T, G_PP, G_PT, G_TT = (0, 0), (1, 0), (0, 1), (2, 0), (1, 1), (0, 2)
 # Columns of one matrix product. Larger ones are shared out over threads by the linear-algebra library,
 # whose waiting costs more than these small products take.
 _PRODUCT = 512
-_FEW = 48  # points up to which one slow pow() call is quicker than many fast products
+_FEW = 64  # points up to which one slow pow() call is quicker than many fast products
 
 
 class _Scratch(threading.local):
@@ -89,6 +89,7 @@ class PowerSum:
         for i, j, coefficient in zip(I, J, n, strict=True):
             self.coefficients[rows.index(i), columns.index(j)] = coefficient
         self._matrices: dict[tuple[int, int], np.ndarray] = {}
+        self._stacks: dict[tuple, np.ndarray] = {}
 
     def _matrix(self, order: tuple[int, int]) -> np.ndarray:
         """Coefficients times the factors that a derivative brings down."""
@@ -98,23 +99,42 @@ class PowerSum:
             self._matrices[order] = self.coefficients * factor_I[:, None] * factor_J
         return self._matrices[order]
 
-    def __call__(self, a: np.ndarray, b: np.ndarray, wanted: Sequence[tuple[int, int]]) -> list[np.ndarray]:
+    def __call__(self, a: np.ndarray, b: np.ndarray, wanted: tuple[tuple[int, int], ...]) -> list[np.ndarray]:
         n = a.size
         of_a, of_b = _scratch.room("of_a", self.I.size, n), _scratch.room("of_b", self.J.size, n)
         self.of_a(a, of_a)
         if self.below:
             self.of_inverse_b(1.0 / b, of_b[:self.below])
         self.of_b(b, of_b[self.below:])
-        slab, results = _scratch.room("slab", self.I.size, n), []
-        for i, j in wanted:
-            matrix = self._matrix((i, j))
+        sums = self._few(of_a, of_b, wanted) if n <= _FEW else self._many(of_a, of_b, wanted)
+        # the factors of a derivative are in the matrices; what is left is the exponent it lowers
+        for k, (i, j) in enumerate(wanted):
+            for _ in range(i):
+                sums[k] /= a
+            for _ in range(j):
+                sums[k] /= b
+        return sums
+
+    def _few(self, of_a, of_b, wanted) -> list[np.ndarray]:
+        """All derivatives in one product: the fewest calls."""
+        if wanted not in self._stacks:
+            self._stacks[wanted] = np.concatenate([self._matrix(order) for order in wanted])
+        slabs = (self._stacks[wanted] @ of_b).reshape(len(wanted), self.I.size, -1)
+        slabs *= of_a
+        return list(slabs.sum(axis=1))
+
+    def _many(self, of_a, of_b, wanted) -> list[np.ndarray]:
+        """One derivative after the other, in one work space: the least memory traffic."""
+        n = of_a.shape[1]
+        slab, sums = _scratch.room("slab", self.I.size, n), []
+        for order in wanted:
+            matrix = self._matrix(order)
             for start in range(0, n, _PRODUCT):
                 part = slice(start, start + _PRODUCT)
                 np.matmul(matrix, of_b[:, part], out=slab[:, part])
             np.multiply(slab, of_a, out=slab)
-            total = slab.sum(axis=0)
-            results.append(total / (a**i * b**j) if i or j else total)
-        return results
+            sums.append(slab.sum(axis=0))
+        return sums
 
 
 _REGION_1 = PowerSum(tab.REGION_1)
@@ -135,7 +155,10 @@ def _ideal(tau: np.ndarray, order: int) -> np.ndarray:
     for coefficient in coefficients[-2::-1]:
         total *= tau
         total += coefficient
-    return total * tau ** (_IDEAL_J[0] - order)
+    per_tau = 1.0 / tau
+    for _ in range(int(order - _IDEAL_J[0])):
+        total *= per_tau
+    return total
 
 
 def gibbs_1(p: np.ndarray, T: np.ndarray, wanted: Sequence[tuple[int, int]]) -> list[np.ndarray]:
