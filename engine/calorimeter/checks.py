@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from functools import reduce
 from typing import NamedTuple
 
 import numpy as np
@@ -82,12 +83,14 @@ def with_status(kernel: Callable[..., tuple], outputs: int, **inputs):
     beside them; a scalar call gives floats and a Status, or raises InputError.
     """
     named, scalar = door(**inputs)
+    alike = {name for name, v in named.items() if not any(v.strides)}  # one value for all elements: looked at once
 
     def block(*values):
         a = dict(zip(named, values, strict=True))
-        inside = {name: LIMITS[name].inside(a) for name in a}
-        usable = np.logical_and.reduce(list(inside.values()))
-        missing = np.logical_or.reduce([np.isnan(v) for v in a.values()])
+        looked_at = {name: v[:1] if name in alike else v for name, v in a.items()}
+        usable = reduce(np.logical_and, (LIMITS[name].inside(looked_at) for name in a))
+        missing = reduce(np.logical_or, map(np.isnan, looked_at.values()))
+        usable, missing = (np.broadcast_to(mask, values[0].shape) for mask in (usable, missing))
         if not usable.all():
             a = {name: np.where(usable, v, LIMITS[name].harmless) for name, v in a.items()}
         return kernel(a, usable, missing)
