@@ -112,8 +112,9 @@ def _states(p: np.ndarray, x: np.ndarray, sat: tuple, T: np.ndarray, hot: np.nda
 
 
 def _isenthalpic(p: np.ndarray, h: np.ndarray):
-    """States at enthalpy ``h`` over 1-d pressures."""
-    sat = saturated_kernel(p)
+    """States at enthalpy ``h`` over 1-d pressures; paths side by side share most of theirs."""
+    distinct, where = np.unique(p, return_inverse=True)
+    sat = tuple(column[where] for column in saturated_kernel(distinct))
     x = (h - sat[1]) / (sat[2] - sat[1])
     hot, T = x > 1.0 + ROUNDING, sat[0].copy()
     if hot.any():

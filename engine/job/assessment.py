@@ -16,17 +16,20 @@ from engine.calorimeter import (
     exhaust_temperature,
     isenthalpic_path_at,
     kinetic_energy,
-    kinetic_quality,
     kinetic_superheat,
     least_quality,
     quality,
     velocity,
+    velocity_ratio,
 )
 from engine.job.case import Case, Resolved, resolve
 from engine.job.fields_path import BY_NORMAL, EXPECTED, UNDECIDED
 from engine.job.terms import Terms, check_method, terms_at
 from engine.steam import Saturated, saturated, saturation_temperature, vapour
 from engine.steam.errors import Fault, InputError
+
+
+POINTS = 25  # along a path: the eye sees no corner, and the page stays quick
 
 
 class Verdict(StrEnum):
@@ -154,12 +157,12 @@ def assess(case: Case) -> Assessment:
     if np.isnan(h_line):  # only a bound is known: the path of the driest steam that could read so
         h_line = line.h_f + x_bound * (line.h_g - line.h_f)
     h_least = line.h_f + x_least * (line.h_g - line.h_f)
-    both = isenthalpic_path_at(p1, np.array([h_line, h_least]), p2)
+    both = isenthalpic_path_at(p1, np.array([h_line, h_least]), p2, points=POINTS)
     path, reach_path = _row(both, 0), _row(both, 1)
     velocities = _velocities(si, path, terms, line)
     bore_path = None
     if velocities.sample and line_superheat == 0.0 and path.x[0] <= 1.0:
-        bore_path = constant_bore_path(p1, float(path.x[0]), p2, velocities.sample)
+        bore_path = constant_bore_path(p1, float(path.x[0]), p2, velocities.sample, points=POINTS)
     return Assessment(case, si, verdict, status, x, x_below, as_read, without_kinetic, T, T_sat, superheat, x_exhaust,
                       x_least, superheat - least, line_superheat, terms, line, velocities, path, reach_path,
                       bore_path, _states(path, bore_path, velocities),
@@ -216,12 +219,12 @@ def _velocities(si: Resolved, path: Path, terms: Terms, line: Saturated) -> Velo
     exhaust = velocity(flow, d2, v2) if flow and d2 else None
     ratio = exhaust / sample if sample and exhaust else None
     if ratio is None and d1 and d2:
-        ratio = v2 / v1 * (d1 / d2) ** 2
-    c = exhaust
+        ratio = velocity_ratio(v1, v2, d1, d2)
+    energy = kinetic_energy(exhaust) if exhaust else None
     return Velocities(
-        si["line_velocity"], sample, exhaust, ratio, bore_ratio_keeping_velocity(v1, v2),
-        kinetic_energy(c) if c else None, kinetic_superheat(c, si["p_exhaust"], float(path.T[-1])) if c else None,
-        kinetic_quality(c, si["p_line"]) if c else None)
+        si["line_velocity"], sample, exhaust, ratio, bore_ratio_keeping_velocity(v1, v2), energy,
+        kinetic_superheat(exhaust, si["p_exhaust"], float(path.T[-1])) if exhaust else None,
+        energy / (line.h_g - line.h_f) if exhaust else None)
 
 
 def _read_state(p: float, T: float, superheat: float, velocities: Velocities) -> StatePoint | None:
