@@ -97,29 +97,41 @@ def browser():
         chromium.close()
 
 
+@pytest.fixture(scope="package")
+def windows(browser):
+    """Browser contexts by their kind, kept over the tests so that Streamlit's files are fetched once."""
+    contexts = {}
+
+    def context(width: int, height: int, dark: bool, phone: bool):
+        kind = (width, height, dark, phone)
+        if kind not in contexts:
+            scheme = "dark" if dark else "light"
+            size = {"width": width, "height": height}
+            contexts[kind] = browser.new_context(viewport=size, color_scheme=scheme, is_mobile=phone, has_touch=phone)
+            contexts[kind].set_default_timeout(PATIENCE)
+        return contexts[kind]
+
+    yield context
+    for context in contexts.values():
+        context.close()
+
+
 @pytest.fixture
-def visit(browser):
-    """Open an address in a window of its own: ``visit(address, width=1440, height=900, dark=False, phone=False)``.
+def visit(windows):
+    """Open an address in a page of its own: ``visit(address, width=1440, height=900, dark=False, phone=False)``.
 
     ``forgive`` is a pattern of complaints that the test provokes on purpose, ``prepare`` gets the page before it
     goes anywhere. Every other complaint fails the test when it ends.
     """
-    contexts, complaints = [], []
+    pages, complaints = [], []
 
     def go(address, *, width=1440, height=900, dark=False, phone=False, forgive=None, prepare=None):
         def complain(words: str) -> None:
             if not (forgive and re.search(forgive, words)):
                 complaints.append(words)
 
-        context = browser.new_context(
-            viewport={"width": width, "height": height},
-            color_scheme="dark" if dark else "light",
-            is_mobile=phone,
-            has_touch=phone,
-        )
-        context.set_default_timeout(PATIENCE)
-        contexts.append(context)
-        page = context.new_page()
+        page = windows(width, height, dark, phone).new_page()
+        pages.append(page)
         page.on("console", lambda message: message.type == "error" and complain(f"console: {message.text}"))
         page.on("pageerror", lambda error: complain(f"thrown: {error}"))
         page.on("request", lambda request: _leaves(request.url) and complain(f"leaves the machine: {request.url}"))
@@ -131,8 +143,8 @@ def visit(browser):
         return page
 
     yield go
-    for context in contexts:
-        context.close()
+    for page in pages:
+        page.close()
     assert not complaints, "\n".join(complaints)
 
 

@@ -295,4 +295,4 @@ def test_under_a_base_path(tmp_path, visit):
         page = visit(address)
         page.wait_for_selector(".diagrams[data-drawn]")
         assert path_of(page) == pytest.approx([2.2, 168.085], abs=0.3)
-        page.context.close()  # before its server goes
+        page.close()  # before its server goes
