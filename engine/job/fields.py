@@ -6,7 +6,9 @@ one of the modules gathered here.
 
 from __future__ import annotations
 
+from engine.job.fields_modes import MODE_FIELDS
 from engine.job.fields_path import PATH_FIELDS
+from engine.job.fields_reach import REACH_FIELDS
 from engine.job.rows import Field
 
-FIELDS: dict[str, Field] = {row.name: row for rows in (PATH_FIELDS,) for row in rows}
+FIELDS: dict[str, Field] = {row.name: row for rows in (PATH_FIELDS, MODE_FIELDS, REACH_FIELDS) for row in rows}

@@ -132,10 +132,17 @@ _ROWS = (
     ("vessel_loss", "q_s", "enthalpy", "J/kg", "vessel heat loss per kg of the whole sample"),
     ("drain_fraction", "z", "fraction", "1", "part of the sample drained as water"),
     ("x_throttled", "x_t", "fraction", "1", "quality after the separator"),
+    ("water_share", "η", "fraction", "1", "part of the water drained"),
     ("p_heater", "p₃", "pressure", "Pa", "pressure after the heater"),
     ("T_heater", "T₃", "temperature", "K", "temperature after the heater"),
     ("power", "P", "power", "W", "electric power"),
     ("power_loss", "P_l", "power", "W", "heat lost by the heater"),
+    # planning
+    ("wetness_low", "y_low", "fraction", "1", "driest expected wetness"),
+    ("wetness_high", "y_high", "fraction", "1", "wettest expected wetness"),
+    ("U_thermometer", "U(T₂)", "difference", "K", "expanded uncertainty of the thermometer"),
+    ("U_quality", "U(x)", "fraction", "1", "expanded uncertainty of the quality"),
+    ("p_exhaust_lowest", "p₂,min", "pressure", "Pa", "lowest exhaust pressure to be had"),
 )
 
 QUANTITIES: dict[str, Quantity] = {row[0]: Quantity(*row) for row in _ROWS}
