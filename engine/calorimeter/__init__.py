@@ -10,7 +10,13 @@ from engine.calorimeter.atmosphere import (
     tapping_pressure,
     water_leg,
 )
-from engine.calorimeter.electric import HeaterReading, electric_quality, heater_reading, power_needed
+from engine.calorimeter.electric import (
+    HeaterReading,
+    electric_quality,
+    heater_reading,
+    least_electric_quality,
+    power_needed,
+)
 from engine.calorimeter.exhaust import ExhaustPipe, exhaust_pipe, exhaust_velocity
 from engine.calorimeter.flux import CriticalFlow, critical_flow, critical_mass_flux
 from engine.calorimeter.friction import FITTINGS, STEEL_ROUGHNESS, fittings_loss, friction_factor, steam_viscosity
@@ -62,7 +68,9 @@ from engine.calorimeter.separating import (
     MassBasis,
     Separated,
     SeparatedReading,
+    combined_quality,
     drain_needed,
+    drained_fraction,
     drained_mass,
     flash_fraction,
     separated_quality,
@@ -112,22 +120,21 @@ from engine.calorimeter.wet import WetSteam, wet_steam
 
 __all__ = [  # the rig
     "DISCHARGES", "DrainNeeded", "ExhaustPipe", "FITTINGS", "HeaterReading", "LAGGING_CONDUCTIVITY", "Lagging",
-    "LossMethod", "MassBasis", "MovingStreamError", "NormalReading", "OUTER_FILMS", "OrificeFlow",
-    "RECOVERY_FACTORS", "Recovery", "STEEL_ROUGHNESS", "STEM_COEFFICIENTS", "SampleBias", "Separated",
-    "SeparatedReading", "Stage", "SteamUsed", "StemLiquid", "TwoFlowFit", "WEATHER_HALF_WIDTH", "WarmUp",
-    "WetSteam", "altitude_of_pressure", "aspiration_efficiency", "body_heat_capacity", "body_temperature",
-    "bore_for_flow", "chosen_heat_loss", "conductance_of", "corrected_temperature", "cross_flow_film",
-    "discharge_from_flow", "drain_needed", "drained_mass", "electric_quality", "exhaust_pipe",
-    "exhaust_velocity", "fit_two_flows", "fittings_loss", "flash_fraction", "flux_at", "friction_factor",
-    "geopotential_altitude", "grashof_mass_flux", "heat_loss_per_kg", "heater_reading", "high_pressure_factor",
-    "ideal_normal", "immersion_error", "immersion_for", "isokinetic_port_area", "isokinetic_sample_flow",
-    "lag_error", "leg_density", "moving_stream_error", "napier_mass_flux", "normal_reading", "orifice_flow",
-    "orifice_mass_flux", "pipe_area", "pipe_conductance", "pipe_velocity", "power_needed",
-    "probe_time_constant", "radiation_error", "rateau_mass_flux", "reading_error", "sample_bias",
-    "separated_quality", "separated_reading", "settling_time", "standard_pressure", "station_pressure",
-    "steam_used", "steam_viscosity", "stem_error", "stokes_number", "storage_heat", "tapping_pressure",
-    "time_to_within", "warm_up", "water_leg", "weighed_flow", "wet_steam", "wetness_by_normal_reading",
-    "wetness_in_line", "wetness_sampled",
+    "LossMethod", "MassBasis", "MovingStreamError", "NormalReading", "OUTER_FILMS", "OrificeFlow", "RECOVERY_FACTORS",
+    "Recovery", "STEEL_ROUGHNESS", "STEM_COEFFICIENTS", "SampleBias", "Separated", "SeparatedReading", "Stage",
+    "SteamUsed", "StemLiquid", "TwoFlowFit", "WEATHER_HALF_WIDTH", "WarmUp", "WetSteam", "altitude_of_pressure",
+    "aspiration_efficiency", "body_heat_capacity", "body_temperature", "bore_for_flow", "chosen_heat_loss",
+    "combined_quality", "conductance_of", "corrected_temperature", "cross_flow_film", "discharge_from_flow",
+    "drain_needed", "drained_fraction", "drained_mass", "electric_quality", "exhaust_pipe", "exhaust_velocity",
+    "fit_two_flows", "fittings_loss", "flash_fraction", "flux_at", "friction_factor", "geopotential_altitude",
+    "grashof_mass_flux", "heat_loss_per_kg", "heater_reading", "high_pressure_factor", "ideal_normal",
+    "immersion_error", "immersion_for", "isokinetic_port_area", "isokinetic_sample_flow", "lag_error",
+    "least_electric_quality", "leg_density", "moving_stream_error", "napier_mass_flux", "normal_reading",
+    "orifice_flow", "orifice_mass_flux", "pipe_area", "pipe_conductance", "pipe_velocity", "power_needed",
+    "probe_time_constant", "radiation_error", "rateau_mass_flux", "reading_error", "sample_bias", "separated_quality",
+    "separated_reading", "settling_time", "standard_pressure", "station_pressure", "steam_used", "steam_viscosity",
+    "stem_error", "stokes_number", "storage_heat", "tapping_pressure", "time_to_within", "warm_up", "water_leg",
+    "weighed_flow", "wet_steam", "wetness_by_normal_reading", "wetness_in_line", "wetness_sampled",
 ]
 __all__ += [  # throttling
     "CriticalFlow", "Exhaust", "Path", "Quality", "SENTENCES", "Status", "bore_ratio_keeping_velocity",

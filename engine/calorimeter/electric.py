@@ -90,6 +90,24 @@ def power_needed(p_line, x, p_heater, sample_flow, superheat=5.0, *, power_loss=
     return give_back(np.maximum(heat, 0.0), scalar)
 
 
+def least_electric_quality(p_line, p_heater, power, sample_flow, superheat=5.0, *, power_loss=0.0):
+    """The reach: the quality in the line that this power just brings ``superheat`` [K] above saturation.
+
+    Arguments as for ``power_needed``, with the ``power`` [W]; arrays broadcast. Below 0 where the power
+    would superheat even water at the boil, above 1 where it would not do for dry steam. Raises InputError.
+
+    >>> round(least_electric_quality(6e5, 6e5, 852.6, 12 / 3600, 20.0), 4)
+    0.9
+    """
+    (p, P, p3, m, dT, lost), scalar = admit(p_line=p_line, power=power, p_heater=p_heater, sample_flow=sample_flow,
+                                            superheat=superheat, power_loss=power_loss)
+    require("p_heater", p3, p3 <= p, _WORDS["p_heater"])
+    require("power_loss", lost, lost < P, _WORDS["power_loss"])
+    line, after = saturated(p), saturated(p3)
+    h = np.asarray(vapour(p3, after.T + dT).h) - (P - lost) / m
+    return give_back(np.asarray((h - line.h_f) / (line.h_g - line.h_f)), scalar)
+
+
 def heater_reading(p_line, x, p_heater, power, sample_flow, *, power_loss=0.0, least_superheat=0.0) -> HeaterReading:
     """What the thermometer after the heater must show; the inverse of ``electric_quality``.
 

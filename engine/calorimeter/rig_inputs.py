@@ -88,6 +88,8 @@ _BY_NAME: dict[str, Limits] = {
     "wetness_read": _PART,
     "wall_film": _PART,
     "drain_fraction": _PART,
+    "water_share": _PART,
+    "x_throttled": Limits(0.0, 2.0, high_open=True, hint="a fraction, not a percentage"),
     "stokes": _NOT_NEGATIVE,
     "discharge": Limits(0.0, 1.5, low_open=True, hint="0.60 for a sharp edge, up to 0.97 for a rounded inlet"),
     "recovery": Limits(0.0, 1.0),

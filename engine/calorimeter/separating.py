@@ -24,6 +24,7 @@ from engine.calorimeter.verdict import verdict
 from engine.calorimeter.wet import wet_steam
 from engine.steam import saturated, saturation_pressure
 from engine.steam.arrays import at_the_door, give_back, in_blocks
+from engine.steam.errors import Fault, InputError
 
 _ROUNDING = 1e-9  # of a quality of 1
 
@@ -162,6 +163,50 @@ def _refuse(a, own, basis):
                            f"more than {least:g} kg", why="some steam went through the throttle",
                            hint="check which mass was weighed"),
            lambda: quality(a["p_separator"], **{name: value for name, value in a.items() if name not in own}))
+
+
+def combined_quality(p_line, x_throttled, *, drain_fraction=None, water_share=None, p_separator=None,
+                     vessel_loss=0.0):
+    """Quality in the line [1] from that left to the throttle and what was drained.
+
+    Give either ``drain_fraction``, the part of the whole sample, or ``water_share``, the part of the
+    water that reaches the separator. ``x_throttled`` may be above 1, as a reach may. Pressures
+    [Pa], ``vessel_loss`` [J/kg of the whole sample]; all broadcast together. Raises InputError.
+
+    >>> round(combined_quality(8e5, 0.967, drain_fraction=0.09), 3)
+    0.88
+    """
+    if (drain_fraction is None) == (water_share is None):
+        raise InputError(Fault("drained water", "both a part of the sample and of the water" if water_share is not None
+                               else "nothing", "", "one of drain_fraction and water_share"))
+    drained = {"drain_fraction": drain_fraction} if water_share is None else {"water_share": water_share}
+    (p, x_t, p_s, q_s, part), scalar = admit(
+        p_line=p_line, x_throttled=x_throttled, p_separator=p_line if p_separator is None else p_separator,
+        vessel_loss=vessel_loss, **drained)
+    require("p_separator", p_s, p_s <= p, "at most the line pressure")
+    # what arrived in the separator: of dry steam there is nothing to take a share of
+    arriving = x_t * (1 - part) if water_share is None else np.where(
+        x_t < 1, x_t * (1 - part) / (1 - part * np.minimum(x_t, 1.0)), x_t)
+    line, sep = saturated(p), saturated(p_s)
+    x = (np.asarray(sep.h_f + arriving * (sep.h_g - sep.h_f)) + q_s - line.h_f) / (line.h_g - line.h_f)
+    return give_back(np.asarray(x), scalar)
+
+
+def drained_fraction(p_line, x, water_share, *, p_separator=None, vessel_loss=0.0):
+    """Part of the whole sample [1] that a separator drains when it takes ``water_share`` of the water there.
+
+    Arguments as for ``combined_quality``, with the quality ``x`` in the line. Raises InputError.
+
+    >>> round(drained_fraction(8e5, 0.88, 0.75), 4)
+    0.09
+    """
+    arrays, scalar = admit(p_line=p_line, x=x, water_share=water_share, vessel_loss=vessel_loss,
+                           p_separator=p_line if p_separator is None else p_separator)
+    p, x, share, q_s, p_s = arrays
+    require("p_separator", p_s, p_s <= p, "at most the line pressure")
+    sep = saturated(p_s)
+    arriving = (np.asarray(wet_steam(p, x).h) - q_s - sep.h_f) / (sep.h_g - sep.h_f)
+    return give_back(np.asarray(share * np.maximum(1 - arriving, 0.0)), scalar)
 
 
 def separated_reading(p_line, x, p_exhaust, drain_fraction, *, p_separator=None, vessel_loss=0.0,

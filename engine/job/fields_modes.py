@@ -23,8 +23,8 @@ MODE_FIELDS = (
     choice("weighed_basis", "Weighed beside it", "modes", (NOT_STATED, *MassBasis)),
     quantity("weighed_mass", "Mass weighed", "modes", 1e-6, 1e4),
     quantity("vessel_loss", "Heat loss of the vessel per kg of the whole sample", "modes", 0.0, 5e5),
-    quantity("water_share", "Part of the water the separator drains", "modes", 0.0, 1.0, Entry(90.0, "%"),
-             why="it cannot drain more water than there is"),
+    quantity("water_share", "Part of the water the separator drains", "modes", 0.0, 0.999, Entry(90.0, "%"),
+             why="no separator drains all of it"),
     # electric superheating
     quantity("p_heater", "Pressure after the heater", "modes", 1e3, 165e5, None,
              hint="leave it empty where it is the line's"),

@@ -6,12 +6,15 @@ import pytest
 from engine.calorimeter import (
     MassBasis,
     Status,
+    combined_quality,
     drain_needed,
+    drained_fraction,
     drained_mass,
     electric_quality,
     exhaust_temperature,
     flash_fraction,
     heater_reading,
+    least_electric_quality,
     least_quality,
     power_needed,
     quality,
@@ -132,6 +135,24 @@ def test_a_loss_beyond_all_steam_is_refused():
         separated_quality(P, P2, 385.0, 0.3, 3.0, STEAM, vessel_loss=-3e6)
 
 
+def test_what_was_drained_puts_the_quality_together_again():
+    seen = separated_reading(P, 0.88, P2, 0.09, p_separator=6e5, vessel_loss=3000.0)
+    assert combined_quality(P, seen.x_throttled, drain_fraction=0.09, p_separator=6e5, vessel_loss=3000.0) \
+        == pytest.approx(0.88, abs=1e-12)
+    share = 0.09 / ((1 - seen.x_throttled) * 0.91 + 0.09)
+    assert drained_fraction(P, 0.88, share, p_separator=6e5, vessel_loss=3000.0) == pytest.approx(0.09, abs=1e-12)
+    assert combined_quality(P, seen.x_throttled, water_share=share, p_separator=6e5, vessel_loss=3000.0) \
+        == pytest.approx(0.88, abs=1e-12)
+
+
+def test_a_better_separator_reaches_further_and_dry_steam_has_nothing_to_drain():
+    reach = combined_quality(P, 0.96, water_share=np.array([0.0, 0.5, 0.9]))
+    assert reach[0] == pytest.approx(0.96) and (np.diff(reach) < 0).all()
+    assert combined_quality(P, np.array([1.0, 1.02]), water_share=0.9) == pytest.approx([1.0, 1.02])
+    with pytest.raises(InputError, match="needs one of drain_fraction and water_share"):
+        combined_quality(P, 0.96)
+
+
 # --- electric ---------------------------------------------------------------------------------------
 
 M = 12 / 3600
@@ -185,3 +206,12 @@ def test_electric_refusals():
         heater_reading(6e5, 0.9, 6e5, 1e5, M)
     with pytest.raises(InputError, match="electric power: .* needs a power that fits the sample flow"):
         electric_quality(6e5, 6e5, 440.0, 1e5, M)
+
+
+def test_the_electric_reach_is_what_the_power_just_superheats():
+    power = np.array([500.0, 852.6, 1200.0])
+    least = least_electric_quality(6e5, 5.9e5, power, M, 5.0, power_loss=15.0)
+    assert heater_reading(6e5, least, 5.9e5, power, M, power_loss=15.0).superheat == pytest.approx([5.0] * 3, abs=1e-6)
+    assert (np.diff(least) < 0).all()
+    with pytest.raises(InputError, match="less than the power"):
+        least_electric_quality(6e5, 5.9e5, 10.0, M, power_loss=15.0)
