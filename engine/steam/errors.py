@@ -24,8 +24,9 @@ class Fault:
 
     def __str__(self) -> str:
         place = f" at position {', '.join(map(str, self.index))}" if self.index else ""
+        unit = f" {self.unit}" if self.unit not in ("", "1") else ""  # "1" is the unit of what has none
         value = f"{self.value:.7g}" if isinstance(self.value, float) else str(self.value)
-        lines = [f"{self.quantity}{place}: got {value} {self.unit}".rstrip() + f", needs {self.limit}"]
+        lines = [f"{self.quantity}{place}: got {value}{unit}, needs {self.limit}"]
         lines += [f"  - {line}" for line in (self.why, self.hint) if line]
         return "\n".join(lines)
 

@@ -30,7 +30,7 @@ def test_refusals():
     assert str(caught.value) == (
         "line pressure: got nan Pa, needs 611.657 Pa to 16.529 MPa absolute\n"
         "  - the saturation properties used here end there\n  - check the unit, and gauge or absolute\n"
-        "quality: got -0.1 1, needs 0 to 1\n"
+        "quality: got -0.1, needs 0 to 1\n"
         "  - it is the share of vapour in the mass\n  - give a fraction, not a percentage")
     with pytest.raises(InputError) as caught:
         critical_flow([1e6, 800.0], 1.0)

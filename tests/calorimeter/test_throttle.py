@@ -137,14 +137,14 @@ TEXTS = {
                       "  - check the unit, and that both pressures are meant absolute"),
     "T_exhaust": (121.0, "exhaust temperature: got 121 K, needs 273.15 to 1073.15 K\n"
                          "  - the steam equations hold there\n  - check the unit: °C or °F"),
-    "x": (98.0, "quality: got 98 1, needs 0 to 1\n  - it is the share of vapour in the mass\n"
+    "x": (98.0, "quality: got 98, needs 0 to 1\n  - it is the share of vapour in the mass\n"
                 "  - give a fraction, not a percentage"),
     "heat_loss": (np.nan, "heat loss per kg of sample: got nan J/kg, needs a loss within ±10 MJ/kg\n"
                           "  - the energy balance needs it\n"
                           "  - give it per kg of sample; negative where heat is gained"),
     "line_velocity": (-3.0, "line velocity: got -3 m/s, needs 0 to 10 000 m/s\n  - the energy balance needs it"),
     "exhaust_velocity": (-3.0, "exhaust velocity: got -3 m/s, needs 0 to 10 000 m/s\n  - the energy balance needs it"),
-    "recovery": (70.0, "recovery factor: got 70 1, needs 0 to 1\n"
+    "recovery": (70.0, "recovery factor: got 70, needs 0 to 1\n"
                        "  - a probe takes up between none and all of the kinetic energy"),
     "least_superheat": (-5.0, "least superheat: got -5 K, needs 0 to 500 K\n"
                               "  - it is a difference above saturation\n  - give it in kelvin"),

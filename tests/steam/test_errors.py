@@ -22,6 +22,7 @@ def test_a_fault_says_which_got_allowed_why_and_what_to_do():
 
 def test_a_fault_leaves_out_what_it_has_not():
     assert str(Fault("quality", 1.2, "", "0 to 1")) == "quality: got 1.2, needs 0 to 1"
+    assert str(Fault("quality", 97.0, "1", "0 to 1")) == "quality: got 97, needs 0 to 1"
     assert str(Fault("unit", "furlong", "", "one of: m")) == "unit: got furlong, needs one of: m"
     assert str(Fault("pressure", float("nan"), "Pa", "a number")) == "pressure: got nan Pa, needs a number"
     assert str(Fault("pressure", 1.0, "Pa", "more", index=(0,))).startswith("pressure at position 0: got 1 Pa")
