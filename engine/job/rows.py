@@ -37,9 +37,9 @@ class Field:
 
 
 def quantity(name: str, label: str, group: str, low: float, high: float, blank: Entry | None = None, *,
-             why: str = "", hint: str = "") -> Field:
-    """A row for a measured or assumed quantity; its kind of unit comes from the quantity table."""
-    kind = QUANTITIES[name].kind
+             kind: str = "", why: str = "", hint: str = "") -> Field:
+    """A row for a measured or assumed quantity; its kind of unit comes from the quantity table unless told."""
+    kind = kind or QUANTITIES[name].kind
     assert blank is None or blank.unit in UNITS[kind], name
     return Field(name, label, QUANTITY, group, blank, kind, low, high, why, hint)
 

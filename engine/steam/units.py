@@ -28,13 +28,16 @@ _LB, _FT, _IN = 0.45359237, 0.3048, 0.0254
 _PSI = _LB * G_STANDARD / _IN**2
 _BTU = 1055.05585262  # J, International Table
 
+_PRESSURES = {"Pa": (1, 0), "kPa": (1e3, 0), "mbar": (100, 0), "bar": (1e5, 0), "MPa": (1e6, 0),
+              "psi": (_PSI, 0), "inHg": (3386.389, 0), "mmHg": (133.322387415, 0), "kgf/cm²": (98066.5, 0),
+              "mmH2O": (G_STANDARD, 0), "inH2O": (249.0889, 0)}  # conventional columns of water, SP 811
+
 # kind -> unit -> (scale, offset): SI value = value * scale + offset. The first is the engine's own.
 UNITS: dict[str, dict[str, tuple[float, float]]] = {
-    "pressure": {"Pa": (1, 0), "kPa": (1e3, 0), "mbar": (100, 0), "bar": (1e5, 0), "MPa": (1e6, 0),
-                 "psi": (_PSI, 0), "inHg": (3386.389, 0), "mmHg": (133.322387415, 0), "kgf/cm²": (98066.5, 0),
-                 "mmH2O": (G_STANDARD, 0), "inH2O": (249.0889, 0)},  # conventional columns of water, SP 811
+    "pressure": _PRESSURES,
     "temperature": {"K": (1, 0), "°C": (1, ZERO_CELSIUS), "°F": (1 / 1.8, ZERO_CELSIUS - 32 / 1.8)},
     "difference": {"K": (1, 0), "°C": (1, 0), "°F": (1 / 1.8, 0)},
+    "pressure difference": _PRESSURES,  # neither gauge nor absolute
     "fraction": {"1": (1, 0), "%": (0.01, 0), "%pt": (0.01, 0)},
     "enthalpy": {"J/kg": (1, 0), "kJ/kg": (1e3, 0), "Btu/lb": (_BTU / _LB, 0)},
     "entropy": {"J/(kg K)": (1, 0), "kJ/(kg K)": (1e3, 0), "Btu/(lb °F)": (_BTU / _LB * 1.8, 0)},
@@ -155,14 +158,16 @@ class UnitSystem:
         return number if unit == "1" else f"{number} {unit}"
 
 
-_SI = {"pressure": ("bar", 3), "temperature": ("°C", 1), "difference": ("K", 1), "fraction": ("1", 4),
+_SI = {"pressure": ("bar", 3), "temperature": ("°C", 1), "difference": ("K", 1),
+       "pressure difference": ("bar", 4), "fraction": ("1", 4),
        "enthalpy": ("kJ/kg", 1), "entropy": ("kJ/(kg K)", 4), "specific volume": ("m³/kg", 4),
        "velocity": ("m/s", 1), "length": ("mm", 1), "area": ("mm²", 1), "mass": ("kg", 3),
        "mass flow": ("kg/h", 1), "mass flux": ("kg/(m² s)", 1), "power": ("W", 0), "conductance": ("W/K", 3),
        "conductivity": ("W/(m K)", 3), "film coefficient": ("W/(m² K)", 1), "time": ("min", 1),
        "rate": ("K/min", 3), "density": ("kg/m³", 2), "volume": ("L", 3), "viscosity": ("µPa s", 2),
        "expansion": ("1/K", 6), "heat capacity": ("kJ/K", 2), "number": ("1", 3)}
-_US = {"pressure": ("psi", 2), "temperature": ("°F", 1), "difference": ("°F", 1), "fraction": ("1", 4),
+_US = {"pressure": ("psi", 2), "temperature": ("°F", 1), "difference": ("°F", 1),
+       "pressure difference": ("psi", 3), "fraction": ("1", 4),
        "enthalpy": ("Btu/lb", 1), "entropy": ("Btu/(lb °F)", 4), "specific volume": ("ft³/lb", 3),
        "velocity": ("ft/s", 1), "length": ("in", 3), "area": ("in²", 4), "mass": ("lb", 3),
        "mass flow": ("lb/h", 1), "mass flux": ("lb/(ft² s)", 2), "power": ("Btu/h", 0),
