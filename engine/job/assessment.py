@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from enum import StrEnum
 
 import numpy as np
 
@@ -23,22 +22,17 @@ from engine.calorimeter import (
     velocity_ratio,
 )
 from engine.job.case import Case, Resolved, resolve
+from engine.job.fields_modes import ELECTRIC, SEPARATING
 from engine.job.fields_path import BY_NORMAL, EXPECTED, UNDECIDED
+from engine.job.heating import Heating, heat, heating_path
+from engine.job.modes import check_mode
+from engine.job.separation import Separation, separated, stage_of
 from engine.job.terms import Terms, check_method, terms_at
+from engine.job.verdict import Verdict, verdict_of
 from engine.steam import Saturated, saturated, saturation_temperature, vapour
 from engine.steam.errors import Fault, InputError
 
-
 POINTS = 25  # along a path: the eye sees no corner, and the page stays quick
-
-
-class Verdict(StrEnum):
-    """What can be said about the case."""
-
-    READS = "reads"
-    THIN = "thin"
-    CANNOT = "cannot read"
-    SUPERHEATED = "line superheated"
 
 
 @dataclass(frozen=True)
@@ -82,6 +76,9 @@ class Assessment:
     margin      superheat above the least readable one [K]
     line_superheat      [K], 0 for a wet line
     read_state  the exhaust steam as the thermometer reads it; None where that is not superheated
+    separation, heating   what a separator or a heater did before; None where there is none. Behind a separator
+        the path is that of the throttled steam; with a heater it is the heating, "exhaust" is the steam after
+        it, and ``x_as_read`` leaves out the heat that the heater lost
     """
 
     case: Case
@@ -107,6 +104,8 @@ class Assessment:
     bore_path: Path | None
     states: tuple[StatePoint, ...]
     read_state: StatePoint | None
+    separation: Separation | None = None
+    heating: Heating | None = None
 
     @property
     def expected(self) -> bool:
@@ -115,7 +114,19 @@ class Assessment:
 
     @property
     def heat_loss_undecided(self) -> bool:
+        if self.heating is not None:
+            return self.case["power_loss"] is None
         return self.case["heat_loss_method"] == UNDECIDED
+
+    @property
+    def p_thermometer(self) -> float:
+        """Pressure where the deciding temperature is taken [Pa]."""
+        return self.heating.p if self.heating is not None else self.si["p_exhaust"]
+
+    def in_quality(self, energy: float) -> float:
+        """What an energy [J/kg of the steam at the thermometer] is worth in the quality of the line."""
+        kept = 1.0 - self.separation.drain_fraction if self.separation is not None else 1.0
+        return kept * energy / (self.line.h_g - self.line.h_f)
 
 
 def assess(case: Case) -> Assessment:
@@ -127,7 +138,18 @@ def assess(case: Case) -> Assessment:
     ('reads', 0.972, 20.9)
     """
     si = resolve(case)
+    check_mode(case, si)
+    if case["mode"] == ELECTRIC:
+        return _heated(case, si)
     check_method(case)
+    if case["mode"] == SEPARATING:
+        stage, separation = stage_of(case, si)
+        return separated(_throttled(case, stage), si, separation)
+    return _throttled(case, si)
+
+
+def _throttled(case: Case, si: Resolved) -> Assessment:
+    """The sample through the orifice alone."""
     _check_normal(case, si)
     p1, p2 = si["p_line"], si["p_exhaust"]
     T_sat, line = saturation_temperature(p2), saturated(p1)
@@ -167,6 +189,28 @@ def assess(case: Case) -> Assessment:
                       x_least, superheat - least, line_superheat, terms, line, velocities, path, reach_path,
                       bore_path, _states(path, bore_path, velocities),
                       _read_state(p2, T, superheat, velocities))
+
+
+def _heated(case: Case, si: Resolved) -> Assessment:
+    """The sample through a heater instead of an orifice."""
+    found, heating, x_least = heat(case, si)
+    least, line = si["least_superheat"], saturated(si["p_line"])
+    verdict = (Verdict.SUPERHEATED if found.status == Status.LINE_SUPERHEATED else
+               verdict_of(found.superheat, least, si["comfortable_superheat"],
+                          wet=found.status == Status.NOT_SUPERHEATED))
+    expected = case["question"] == EXPECTED
+    known = expected or verdict in (Verdict.READS, Verdict.THIN)
+    path = heating_path(si["p_line"], found.h_line, heating)
+    h_least = line.h_f + max(x_least, 0.0) * (line.h_g - line.h_f)
+    velocities = Velocities(si["line_velocity"], None, None, None,
+                            bore_ratio_keeping_velocity(float(path.v[0]), float(path.v[-1])), None, None, None)
+    return Assessment(
+        case, si, verdict, found.status, found.x if known else None,
+        None if expected or verdict is not Verdict.CANNOT else min(max(x_least, 0.0), 1.0), found.x_without_loss, None,
+        found.T, saturation_temperature(heating.p), found.superheat, found.x_after, x_least, found.superheat - least,
+        found.line_superheat, Terms(0.0, 0.0, 0.0, 1.0), line, velocities, path,
+        heating_path(si["p_line"], h_least, heating) if x_least <= 1.0 else None, None,
+        _states(path, None, velocities, end="After the heater"), None, heating=heating)
 
 
 def _check_normal(case: Case, si: Resolved) -> None:
@@ -234,16 +278,18 @@ def _read_state(p: float, T: float, superheat: float, velocities: Velocities) ->
     return StatePoint("Exhaust as read", p, T, None, steam.h, steam.s, steam.v, velocities.exhaust)
 
 
-def _states(path: Path, bore_path: Path | None, velocities: Velocities) -> tuple[StatePoint, ...]:
+def _states(path: Path, bore_path: Path | None, velocities: Velocities,
+            end: str = "Exhaust") -> tuple[StatePoint, ...]:
     def point(name: str, of: Path, k: int, speed: float | None) -> StatePoint:
         superheated = of.status[k] == 1
         return StatePoint(name, *(float(column[k]) for column in (of.p, of.T)), None if superheated else
                           float(of.x[k]), *(float(column[k]) for column in (of.h, of.s, of.v)), speed)
 
     rows = [point("Line", path, 0, velocities.sample or velocities.line)]
-    if path.dries_out and path.p_dry > path.p[-1]:
-        rows.append(point("Dries out", path, int(np.argmin(np.abs(path.p - path.p_dry))), None))
-    rows.append(point("Exhaust", path, -1, velocities.exhaust))
+    dry = int(np.argmax(path.x >= 1.0 - 1e-9))  # the first dry point is the one where it dries out
+    if path.dries_out and dry < path.x.size - 1:
+        rows.append(point("Dries out", path, dry, None))
+    rows.append(point(end, path, -1, velocities.exhaust))
     if bore_path is not None:
         name = "Constant bore, chokes" if bore_path.chokes else "Constant bore, exhaust"
         rows.append(point(name, bore_path, -1, float(bore_path.velocity[-1])))
