@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from engine.job.case import Case
 from engine.job.fields_path import BY_CONDUCTANCE
+from engine.job.fields_rig import DRY, ELECTRIC_PROBE
 from engine.job.rows import Entry
 
 FACTORY_MAIN = Case({
@@ -24,6 +25,31 @@ FACTORY_MAIN = Case({
     "conductance": Entry(0.18, "W/K"),
     "T_ambient": Entry(24.0, "°C"),
     "x_limit": Entry(0.970, "1"),
+    # the rig: orifice, exhaust pipe, nozzle, body, thermometer
+    "bore": Entry(3.0, "mm"),
+    "discharge": Entry(0.85, "1"),
+    "exhaust_length": Entry(1.5, "m"),
+    "elbows": Entry(2.0, "1"),
+    "loss_coefficient": Entry(2.0, "1"),
+    "line_flow": Entry(8.0, "t/h"),
+    "pipe_bore": Entry(154.0, "mm"),
+    "ports": Entry(6.0, "1"),
+    "port_bore": Entry(4.0, "mm"),
+    "drop_diameter": Entry(10.0, "µm"),
+    "body_length": Entry(400.0, "mm"),
+    "body_outer_diameter": Entry(33.7, "mm"),
+    "body_inner_diameter": Entry(27.2, "mm"),
+    "lagging_state": DRY,
+    "lagging": Entry(25.0, "mm"),
+    "sampling_length": Entry(0.1, "m"),
+    "sampling_outer_diameter": Entry(21.3, "mm"),
+    "sampling_lagging": DRY,
+    "thermometer": ELECTRIC_PROBE,
+    "immersion": Entry(60.0, "mm"),
+    "probe_outer_diameter": Entry(6.0, "mm"),
+    "probe_inner_diameter": Entry(4.0, "mm"),
+    "T_head": Entry(60.0, "°C"),
+    "body_mass": Entry(3.0, "kg"),
 })
 
 DEMO = FACTORY_MAIN

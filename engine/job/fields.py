@@ -9,6 +9,8 @@ from __future__ import annotations
 from engine.job.fields_modes import MODE_FIELDS
 from engine.job.fields_path import PATH_FIELDS
 from engine.job.fields_reach import REACH_FIELDS
+from engine.job.fields_rig import RIG_FIELDS
 from engine.job.rows import Field
 
-FIELDS: dict[str, Field] = {row.name: row for rows in (PATH_FIELDS, MODE_FIELDS, REACH_FIELDS) for row in rows}
+_ROWS = (*PATH_FIELDS, *MODE_FIELDS, *REACH_FIELDS, *RIG_FIELDS)
+FIELDS: dict[str, Field] = {row.name: row for row in _ROWS}

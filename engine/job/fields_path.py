@@ -5,8 +5,8 @@ from __future__ import annotations
 from engine.job.rows import Entry, choice, quantity, text
 
 READING, EXPECTED = "reading", "expected"
-UNDECIDED, NONE, BY_CONDUCTANCE, BY_KG, BY_NORMAL = (
-    "not decided", "none", "conductance", "per kg", "normal reading")
+UNDECIDED, NONE, BY_CONDUCTANCE, BY_KG, BY_NORMAL, BY_TWO_FLOWS = (
+    "not decided", "none", "conductance", "per kg", "normal reading", "two flows")
 BY_READING, BY_ALTITUDE = "reading", "altitude"
 _GAUGE_HINT = "check the unit, and whether it was meant gauge or absolute"
 
@@ -37,7 +37,7 @@ PATH_FIELDS = (
     quantity("recovery", "Recovery factor", "velocities", 0.0, 1.0, Entry(0.7, "1"),
              why="a probe takes up between none and all of the kinetic energy"),
     choice("heat_loss_method", "Heat loss", "corrections",
-           (UNDECIDED, NONE, BY_CONDUCTANCE, BY_KG, BY_NORMAL)),
+           (UNDECIDED, NONE, BY_CONDUCTANCE, BY_KG, BY_NORMAL, BY_TWO_FLOWS)),
     quantity("conductance", "Heat loss conductance UA", "corrections", 0.0, 100.0, Entry(0.2, "W/K")),
     quantity("T_ambient", "Ambient temperature", "corrections", 223.15, 343.15, Entry(20.0, "°C")),
     quantity("heat_loss", "Heat loss per kg of sample", "corrections", -1e5, 5e5, Entry(0.0, "kJ/kg")),

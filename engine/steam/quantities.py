@@ -143,6 +143,25 @@ _ROWS = (
     ("U_thermometer", "U(T₂)", "difference", "K", "expanded uncertainty of the thermometer"),
     ("U_quality", "U(x)", "fraction", "1", "expanded uncertainty of the quality"),
     ("p_exhaust_lowest", "p₂,min", "pressure", "Pa", "lowest exhaust pressure to be had"),
+    # the rig as entered
+    ("wanted_flow", "ṁ*", "mass flow", "kg/s", "wanted sample flow"),
+    ("exhaust_length", "L_e", "length", "m", "length of the exhaust pipe"),
+    ("elbows", "n_e", "number", "1", "number of elbows in the exhaust pipe"),
+    ("tees", "n_t", "number", "1", "number of tees turned in the exhaust pipe"),
+    ("ports", "n_p", "number", "1", "number of ports of the sampling nozzle"),
+    ("drip_flow", "ṁ_d", "mass flow", "kg/s", "water drained ahead of the nozzle"),
+    ("body_length", "L_b", "length", "m", "length of the body"),
+    ("body_outer_diameter", "D_b", "length", "m", "outer diameter of the body"),
+    ("body_inner_diameter", "d_b", "length", "m", "inner diameter of the body"),
+    ("sampling_length", "L_s", "length", "m", "length of the sampling line"),
+    ("sampling_outer_diameter", "D_s", "length", "m", "outer diameter of the sampling line"),
+    ("second_flow", "ṁ_2", "mass flow", "kg/s", "second sample flow"),
+    ("T_second", "T₂,₂", "temperature", "K", "exhaust temperature at the second flow"),
+    ("p_second", "p₂,₂", "pressure", "Pa", "exhaust pressure at the second flow"),
+    ("probe_outer_diameter", "D_t", "length", "m", "outer diameter of the thermometer"),
+    ("probe_inner_diameter", "d_t", "length", "m", "inner diameter of the thermometer's tube"),
+    ("body_mass", "M_b", "mass", "kg", "mass of the body"),
+    ("warmup_error", "δT_w", "difference", "K", "error of the warm-up allowed"),
 )
 
 QUANTITIES: dict[str, Quantity] = {row[0]: Quantity(*row) for row in _ROWS}
