@@ -1,0 +1,228 @@
+"""A workbook (XLSX) as a log: guarded against what a small file can unpack to, values only.
+
+The workbook is read in openpyxl's streaming mode. Formulas are never computed: a formula cell gives
+the value that was stored with it, or is listed when none was. Before anything is unpacked the sizes
+that the archive states are checked, and a document type declaration, with which a few bytes of XML
+can grow without end, is refused.
+"""
+
+from __future__ import annotations
+
+import datetime as dt
+import itertools
+import zipfile
+from collections.abc import Iterator
+
+import numpy as np
+import openpyxl
+
+from engine.measurement.logbook_mapping import Mapping
+from engine.measurement.logbook_propose import Layout, Proposal, Row, propose
+from engine.measurement.logbook_table import TOO_MANY_CELLS, Block
+from engine.measurement.logbook_text import HEAD_BYTES, Source, refuse
+from engine.steam.errors import InputError
+
+MOST_UNPACKED = 1 << 30  # bytes, all parts together
+MOST_STRINGS = 128 << 20  # bytes of the shared texts, which are held in memory
+MOST_RATIO = 300  # unpacked over packed; honest sheets stay below about 60
+MOST_PARTS = 5_000
+MOST_COLUMNS = 256
+ROWS_AT_ONCE = 20_000
+SAMPLE_ROWS = 400
+ZIP_MAGIC = b"PK\x03\x04"
+
+
+class UncomputedFormula(str):
+    """The text of a formula cell that carries no stored value."""
+
+    __slots__ = ()
+
+
+def is_workbook(source: Source) -> bool:
+    """Whether the bytes are a ZIP archive; anything in it but a workbook is refused."""
+    return source.read(0, 4) == ZIP_MAGIC
+
+
+def check_archive(source: Source) -> None:
+    """Refuse archives that are no workbook or unpack to more than a log can be."""
+    try:
+        with source.open() as file, zipfile.ZipFile(file) as archive:
+            parts = archive.infolist()
+            names = {p.filename for p in parts}
+            if "xl/workbook.xml" not in names:
+                what = "a text document or another workbook format" if "mimetype" in names else "a ZIP archive"
+                raise refuse(source.name, what, "there is no XLSX workbook in it", "unpack it, or save as XLSX or CSV")
+            total = sum(p.file_size for p in parts)
+            worst = max(parts, key=lambda p: p.file_size / max(p.compress_size, 1))
+            ratio = worst.file_size / max(worst.compress_size, 1)
+            strings = sum(p.file_size for p in parts if p.filename.lower().endswith("sharedstrings.xml"))
+            if total > MOST_UNPACKED or (ratio > MOST_RATIO and worst.file_size > 10 << 20) or strings > MOST_STRINGS:
+                got = f"a workbook that unpacks to {total / 2**20:.0f} MiB, one part {ratio:.0f}-fold"
+                raise refuse(source.name, got, "it would fill the memory", "save the readings alone, or as CSV",
+                             f"at most {MOST_UNPACKED >> 20} MiB unpacked, {MOST_STRINGS >> 20} MiB of it texts, "
+                             f"no part more than {MOST_RATIO}-fold")
+            if len(parts) > MOST_PARTS:
+                raise refuse(source.name, f"a workbook of {len(parts)} parts", hint="save the readings as CSV",
+                             needs=f"at most {MOST_PARTS} parts")
+            for part in parts:
+                if part.filename.lower().endswith((".xml", ".rels")):
+                    with archive.open(part) as content:
+                        if b"<!DOCTYPE" in content.read(HEAD_BYTES).replace(b"\0", b"").upper():
+                            raise refuse(source.name, f"a document type declaration in {part.filename}",
+                                         "no spreadsheet program writes one", "save the readings again as XLSX or CSV")
+    except (zipfile.BadZipFile, OSError, RuntimeError, NotImplementedError, EOFError, ValueError) as error:
+        if isinstance(error, InputError):
+            raise
+        raise refuse(source.name, f"a damaged or locked archive ({error})",
+                     hint="open it in the spreadsheet program and save it again, without a password") from None
+
+
+class Workbook:
+    """An open workbook; use as a context manager."""
+
+    def __init__(self, source: Source, *, values: bool = True):
+        self._source, self._values = source, values
+
+    def __enter__(self):
+        self._file = self._source.open()
+        try:
+            self._book = openpyxl.load_workbook(self._file, read_only=True, data_only=self._values, keep_links=False)
+        except Exception as error:  # openpyxl raises whatever its XML parser meets
+            self._file.close()
+            raise refuse(self._source.name, f"a workbook that cannot be opened ({type(error).__name__}: {error})",
+                         hint="open it in the spreadsheet program and save it again, or as CSV") from None
+        return self
+
+    def __exit__(self, *_):
+        self._book.close()
+        self._file.close()
+
+    def stated_rows(self, sheet: str) -> int:
+        """The number of rows the sheet claims to have: good for a progress bar, for nothing else."""
+        return (self._book[sheet].max_row or 1) if sheet in self.sheets else 1
+
+    @property
+    def sheets(self) -> list[str]:
+        return [s.title for s in self._book.worksheets]
+
+    def rows(self, sheet: str, first: int = 1) -> Iterator[tuple[int, tuple]]:
+        """(row number, values) of a sheet's rows."""
+        try:
+            table = self._book[sheet]
+            table.reset_dimensions()  # the stated size of a sheet is not to be believed
+            yield from enumerate(table.iter_rows(first, None, 1, MOST_COLUMNS, values_only=True), first)
+        except KeyError:
+            raise refuse(self._source.name, f"no sheet {sheet!r}", hint="choose one of the workbook's sheets",
+                         needs="one of: " + ", ".join(self.sheets)) from None
+        except (ValueError, TypeError, AttributeError, SyntaxError, ArithmeticError, OSError, EOFError,
+                zipfile.BadZipFile) as error:
+            raise refuse(self._source.name, f"a damaged sheet {sheet!r} ({error})",
+                         hint="open it in the spreadsheet program and save it again") from None
+
+
+def cell_text(value: object) -> str:
+    """A cell's value as a person would have written it."""
+    if value is None:
+        return ""
+    if isinstance(value, dt.datetime):
+        at_midnight = (value.hour, value.minute, value.second, value.microsecond) == (0, 0, 0, 0)
+        return value.date().isoformat() if at_midnight else value.isoformat(sep=" ")
+    if isinstance(value, (dt.date, dt.time)):
+        return value.isoformat()
+    if isinstance(value, dt.timedelta):
+        seconds = value / dt.timedelta(seconds=1)
+        return f"{int(seconds // 3600):02d}:{int(seconds // 60 % 60):02d}:{int(seconds % 60):02d}"
+    if isinstance(value, float):
+        return f"{value:.15g}"
+    return str(value)
+
+
+def propose_sheet(source: Source, layout: Layout) -> Proposal:
+    """The proposal of the sheet told, or of the one in which most channels are recognised, the first of equals."""
+    best: Proposal | None = None
+    faults: list[InputError] = []
+    with Workbook(source) as book:
+        sheets = book.sheets
+        for sheet in [layout.sheet] if layout.sheet else sheets:
+            rows: list[Row] = []
+            typed: list[str] = []
+            for number, values in itertools.islice(book.rows(sheet), SAMPLE_ROWS):
+                cells = [cell_text(v) for v in values]
+                while cells and not cells[-1]:
+                    cells.pop()
+                rows.append((number, cells))
+                typed += [v for v in values if isinstance(v, str)]
+            if not any(cells for _, cells in rows):
+                continue
+            try:
+                found = propose(rows, [], source.name, layout._replace(sheet=sheet, delimiter="", encoding=""), typed)
+            except InputError as error:
+                faults.append(error)
+                continue
+            if best is None or len(found.mapping.used) > len(best.mapping.used):
+                best = found
+    if best is None:
+        raise faults[0] if faults else refuse(source.name, "a workbook of empty sheets", hint="save the readings again")
+    others = [s for s in sheets if s != best.mapping.sheet]
+    note = (f"read from sheet {best.mapping.sheet!r}; not read: {', '.join(others)}",) if others else ()
+    return best._replace(notes=(*best.notes, *note))
+
+
+def sheet_table(source: Source, mapping: Mapping) -> Iterator[Block]:
+    """The rows of a workbook's sheet below its heading."""
+    with Workbook(source) as book:
+        total = book.stated_rows(mapping.sheet)
+        rows = book.rows(mapping.sheet, mapping.first_line)
+        formulas = _Formulas(source, mapping)
+        while chunk := list(itertools.islice(rows, ROWS_AT_ONCE)):
+            yield _block(chunk, mapping, formulas, min(chunk[-1][0] / max(total, chunk[-1][0]), 1.0))
+
+
+def _block(chunk: list[tuple[int, tuple]], mapping: Mapping, formulas: _Formulas, fraction: float) -> Block:
+    rows = np.array([number for number, _ in chunk], dtype=np.int64)
+    width = len(mapping.columns)
+    cells, blank = {}, np.array([all(v is None for v in values) for _, values in chunk])
+    for column in mapping.used.values():
+        k = column.position
+        values = np.empty(len(chunk), dtype=object)
+        values[:] = [v[k] if k < len(v) else None for _, v in chunk]
+        empty = np.array([v is None for v in values]) & ~blank
+        if empty.any():
+            formulas.fill(rows, k, values, empty)
+        cells[k] = values
+    spoiled = [(i, cell_text(next(v for v in values[width:] if v is not None)), TOO_MANY_CELLS)
+               for i, (_, values) in enumerate(chunk) if any(v is not None for v in values[width:])]
+
+    def content(index: int, position: int | None) -> str:
+        values = chunk[index][1]
+        if position is None:
+            return " | ".join(map(cell_text, values)).rstrip(" |")
+        given = cells[position][index]
+        return str(given) if isinstance(given, UncomputedFormula) else cell_text(given)
+
+    return Block(rows, 0, cells, spoiled, content, fraction)
+
+
+class _Formulas:
+    """Finds out which empty cells hold a formula, by walking the sheet a second time where it is needed."""
+
+    def __init__(self, source: Source, mapping: Mapping):
+        self._source, self._mapping, self._known = source, mapping, None
+
+    def fill(self, rows: np.ndarray, position: int, values: np.ndarray, empty: np.ndarray) -> None:
+        if self._known is None:
+            self._known = self._all()
+        for i in np.flatnonzero(empty):
+            text = self._known.get((int(rows[i]), position))
+            if text is not None:
+                values[i] = UncomputedFormula(text)
+
+    def _all(self) -> dict[tuple[int, int], str]:
+        wanted = [c.position for c in self._mapping.used.values()]
+        found = {}
+        with Workbook(self._source, values=False) as book:
+            for number, values in book.rows(self._mapping.sheet, self._mapping.first_line):
+                for k in wanted:
+                    if k < len(values) and isinstance(values[k], str) and values[k].startswith("="):
+                        found[number, k] = values[k]
+        return found
