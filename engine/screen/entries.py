@@ -39,7 +39,8 @@ def slider(name: str) -> None:
     span = SLIDERS[name][unit]
     key = f"slide {name} {unit}"
     session.mirror(key, min(max(entry.value, span.low), span.high))
-    st.slider(FIELDS[name].label, span.low, span.high, step=span.step, format=f"%g {unit}", key=key,
+    marked = ", ".join(filter(None, (FIELDS[name].label, f"{unit} {entry.basis}".strip())))
+    st.slider(marked, span.low, span.high, step=span.step, format="%g", key=key,
               on_change=session.callback(name, key, lambda v: Entry(v, unit, entry.basis)))
     if entry.basis:
         with st.container(horizontal=True, vertical_alignment="bottom"):

@@ -126,10 +126,11 @@ def background(key: str, system: str) -> tuple[dict[str, Any], ...]:
 
 
 def _quality_labels(axes: Axes, units: UnitSystem, qualities: list[dict[str, np.ndarray]]) -> dict[str, Any]:
-    temperatures = (333.15, 393.15, 453.15, 523.15)
-    places = [int(np.argmin(np.abs(dome().T - T))) for T in temperatures]
-    return labels(axes, units, _at(qualities, places), [f"{x:g}" for x in QUALITIES for _ in places], "var:muted",
-                  "middle center")
+    """Names of the quality lines, where they can be told apart."""
+    chosen = [k for k, x in enumerate(QUALITIES) if axes is not TS or x <= 0.8 or x in (0.9, 0.94, 0.98)]
+    places = [int(np.argmin(np.abs(dome().T - T))) for T in (333.15, 393.15, 453.15, 523.15)]
+    return labels(axes, units, _at([qualities[k] for k in chosen], places),
+                  [f"{QUALITIES[k]:g}" for k in chosen for _ in places], "var:muted", "middle center")
 
 
 def _at(pieces: list[dict[str, np.ndarray]], places: list[int]) -> dict[str, np.ndarray]:
