@@ -11,7 +11,7 @@ import numpy as np
 from engine.steam.errors import Fault, InputError
 from engine.steam.quantities import QUANTITIES
 
-BLOCK = 4096  # elements: enough to hide the cost of a NumPy call, few enough to stay in cache
+BLOCK = 8192  # elements: enough to hide the cost of the NumPy calls, few enough to stay in cache
 LISTED = 5  # faults spelled out for one input; of the others only the number is given
 NUMBERS = "a number or an array of numbers"
 
