@@ -10,12 +10,13 @@ from types import MappingProxyType
 from engine.calorimeter import leg_density, standard_pressure
 from engine.job.fields import FIELDS
 from engine.job.fields_path import BY_ALTITUDE
-from engine.job.rows import CHOICE, QUANTITY, Entry, Field
+from engine.job.rows import CHOICE, QUANTITY, TEXT, Entry, Field
+from engine.steam.arrays import shortened
 from engine.steam.errors import Fault, InputError
-from engine.steam.units import G_STANDARD, absolute_from_gauge, from_si, to_si
+from engine.steam.units import G_STANDARD, P_STANDARD, UNITS, absolute_from_gauge, from_si, to_si
 
 Value = Entry | str | None
-GAUGE, ABSOLUTE = "gauge", "absolute"
+GAUGE, ABSOLUTE = BASES = "gauge", "absolute"
 T_LEG = 293.15  # K, water leg at the temperature of the room unless measured
 
 
@@ -84,7 +85,8 @@ def describe(entry: Entry) -> str:
 def entry_fault(field: Field, entry: Entry, p_barometer: float) -> Fault | None:
     """What is wrong with one entry, in the words and the unit in which it was entered."""
     si = entry_si(field, entry, p_barometer)
-    if field.low * (1 - 1e-12) - 1e-12 <= si <= field.high * (1 + 1e-12) + 1e-12:
+    rounding = 1e-12 * max(1.0, abs(field.low), abs(field.high))  # of the conversion
+    if field.low - rounding <= si <= field.high + rounding:
         return None
     low, high = (as_entered(field, limit, entry, p_barometer).value for limit in (field.low, field.high))
     unit = " ".join(part for part in (entry.unit if entry.unit != "1" else "", entry.basis) if part)
@@ -106,34 +108,71 @@ class Resolved:
         return self.si[name]
 
 
-def faults_of(case: Case) -> list[Fault]:
-    """Every entry that cannot be used, and entries that do not go together."""
-    faults, p_barometer = [], 101_325.0
-    for name in ("p_barometer", "altitude"):
-        if fault := entry_fault(FIELDS[name], case[name], 0.0):
-            faults.append(fault)
-    if not faults:
-        p_barometer = barometer(case)
+def form_fault(field: Field, value: Value) -> Fault | None:
+    """What keeps an entry from meaning anything: of the wrong kind, or in a unit or on a basis it cannot have."""
+    label = field.label.lower()
+    if field.form == CHOICE:
+        fits, limit = value in field.options, "one of: " + ", ".join(field.options)
+    elif field.form == TEXT:
+        fits, limit = isinstance(value, str), "text"
+    elif value is None:
+        fits, limit = field.blank is None, "a value with its unit"
+    elif not isinstance(value, Entry):
+        fits, limit = False, "a value with its unit"
+    elif not (isinstance(value.unit, str) and value.unit in UNITS[field.kind]):
+        return Fault(f"unit of {label}", _given(value.unit), "", "one of: " + ", ".join(UNITS[field.kind]),
+                     name=field.name)
+    else:
+        fits = value.basis in (BASES if field.kind == "pressure" else ("",))
+        limit = " or ".join(BASES) if field.kind == "pressure" else "none"
+        return None if fits else Fault(f"basis of {label}", _given(value.basis), "", limit, name=field.name)
+    return None if fits else Fault(field.label, _given(value), "", limit, name=field.name)
+
+
+def _given(value: object) -> str:
+    if value is None or value == "":
+        return "nothing"
+    return value[:120] if isinstance(value, str) else shortened(value)
+
+
+def entry_faults(case: Case) -> list[Fault]:
+    """Every entry that cannot be used, each looked at for itself."""
+    faults = {name: fault for name, field in FIELDS.items() if (fault := form_fault(field, case[name]))}
+    atmosphere = ("p_barometer", "altitude")
+    for name in atmosphere:
+        if name not in faults and (fault := entry_fault(FIELDS[name], case[name], 0.0)):
+            faults[name] = fault
+    known = not any(name in faults for name in (*atmosphere, "barometer_source"))
+    p_barometer = barometer(case) if known else P_STANDARD
     for name, field in FIELDS.items():
-        entry = case[name]
-        if field.form == CHOICE and entry not in field.options:
-            faults.append(Fault(field.label, entry, "", "one of: " + ", ".join(field.options), name=name))
-        if field.form == QUANTITY and entry is not None and name not in ("p_barometer", "altitude"):
-            fault = entry_fault(field, entry, p_barometer)
-            faults += [fault] if fault else []
-    if not faults:
-        faults += _faults_together(case, p_barometer)
-    return faults
+        entered = field.form == QUANTITY and case[name] is not None and name not in atmosphere
+        if entered and name not in faults and (fault := entry_fault(field, case[name], p_barometer)):
+            faults[name] = fault
+    return [faults[name] for name in FIELDS if name in faults]
+
+
+def faults_of(case: Case) -> list[Fault]:
+    """Every entry that cannot be used; where there is none, entries that do not go together."""
+    return entry_faults(case) or _faults_together(case, barometer(case))
 
 
 def _faults_together(case: Case, p_barometer: float) -> list[Fault]:
-    faults = []
+    faults, at_tapping = [], ""
     p_line, p_exhaust = (entry_si(FIELDS[n], case[n], p_barometer) for n in ("p_line", "p_exhaust"))
-    if not p_exhaust < p_line:
+    leg, line = case["leg_height"], FIELDS["p_line"]
+    if leg.value:
+        p_line, at_tapping = p_line - _leg_pressure(to_si(leg.value, leg.unit, "length")), " at the tapping"
+        if not line.low <= p_line <= line.high:
+            left, low, high = (describe(as_entered(line, p, case["p_line"], p_barometer))
+                               for p in (p_line, line.low, line.high))
+            faults.append(Fault(FIELDS["leg_height"].label, leg.value, leg.unit,
+                                f"a water leg that leaves {low} to {high} at the tapping", f"this one leaves {left}",
+                                FIELDS["leg_height"].hint, "leg_height"))
+    if not faults and not p_exhaust < p_line:
         entry = case["p_exhaust"]
         limit = as_entered(FIELDS["p_exhaust"], p_line, entry, p_barometer)
         faults.append(Fault("Exhaust pressure", entry.value, f"{entry.unit} {entry.basis}",
-                            f"less than the line pressure, {describe(limit)}",
+                            f"less than the line pressure{at_tapping}, {describe(limit)}",
                             "steam only flows and expands towards a lower pressure",
                             "check the unit of both, and gauge or absolute", "p_exhaust"))
     low, high = (entry_si(FIELDS[n], case[n], 0.0) for n in ("least_superheat", "comfortable_superheat"))
@@ -150,6 +189,11 @@ def _leg_density() -> float:
     return leg_density(T_LEG)
 
 
+def _leg_pressure(height: float) -> float:
+    """What a water leg adds to a gauge ``height`` [m] below its tapping [Pa]."""
+    return _leg_density() * G_STANDARD * height
+
+
 def resolve(case: Case) -> Resolved:
     """The case in SI, or InputError with every fault at once."""
     if faults := faults_of(case):
@@ -160,5 +204,5 @@ def resolve(case: Case) -> Resolved:
         for name, field in FIELDS.items() if field.form == QUANTITY}
     si["p_barometer"] = p_barometer
     if si["leg_height"]:
-        si["p_line"] -= _leg_density() * G_STANDARD * si["leg_height"]
+        si["p_line"] -= _leg_pressure(si["leg_height"])
     return Resolved(MappingProxyType(si), p_barometer)

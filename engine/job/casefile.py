@@ -9,21 +9,23 @@ import math
 import zlib
 
 from engine import __version__
-from engine.job.case import ABSOLUTE, BLANK, GAUGE, Case, Value, faults_of
+from engine.job.case import BLANK, Case, Value, entry_faults, faults_of
 from engine.job.fields import FIELDS
-from engine.job.rows import CHOICE, QUANTITY, Entry, Field
+from engine.job.rows import QUANTITY, Entry, Field
+from engine.steam.arrays import shortened
 from engine.steam.errors import Fault, InputError
-from engine.steam.units import ALIASES, UNITS
+from engine.steam.units import ALIASES
 
 FORMAT, SCHEMA = "steam quality case", 1
 MAX_BYTES = 5_000_000
 MAX_TEXT = 4_000
+LISTED = 20  # faults spelled out
 _LINK_BYTES = 200_000
 
 
 def _refusal(what: str, got: object, needs: str, hint: str = "the open case stays as it was",
              why: str = "") -> InputError:
-    return InputError(Fault(what, str(got)[:120], "", needs, why, hint))
+    return InputError(Fault(what, got[:120] if isinstance(got, str) else shortened(got), "", needs, why, hint))
 
 
 def _as_json(value: Value):
@@ -45,8 +47,8 @@ def from_json(data: bytes | str) -> Case:
     if len(data) > MAX_BYTES:
         raise _refusal("case file", f"{len(data)} bytes", f"at most {MAX_BYTES} bytes")
     try:
-        text = data.decode("utf-8-sig") if isinstance(data, bytes) else data
-        document = json.loads(text, parse_constant=_no_constant)
+        text = data.decode() if isinstance(data, bytes) else data
+        document = json.loads(text.removeprefix("\ufeff"), parse_constant=_no_constant)
     except UnicodeDecodeError as error:
         raise _refusal("case file", "bytes that are not text", "a JSON file in UTF-8") from error
     except (ValueError, RecursionError) as error:
@@ -80,12 +82,18 @@ def _from_document(document: object, source: str) -> Case:
             read[name] = _value(name, raw)
         except InputError as error:
             faults += error.faults
-    if not faults:
-        case = Case(read)
-        faults = faults_of(case)
-    if faults:
-        raise InputError(*faults)
+    case = Case(read)
+    if faults := [*faults, *entry_faults(case)] or faults_of(case):
+        raise InputError(*_shortened(faults))
     return case
+
+
+def _shortened(faults: list[Fault]) -> list[Fault]:
+    """The first of a great many faults, and the number of the others."""
+    others = len(faults) - LISTED
+    if others <= 0:
+        return faults
+    return [*faults[:LISTED], Fault("case", f"{others} more entries like these", "", "none")]
 
 
 def _value(name: str, raw: object) -> Value:
@@ -96,32 +104,27 @@ def _value(name: str, raw: object) -> Value:
         return _entry(field, raw)
     if not isinstance(raw, str):
         raise _refusal(field.label, raw, "text")
-    if field.form == CHOICE and raw not in field.options:
-        raise _refusal(field.label, raw, "one of: " + ", ".join(field.options))
     if len(raw) > MAX_TEXT:
         raise _refusal(field.label, f"{len(raw)} characters", f"at most {MAX_TEXT} characters")
+    if any("\ud800" <= letter <= "\udfff" for letter in raw):
+        raise _refusal(field.label, "half of a character", "whole characters")
     return raw
 
 
 def _entry(field: Field, raw: object) -> Entry | None:
+    """The entry as it stands in the file; whether it can be used, the case says."""
     if raw is None and field.blank is None:
         return None
     if not isinstance(raw, dict) or not set(raw) <= {"value", "unit", "basis"}:
         raise _refusal(field.label, raw, 'an object with "value" and "unit"')
-    value, unit, basis = raw.get("value"), raw.get("unit"), raw.get("basis", "")
+    value, unit = raw.get("value"), raw.get("unit")
     try:
         number = float(value) if isinstance(value, int | float) and not isinstance(value, bool) else math.nan
     except OverflowError:
         number = math.inf
     if not math.isfinite(number):
         raise _refusal(field.label, value, "a finite number")
-    unit = ALIASES.get(unit, unit) if isinstance(unit, str) else unit
-    if unit not in UNITS[field.kind] if isinstance(unit, str) else True:
-        raise _refusal(f"unit of {field.label.lower()}", unit, "one of: " + ", ".join(UNITS[field.kind]))
-    allowed = (GAUGE, ABSOLUTE) if field.kind == "pressure" else ("",)
-    if basis not in allowed:
-        raise _refusal(f"basis of {field.label.lower()}", basis, " or ".join(allowed) or "none")
-    return Entry(number, unit, basis)
+    return Entry(number, ALIASES.get(unit, unit) if isinstance(unit, str) else unit, raw.get("basis", ""))
 
 
 def to_link(case: Case) -> str:

@@ -80,6 +80,8 @@ def _row(unit: str, kind: str) -> tuple[float, float]:
 def _convert(value, unit: str, kind: str, formula):
     """``formula(values, scale, offset)``: a Python float for a single number, else a float64 array."""
     scale, offset = _row(unit, kind)
+    if type(value) is float:  # plain arithmetic: quick, and what is too great becomes infinite without a warning
+        return formula(value, scale, offset)
     try:
         values = as_floats(value)
     except (TypeError, ValueError):
