@@ -19,12 +19,14 @@ NUMBERS = "a number or an array of numbers"
 def as_floats(value) -> np.ndarray:
     """A float64 array, 0-d for a single number; TypeError or ValueError for what is not real numbers.
 
-    Text, None, complex numbers and truth values are refused: each would convert to something.
+    Text, None, complex numbers and truth values are refused: each would convert to something. What
+    a masked array hides becomes NaN.
     """
     array = np.asarray(value)
     if array.dtype.kind not in "fiu" and array.size:
         raise TypeError
-    return array.astype(float, copy=False)
+    floats = array.astype(float, copy=False)
+    return np.where(np.ma.getmaskarray(value), np.nan, floats) if np.ma.is_masked(value) else floats
 
 
 def shortened(value) -> str:

@@ -151,7 +151,7 @@ def test_no_number_without_a_status_and_no_nan_without_a_reason(function):
     *values, status = function(*columns)
     expected = [function(*good).status, SteamStatus.MISSING, SteamStatus.OUT_OF_RANGE, SteamStatus.OUT_OF_RANGE,
                 SteamStatus.MISSING, function(*good).status]
-    assert status.tolist() == expected
+    assert status.tolist() == expected and status.dtype == np.int8
     for value in values:
         assert np.isnan(value).tolist() == [s > SteamStatus.SUPERHEATED for s in expected]
 
@@ -221,6 +221,12 @@ def test_as_floats_keeps_float64_arrays_as_they_are():
     assert as_floats(a) is a
     assert as_floats(np.arange(3, dtype=np.int8)).dtype == np.float64
     assert as_floats([]).shape == (0,) and as_floats(7).shape == ()
+
+
+def test_what_a_mask_hides_is_missing():
+    hidden = np.ma.masked_array([1e5, 2e5], mask=[True, False])
+    assert saturated(hidden).status.tolist() == [SteamStatus.MISSING, SteamStatus.WET]
+    assert as_floats(np.ma.masked_array([1, 2])).tolist() == [1.0, 2.0]
 
 
 def test_at_the_door_names_every_argument_that_is_no_number():
