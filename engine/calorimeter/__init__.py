@@ -51,6 +51,19 @@ from engine.calorimeter.orifice import (
     weighed_flow,
 )
 from engine.calorimeter.paths import Path, constant_bore_path, isenthalpic_path, isenthalpic_path_at
+from engine.calorimeter.reach import (
+    READABILITY,
+    ExhaustPressure,
+    LineWindow,
+    Reach,
+    ReachMap,
+    Readability,
+    exhaust_pressure_for,
+    line_pressure_window,
+    reach,
+    reach_map,
+)
+from engine.calorimeter.reading_chart import ReadingChart, reading_chart
 from engine.calorimeter.sampling import (
     SampleBias,
     aspiration_efficiency,
@@ -116,6 +129,7 @@ from engine.calorimeter.warmup import (
     time_to_within,
     warm_up,
 )
+from engine.calorimeter.ways_out import PRICES, WayKind, WayOut, ways_out
 from engine.calorimeter.wet import WetSteam, wet_steam
 
 __all__ = [  # the rig
@@ -142,4 +156,9 @@ __all__ += [  # throttling
     "isenthalpic_path_at",
     "kinetic_energy", "kinetic_quality", "kinetic_superheat", "least_exhaust_bore", "least_quality", "quality",
     "reasons", "velocity", "velocity_ratio",
+]
+__all__ += [  # the reach
+    "ExhaustPressure", "LineWindow", "PRICES", "READABILITY", "Reach", "ReachMap", "Readability", "ReadingChart",
+    "WayKind", "WayOut", "exhaust_pressure_for", "line_pressure_window", "reach", "reach_map", "reading_chart",
+    "ways_out",
 ]

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from enum import IntEnum
 from functools import reduce
 from typing import NamedTuple
 
@@ -55,6 +56,15 @@ LIMITS: dict[str, Limit] = {
     "exhaust_velocity": Limit(_between("exhaust_velocity", 0.0, 1e4), "0 to 10 000 m/s", _SPEED),
     "recovery": Limit(_between("recovery", 0.0, 1.0), "0 to 1",
                       "a probe takes up between none and all of the kinetic energy"),
+    "x_low": Limit(lambda a: (a["x_low"] >= 0.0) & (a["x_low"] <= a["x_high"]), "0 to the highest quality expected",
+                   "it is the wet end of the range", "give fractions, the lower one first", 1.0),
+    "x_high": Limit(_between("x_high", 0.0, 1.0), "0 to 1", "it is the share of vapour in the mass",
+                    "give a fraction, not a percentage", 1.0),
+    "U_thermometer": Limit(_between("U_thermometer", 0.0, 100.0), "0 to 100 K",
+                           "it takes that much from the margin", "give the expanded uncertainty in kelvin"),
+    "comfortable_superheat": Limit(lambda a: (a["comfortable_superheat"] >= a["least_superheat"])
+                                   & (a["comfortable_superheat"] <= 500.0), "the least superheat to 500 K",
+                                   "a margin between the two is thin", "give it in kelvin", 500.0),
     "least_superheat": Limit(_between("least_superheat", 0.0, 500.0), "0 to 500 K",
                              "it is a difference above saturation", "give it in kelvin"),
 }
@@ -76,11 +86,12 @@ def door(**inputs) -> tuple[Named, bool]:
     return dict(zip(inputs, arrays, strict=True)), scalar
 
 
-def with_status(kernel: Callable[..., tuple], outputs: int, **inputs):
+def with_status(kernel: Callable[..., tuple], outputs: int, verdict: type[IntEnum] = Status, /, **inputs):
     """Run ``kernel(a, usable, missing)`` over the inputs in blocks; its last output is the status.
 
     Unusable elements reach the kernel with harmless values. Arrays come back with an int8 status
-    beside them; a scalar call gives floats and a Status, or raises InputError.
+    beside them; a scalar call gives floats and a Status (or another ``verdict``, whose OUT_OF_RANGE and
+    MISSING are those of Status), or raises InputError.
     """
     named, scalar = door(**inputs)
     alike = {name for name, v in named.items() if not any(v.strides)}  # one value for all elements: looked at once
@@ -103,4 +114,4 @@ def with_status(kernel: Callable[..., tuple], outputs: int, **inputs):
         raise InputError(Fault("energy balance", "neither wet nor superheated steam", "", "an enthalpy steam can have",
                                "each input is possible, but not all of them together",
                                "check the temperature, the heat loss and the velocities", "h"))
-    return [float(v) for v in values], Status(int(status))
+    return [float(v) for v in values], verdict(int(status))

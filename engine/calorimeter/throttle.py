@@ -143,7 +143,7 @@ def quality(p_line, p_exhaust, T_exhaust, *, heat_loss=0.0, line_velocity=0.0, e
     return Quality(*values, status)
 
 
-def _exhaust(a, usable, missing):
+def exhaust_kernel(a, usable, missing):
     _, h_f, h_g = saturation_enthalpies(a["p_line"])
     T_sat, h_f2, h_g2 = saturation_enthalpies(a["p_exhaust"])
     h_read = h_f + a["x"] * (h_g - h_f) - balance_terms(a)
@@ -173,7 +173,7 @@ def exhaust_temperature(p_line, x, p_exhaust, *, heat_loss=0.0, line_velocity=0.
     150.3
     """
     values, status = with_status(
-        _exhaust, 5, p_line=p_line, x=x, p_exhaust=p_exhaust, heat_loss=heat_loss, line_velocity=line_velocity,
+        exhaust_kernel, 5, p_line=p_line, x=x, p_exhaust=p_exhaust, heat_loss=heat_loss, line_velocity=line_velocity,
         exhaust_velocity=exhaust_velocity, recovery=recovery, least_superheat=least_superheat)
     return Exhaust(*values, status)
 

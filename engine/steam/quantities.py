@@ -140,6 +140,8 @@ _ROWS = (
     # planning
     ("wetness_low", "y_low", "fraction", "1", "driest expected wetness"),
     ("wetness_high", "y_high", "fraction", "1", "wettest expected wetness"),
+    ("x_low", "x_l", "fraction", "1", "wet end of the range"),
+    ("x_high", "x_h", "fraction", "1", "dry end of the range"),
     ("U_thermometer", "U(T₂)", "difference", "K", "expanded uncertainty of the thermometer"),
     ("U_quality", "U(x)", "fraction", "1", "expanded uncertainty of the quality"),
     ("p_exhaust_lowest", "p₂,min", "pressure", "Pa", "lowest exhaust pressure to be had"),
