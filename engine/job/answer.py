@@ -4,13 +4,15 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+from engine.job import methods_said as said
 from engine.job.assessment import Assessment, Verdict
 from engine.job.case import T_LEG, describe
 from engine.job.fields_path import BY_ALTITUDE, NONE, UNDECIDED
 from engine.steam.units import UnitSystem, from_si
 
 # A shape beside the word, so that a verdict never hangs on colour alone
-SHAPES = {Verdict.READS: "●", Verdict.THIN: "◐", Verdict.CANNOT: "○", Verdict.SUPERHEATED: "△"}
+SHAPES = {Verdict.READS: "●", Verdict.THIN: "◐", Verdict.CANNOT: "○", Verdict.SUPERHEATED: "△",
+          Verdict.CONTRADICTS: "≠"}
 
 
 @dataclass(frozen=True)
@@ -56,64 +58,59 @@ def _pressure(si: float, units: UnitSystem) -> str:
 
 def _margin(a: Assessment, units: UnitSystem) -> str:
     least = units.text(a.si["least_superheat"], "difference", 0)
-    return (f"The exhaust {'must be' if a.expected else 'is'} {_superheat(a, units)} superheated, "
+    return (f"The {said.place(a)} {'must be' if a.expected else 'is'} {_superheat(a, units)} superheated, "
             f"{units.text(a.margin, 'difference')} above the least readable superheat of {least}.")
-
-
-def _reach(a: Assessment) -> str:
-    if a.x_least > 1:
-        return "Between these pressures not even dry steam arrives superheated enough to be read."
-    return f"Between these pressures the least readable quality is {quality_text(a.x_least)}."
 
 
 def _reads(a: Assessment, units: UnitSystem):
     if a.expected:
-        headline = (f"For a wetness of {100 * (1 - a.x):.2f} % the exhaust thermometer must show "
-                    f"{units.text(a.T_exhaust, 'temperature')}.")
+        headline = (f"For a wetness of {100 * (1 - a.x):.2f} %{said.under_which(a)} the {said.thermometer(a)} "
+                    f"must show {units.text(a.T_exhaust, 'temperature')}.")
     else:
         headline = f"Quality in the line {quality_text(a.x)}, wetness {100 * (1 - a.x):.2f} %."
-    reasons, remedies = (_margin(a, units), _reach(a)), ()
+    reasons, remedies = (*said.method(a, units), _margin(a, units), said.reach(a)), ()
     if a.verdict is Verdict.THIN:
         comfortable = units.text(a.si["comfortable_superheat"], "difference", 0)
         reasons += (f"The margin is thin: below {comfortable} of superheat a small error of the thermometer or of the "
-                    "exhaust pressure can hide wet steam.",)
-        remedies = ("Lower the exhaust pressure or use a better thermometer, and check both before relying on it.",)
+                    "pressure beside it can hide wet steam.",)
+        remedies = ("Put in more power, or use a better thermometer, and check it before relying on it." if a.heating
+                    else "Lower the exhaust pressure or use a better thermometer, and check both before relying on "
+                    "it.",)
     return headline, reasons, remedies
 
 
 def _cannot(a: Assessment, units: UnitSystem):
     saturation = units.text(a.T_saturation, "temperature")
     if a.expected:
-        wet = "" if a.superheat > 0 else f" The exhaust would be wet, quality {quality_text(a.x_exhaust)}."
-        headline = f"A wetness of {100 * (1 - a.x):.2f} % cannot be read here."
-        reasons = (f"The thermometer would show {units.text(a.T_exhaust, 'temperature')}; saturation at the exhaust is "
-                   f"{saturation}.{wet}",)
+        wet = "" if a.superheat > 0 else f" The {said.place(a)} would be wet, quality {quality_text(a.x_exhaust)}."
+        headline = f"A wetness of {100 * (1 - a.x):.2f} %{said.under_which(a)} cannot be read here."
+        reasons = (f"The {said.thermometer(a)} would show {units.text(a.T_exhaust, 'temperature')}; saturation there "
+                   f"is {saturation}.{wet}",)
     else:
         bound = f"below {quality_text(a.x_below)}" if a.x_below < 1 else "not told at all"
         headline = f"No quality can be given: it is {bound}."
-        shown = f"The thermometer shows {units.text(a.T_exhaust, 'temperature')}, "
+        shown = f"The {said.thermometer(a)} shows {units.text(a.T_exhaust, 'temperature')}, "
         if a.superheat > 0:
             least = units.text(a.si["least_superheat"], "difference", 0)
-            reasons = (f"{shown}only {_superheat(a, units)} above saturation at the exhaust, {saturation}: less than "
+            reasons = (f"{shown}only {_superheat(a, units)} above saturation there, {saturation}: less than "
                        f"the {least} below which wet steam may pass for superheated.",)
         else:
-            reasons = (f"{shown}not above saturation at the exhaust, {saturation}: wet exhaust steam has no enthalpy "
-                       "that pressure and temperature could tell.",)
-    remedies = ("A lower exhaust pressure, a separator ahead of the orifice, or electric superheating would extend "
-                "the reach; check first that both pressures are right, gauge or absolute.",)
-    return headline, (*reasons, _reach(a)), remedies
+            reasons = (f"{shown}not above saturation there, {saturation}: wet steam has no enthalpy that "
+                       "pressure and temperature could tell.",)
+    return headline, (*reasons, *said.method(a, units), said.reach(a)), (said.remedy(a),)
 
 
 def _superheated(a: Assessment, units: UnitSystem):
     by = units.text(a.line_superheat, "difference")
     headline = f"The line is superheated by {by}: there is no wetness to measure."
     reasons = (f"The enthalpy found is above that of dry saturated steam at {_pressure(a.si['p_line'], units)}.",)
-    remedies = ("If the line should be wet, check the exhaust thermometer, and whether the line pressure was meant "
+    remedies = (f"If the line should be wet, check the {said.thermometer(a)}, and whether the line pressure was meant "
                 "gauge or absolute.",)
     return headline, reasons, remedies
 
 
-_BY_VERDICT = {Verdict.READS: _reads, Verdict.THIN: _reads, Verdict.CANNOT: _cannot, Verdict.SUPERHEATED: _superheated}
+_BY_VERDICT = {Verdict.READS: _reads, Verdict.THIN: _reads, Verdict.CANNOT: _cannot,
+               Verdict.SUPERHEATED: _superheated, Verdict.CONTRADICTS: said.contradiction}
 
 
 def assumptions(a: Assessment, units: UnitSystem) -> tuple[str, ...]:
@@ -125,18 +122,25 @@ def assumptions(a: Assessment, units: UnitSystem) -> tuple[str, ...]:
     if case["leg_height"] and case["leg_height"].value:
         lines.append(f"Water leg of {describe(case['leg_height'])} taken off the line gauge, water at "
                      f"{units.text(T_LEG, 'temperature', 0)}.")
-    method = case["heat_loss_method"]
-    if method == UNDECIDED:
-        lines.append("Heat loss not decided: taken as nothing, so the steam may be drier than shown.")
-    elif method == NONE:
-        lines.append("Heat loss knowingly taken as nothing.")
-    else:
-        size = f", {percent_points(a.terms.heat_loss / (a.line.h_g - a.line.h_f))}"
-        lines.append(f"Heat loss {units.text(a.terms.heat_loss, 'enthalpy')} of sample, by {method}{size}.")
-    if a.velocities.exhaust:
-        effect = 0.5 * (1 - a.terms.recovery) * a.terms.exhaust_velocity**2 - 0.5 * a.terms.line_velocity**2
-        lines.append(f"Exhaust velocity {units.text(a.velocities.exhaust, 'velocity')}, recovery factor "
-                     f"{a.terms.recovery:g}: kinetic energy {percent_points(effect / (a.line.h_g - a.line.h_f))}.")
-    else:
-        lines.append("Kinetic energy left out: no sample flow and exhaust bore given.")
+    if not a.heating:
+        lines += [_heat_loss(a, units), _kinetic_energy(a, units)]
+    lines += said.assumed(a, units)
     return (*lines, "Steam properties: IAPWS-IF97. The figure carries no uncertainty yet.")
+
+
+def _heat_loss(a: Assessment, units: UnitSystem) -> str:
+    method = a.case["heat_loss_method"]
+    if method == UNDECIDED:
+        return "Heat loss not decided: taken as nothing, so the steam may be drier than shown."
+    if method == NONE:
+        return "Heat loss knowingly taken as nothing."
+    return (f"Heat loss {units.text(a.terms.heat_loss, 'enthalpy')} of sample, by {method}, "
+            f"{percent_points(a.in_quality(a.terms.heat_loss))}.")
+
+
+def _kinetic_energy(a: Assessment, units: UnitSystem) -> str:
+    if not a.velocities.exhaust:
+        return "Kinetic energy left out: no sample flow and exhaust bore given."
+    effect = 0.5 * (1 - a.terms.recovery) * a.terms.exhaust_velocity**2 - 0.5 * a.terms.line_velocity**2
+    return (f"Exhaust velocity {units.text(a.velocities.exhaust, 'velocity')}, recovery factor "
+            f"{a.terms.recovery:g}: kinetic energy {percent_points(a.in_quality(effect))}.")

@@ -106,6 +106,8 @@ def _quality(a: Assessment) -> str:
         return quality_text(a.x)
     if a.verdict is Verdict.SUPERHEATED:
         return "line superheated"
+    if a.x_below is None:
+        return "not told"
     return f"below {quality_text(a.x_below)}" if a.x_below < 1 else "not told"
 
 

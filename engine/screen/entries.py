@@ -26,11 +26,14 @@ SLIDERS: dict[str, dict[str, Range]] = {
     "p_line": {"bar": Range(0.5, 165.0, 0.1), "psi": Range(5.0, 2390.0, 1.0)},
     "p_exhaust": {"bar": Range(0.05, 4.0, 0.005), "psi": Range(0.5, 60.0, 0.1)},
     "T_exhaust": {"°C": Range(40.0, 220.0, 0.1), "°F": Range(100.0, 430.0, 0.2)},
-    "wetness": {"%": Range(0.0, 10.0, 0.05)},
+    "wetness": {"%": Range(0.0, 15.0, 0.05)},
+    "T_heater": {"°C": Range(60.0, 400.0, 0.1), "°F": Range(140.0, 750.0, 0.2)},
+    "power": {"W": Range(0.0, 5000.0, 1.0)},
 }
 _STEPS = {"bar": 0.01, "psi": 0.1, "°C": 0.1, "°F": 0.1, "%": 0.01, "1": 0.01, "mm": 0.1, "in": 0.01, "kPa": 0.1,
           "inHg": 0.01, "m": 0.1, "ft": 0.1, "m/s": 0.5, "ft/s": 1.0, "kg/h": 0.1, "lb/h": 0.1, "W/K": 0.01,
-          "Btu/(h °F)": 0.01, "kJ/kg": 0.1, "Btu/lb": 0.1, "K": 0.5}
+          "Btu/(h °F)": 0.01, "kJ/kg": 0.1, "Btu/lb": 0.1, "K": 0.5,
+          "W": 1.0, "%pt": 0.01, "kg": 0.01, "lb": 0.01, "L": 0.01, "in³": 1.0}
 
 
 def slider(name: str) -> None:
@@ -38,11 +41,12 @@ def slider(name: str) -> None:
     entry, unit = session.shown_entry(name), session.display_unit(name)
     span = SLIDERS[name][unit]
     key = f"slide {name} {unit}"
-    session.mirror(key, min(max(entry.value, span.low), span.high))
-    marked = ", ".join(filter(None, (FIELDS[name].label, f"{unit} {entry.basis}".strip())))
+    basis_now = entry.basis if entry is not None else ""
+    session.mirror(key, span.low if entry is None else min(max(entry.value, span.low), span.high))
+    marked = ", ".join(filter(None, (FIELDS[name].label, f"{unit} {basis_now}".strip())))
     st.slider(marked, span.low, span.high, step=span.step, format="%g", key=key,
-              on_change=session.callback(name, key, lambda v: Entry(v, unit, entry.basis)))
-    if entry.basis:
+              on_change=session.callback(name, key, lambda v: Entry(v, unit, basis_now)))
+    if basis_now:
         with st.container(horizontal=True, vertical_alignment="bottom"):
             number(name, label_hidden=True)
             basis(name)
@@ -55,7 +59,9 @@ def number(name: str, *, help: str | None = None, label_hidden: bool = False) ->
     field, entry, unit = FIELDS[name], session.shown_entry(name), session.display_unit(name)
     key = f"exact {name} {unit}"
     named = f"{field.label}, {unit}" if unit != "1" else field.label
-    basis_now = entry.basis if entry is not None else ""
+    # a pressure typed into an empty entry is meant like that of the line
+    like_line = session.case()["p_line"].basis if field.kind == "pressure" else ""
+    basis_now = entry.basis if entry is not None else like_line
 
     def read(value: object) -> Entry | None:
         return field.blank if value is None else Entry(float(value), unit, basis_now)
@@ -64,6 +70,13 @@ def number(name: str, *, help: str | None = None, label_hidden: bool = False) ->
     st.number_input(named, value=None, step=_STEPS.get(unit, 0.1), format="%.7g", key=key,
                     help=help or field.hint or None, on_change=session.callback(name, key, read),
                     label_visibility="collapsed" if label_hidden else "visible")
+
+
+def pressure(name: str) -> None:
+    """An exact entry of a pressure that may be left empty, and gauge or absolute once there is one."""
+    number(name)
+    if session.case()[name] is not None:
+        basis(name)
 
 
 def basis(name: str) -> None:

@@ -135,6 +135,12 @@ _ENTRY_UNITS = {
     "p_barometer": {"SI": "kPa", "US": "inHg"},
     "altitude": {"SI": "m", "US": "ft"},
     "leg_height": {"SI": "m", "US": "ft"},
+    "wetness_low": {"SI": "%", "US": "%"},
+    "wetness_high": {"SI": "%", "US": "%"},
+    "U_quality": {"SI": "%pt", "US": "%pt"},
+    "water_share": {"SI": "%", "US": "%"},
+    "power": {"SI": "W", "US": "W"},
+    "power_loss": {"SI": "W", "US": "W"},
 }
 
 

@@ -10,9 +10,10 @@ import streamlit as st
 
 from engine.job.answer import SHAPES, quality_text
 from engine.job.assessment import Assessment, Verdict, assess
-from engine.job.case import Case, describe
+from engine.job.case import Case
 from engine.job.casefile import to_json
 from engine.job.demo import DEMO
+from engine.job.methods_said import in_short
 from engine.screen import address, entries, session, style
 from engine.steam.errors import InputError
 from engine.steam.units import SYSTEMS
@@ -70,11 +71,9 @@ def _units() -> None:
 
 def _summary(case: Case) -> str:
     """The case in one line: what it is, what was entered, what can be said."""
-    asked = (f"reading {describe(case['T_exhaust'])}" if case["question"] == "reading"
-             else f"expected wetness {describe(case['wetness'])}")
     title = style.escaped(case["title"]) or "Untitled case"
-    return (f"**{title}** · line {describe(case['p_line'])} · exhaust {describe(case['p_exhaust'])} · {asked} · "
-            f"**{_verdict(case)}**")
+    parts = [f"**{title}**", *in_short(case), f"**{_verdict(case)}**"]
+    return " · ".join(parts)
 
 
 def _verdict(case: Case) -> str:

@@ -16,7 +16,8 @@ from engine.screen.charts.diagram import Diagram
 from engine.steam.units import UnitSystem
 
 PINNED_COLOURS = ("var:green", "var:pink", "var:muted", "var:blue")
-_MARKS = {"Line": "circle", "Dries out": "diamond", "Exhaust": "square"}
+_MARKS = {"Line": "circle", "Throttled steam": "circle-open", "Drained water": "triangle-down",
+          "Dries out": "diamond", "Exhaust": "square", "After the heater": "square"}
 
 
 def process_diagrams(a: Assessment, units: UnitSystem,
@@ -51,7 +52,7 @@ def _nothing(name: str, **more: Any) -> dict[str, Any]:
 
 def _path(axes: Axes, a: Assessment, units: UnitSystem) -> dict[str, Any]:
     dash = "solid" if a.verdict in (Verdict.READS, Verdict.THIN) else "dash"
-    return _trace(axes, units, _columns(a.path), name="constant enthalpy",
+    return _trace(axes, units, _columns(a.path), name="heating" if a.heating else "constant enthalpy",
                   line={"color": "var:vermilion", "width": 4, "dash": dash})
 
 

@@ -7,9 +7,10 @@ import streamlit as st
 from engine.job.answer import answer
 from engine.job.assessment import Assessment
 from engine.job.cautions import CAUTIONS, SHORT
+from engine.job.fields_modes import ELECTRIC, SEPARATING, THROTTLING
 from engine.job.fields_path import BY_ALTITUDE, BY_CONDUCTANCE, BY_KG, BY_NORMAL, EXPECTED, NONE, READING, UNDECIDED
 from engine.job.tables import as_csv, comparison_rows, state_rows, velocity_rows
-from engine.screen import entries, live, session, style
+from engine.screen import entries, live, methods, session, style
 from engine.screen.charts.process import process_diagrams
 from engine.screen.charts.speed import velocity_diagram
 from engine.screen.shell import assessed
@@ -17,8 +18,10 @@ from engine.screen.style import escaped_lines
 from engine.steam.errors import InputError
 
 QUESTIONS = {READING: "I have a reading", EXPECTED: "I expect this wetness"}
-LEGEND = (("vermilion", "solid", "constant enthalpy: ● line, ◆ dries out, ■ exhaust"),
-          ("blue", "dashed", "one constant bore; ✚ exhaust as read"),
+WAYS = {THROTTLING: "constant enthalpy: ● line, ◆ dries out, ■ exhaust",
+        SEPARATING: "constant enthalpy: ● line, ▼ drained water, ○ throttled steam, ◆ dries out, ■ exhaust",
+        ELECTRIC: "heating: ● line, ◆ dries out, ■ after the heater"}
+LEGEND = (("blue", "dashed", "one constant bore; ✚ exhaust as read"),
           ("text", "dashed", "reach limit: the wettest steam still readable"), ("green", "solid", "pinned cases"))
 LOSSES = {UNDECIDED: "Not decided yet", NONE: "Knowingly none", BY_CONDUCTANCE: "By conductance UA",
           BY_KG: "Known per kg of sample", BY_NORMAL: "By a normal reading on dry steam"}
@@ -35,7 +38,7 @@ def page() -> None:
     units = session.units()
     others = _pinned()
     live.show(process_diagrams(a, units, others), key="process", height=420)
-    style.legend(LEGEND)
+    style.legend((("vermilion", "solid", WAYS[session.case()["mode"]]), *LEGEND))
     st.caption(SHORT)
     _assumed()
     _velocities(a)
@@ -46,11 +49,13 @@ def page() -> None:
 
 
 def _inputs() -> None:
-    entries.choice("question", QUESTIONS, horizontal=True)
-    asked = "T_exhaust" if session.case()["question"] == READING else "wetness"
-    for column, name in zip(st.columns(3, gap="large"), ("p_line", "p_exhaust", asked), strict=True):
+    with st.container(horizontal=True, gap="large"):
+        entries.choice("question", QUESTIONS, horizontal=True)
+        methods.choose()
+    for column, name in zip(st.columns(3, gap="large"), methods.main_entries(), strict=True):
         with column:
             entries.slider(name)
+    methods.entries_of_method()
 
 
 def _assumed() -> None:
@@ -61,14 +66,15 @@ def _assumed() -> None:
         entries.choice("barometer_source", {BY_ALTITUDE: "From the altitude", "reading": "As read"})
         entries.number("altitude" if case["barometer_source"] == BY_ALTITUDE else "p_barometer")
         entries.number("leg_height")
-    with loss:
-        entries.choice("heat_loss_method", LOSSES)
-        for name in {BY_CONDUCTANCE: ("conductance", "T_ambient"), BY_KG: ("heat_loss",),
-                     BY_NORMAL: ("T_normal",)}.get(case["heat_loss_method"], ()):
-            entries.number(name)
-    with speed:
-        for name in ("sample_flow", "line_velocity", "line_bore", "exhaust_bore", "recovery"):
-            entries.number(name)
+    if case["mode"] != ELECTRIC:  # a heater has its own loss, and needs no fast stream
+        with loss:
+            entries.choice("heat_loss_method", LOSSES)
+            for name in {BY_CONDUCTANCE: ("conductance", "T_ambient"), BY_KG: ("heat_loss",),
+                         BY_NORMAL: ("T_normal",)}.get(case["heat_loss_method"], ()):
+                entries.number(name)
+        with speed:
+            for name in ("sample_flow", "line_velocity", "line_bore", "exhaust_bore", "recovery"):
+                entries.number(name)
     with limits:
         for name in ("least_superheat", "comfortable_superheat", "x_limit"):
             entries.number(name)
