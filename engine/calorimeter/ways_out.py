@@ -70,6 +70,7 @@ def ways_out(p_line, p_exhaust, x, *, superheat=5.0, sample_flow, U_quality=1e-3
              recovery=1.0) -> tuple[WayOut, ...]:
     """The ways to measure quality ``x`` where the exhaust would read less than ``superheat`` [K], ranked.
 
+    ``superheat`` is the least readable one, and what the thermometer is unsure of on top where that counts.
     Single values: pressures [Pa, absolute], ``sample_flow`` [kg/s], ``U_quality`` the expanded uncertainty
     expected of the quality, ``p_exhaust_lowest`` [Pa] what can be had at the exhaust, ``water_share`` the part
     of the water that a separator would take; other arguments as for ``quality``. Empty where the steam can be

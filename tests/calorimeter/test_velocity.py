@@ -2,7 +2,7 @@
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from engine.calorimeter import (
@@ -86,6 +86,7 @@ def test_below_saturation_the_superheat_is_counted_at_saturation():
     assert kinetic_superheat(80.0, 1e5, T - 20.0) == kinetic_superheat(80.0, 1e5, T)
 
 
+@settings(deadline=None)
 @given(st.floats(1e-4, 0.1), st.floats(2e-3, 0.1), st.floats(0.05, 30.0), st.floats(1.2, 40.0))
 def test_ratios_follow_from_velocities(flow, d1, v1, growth):
     v2, d2 = v1 * growth, 1.7 * d1
@@ -96,6 +97,7 @@ def test_ratios_follow_from_velocities(flow, d1, v1, growth):
     assert velocity_ratio(v1, v2, d1, d1) == pytest.approx(growth, rel=1e-12)
 
 
+@settings(deadline=None)
 @given(st.floats(1e-4, 0.1), st.floats(0.05, 30.0), st.floats(1.2e5, 165e5), st.floats(1e-5, 0.05))
 def test_the_least_bore_has_just_the_allowed_error(flow, v, p, error):
     bore = least_exhaust_bore(flow, v, p, error)
