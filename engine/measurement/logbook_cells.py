@@ -5,6 +5,7 @@ Everything here depends on one block alone, so blocks can be worked at side by s
 
 from __future__ import annotations
 
+import re
 from dataclasses import dataclass, field
 
 import numpy as np
@@ -36,6 +37,7 @@ IMPOSSIBLE = "outside what this channel can be"
 HEADING_AGAIN = "the heading again"
 COMMENT = "a comment line"
 NO_READING = "no reading in this row"
+_APOSTROPHE = re.compile(r"^'(?=[=+\-@])")  # written in front of text that must not become a formula
 MOST_KNOWN = 10_000  # cell texts remembered within one column of one block
 
 
@@ -97,7 +99,7 @@ def _remarks(block: Block, used: dict[str, Column]) -> dict[int, str]:
     if "remark" not in used:
         return {}
     cells = block.cells[used["remark"].position]
-    return {i: text for i, c in enumerate(cells) if c is not None and (text := str(c).strip())}
+    return {i: _APOSTROPHE.sub("", text) for i, c in enumerate(cells) if c is not None and (text := str(c).strip())}
 
 
 def _work_times(done: Worked, mapping: Mapping) -> None:
@@ -128,6 +130,8 @@ def _text_times(column: Column, block: Block, mapping: Mapping) -> Times:
 def _refuse_time(done: Worked, i: int, column: Column, reason: str) -> None:
     cell = done.block.cells[column.position][i]
     text = (cell.decode("utf-8", "replace") if isinstance(cell, bytes) else str(cell or "")).strip()
+    if isinstance(cell, UncomputedFormula):
+        reason = FORMULA
     if text.startswith(("#", "//", "%")):
         done.faults.append((i, None, COMMENT, None))
     else:

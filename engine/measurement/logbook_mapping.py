@@ -33,7 +33,12 @@ class Column:
     @property
     def label(self) -> str:
         """How the column is called in a message."""
-        return self.name.strip() or f"column {self.position + 1}"
+        return self.name.strip() or self.place
+
+    @property
+    def place(self) -> str:
+        """The column by its place, which no other column shares."""
+        return f"column {self.position + 1}"
 
 
 class Question(NamedTuple):
@@ -72,12 +77,12 @@ class Mapping:
         return {c.channel: c for c in self.columns if c.channel}
 
     def answer(self, *, unit: dict[str, str] | None = None, basis: str | dict[str, str] | None = None,
-               channel: dict[str, str] | None = None, **whole) -> Mapping:
+               channel: dict[str, str] | None = None, **whole: str) -> Mapping:
         """A mapping with answers put in.
 
         ``unit`` and ``basis`` go by channel (one ``basis`` for all pressures that lack one may be
-        given as a word), ``channel`` by the column's heading ("" leaves the column out); ``decimal``,
-        ``thousands``, ``date_order``, ``delimiter``, ``encoding``, ``sheet`` hold for the whole file.
+        given as a word), ``channel`` by the column's heading or place ("column 2"), "" leaving the column
+        out; ``decimal``, ``thousands`` and ``date_order`` hold for the whole file.
 
         >>> mapping = Mapping((Column(0, "p1", "p_line", "bar"), Column(1, "T2", "T_exhaust", "°C")))
         >>> mapping.questions[0].item
@@ -86,13 +91,14 @@ class Mapping:
         ()
         """
         unit, channel = unit or {}, channel or {}
-        faults = _strangers(channel, {c.name for c in self.columns}, "column heading")
+        places = {c.place for c in self.columns}
+        faults = _strangers(channel, places | {c.label for c in self.columns}, "column")
+        faults += _strangers(whole, {"decimal", "thousands", "date_order"}, "answer")
         columns = []
         for column in self.columns:
-            if channel.get(column.name, column.channel) != column.channel:
-                column = replace(column, channel=channel[column.name], unit="", basis="")
-                if column.channel == "p_barometer":
-                    column = replace(column, basis="absolute")
+            told = channel.get(column.place, channel.get(column.label, column.channel))
+            if told != column.channel:
+                column = replace(column, channel=told, unit="", basis="absolute" * (told == "p_barometer"))
             columns.append(column)
         channels = {c.channel for c in columns}
         faults += _strangers(unit, channels, "channel")
@@ -101,6 +107,8 @@ class Mapping:
         faults += _strangers(basis or {}, channels, "channel")
         if faults:
             raise InputError(*faults)
+        if not self.decimal and whole.get("decimal") == ".":
+            whole.setdefault("thousands", ",")  # what was not the decimal sign parts thousands
         columns = tuple(replace(c, unit=unit.get(c.channel, c.unit), basis=(basis or {}).get(c.channel, c.basis))
                         for c in columns)
         return replace(self, columns=columns, **whole)
@@ -222,8 +230,8 @@ def _questions(mapping: Mapping) -> list[Question]:
         names = ", ".join(c.label for c in mapping.columns[:12]) or "none"
         asked.append(Question("channel", "", f"no column was recognised among: {names}. Which is which?", MEASURED))
     if not mapping.decimal:
-        asked.append(Question("decimal", "", "every comma stands before three digits: 1,013 may be 1.013 or 1013. "
-                              "Which sign is the decimal one?", (",", ".")))
+        asked.append(Question("decimal", "", "the numbers can be read with a decimal comma and with a decimal point: "
+                              "1,013 may be 1.013 or 1013. Which sign is the decimal one?", (",", ".")))
     for column in mapping.columns:
         channel = CHANNELS.get(column.channel)
         if channel is None or channel.kind == "text":
@@ -237,23 +245,27 @@ def _questions(mapping: Mapping) -> list[Question]:
     dated = any(c.channel in ("time", "date") and c.unit in ("stamp", "date") for c in mapping.columns)
     if dated and not mapping.date_order:
         asked.append(Question("date_order", "", "every date can be read in more than one order. In which order are "
-                              "day, month and year written?", tuple(DATE_ORDERS)))
+                              "day, month and year written?", ("dmy", "mdy", "ymd")))
     return asked
 
 
 def refuse_open(mapping: Mapping, source: str) -> None:
     """Raise InputError with every open question, because a guess would go unseen."""
     faults = [Fault(f"log {source}, {q.item} {q.channel}".strip(), "nothing told", "",
-                    "one of: " + ", ".join(q.options), q.text, _how(mapping, q), name=q.item)
+                    "one of: " + _listed(q.options), q.text, _how(mapping, q), name=q.item)
               for q in mapping.questions]
     if faults:
         raise InputError(*faults)
 
 
+def _listed(options: tuple[str, ...]) -> str:
+    return ", ".join(f'"{option}"' if len(option) == 1 and not option.isalpha() else option for option in options)
+
+
 def _how(mapping: Mapping, question: Question) -> str:
     option = question.options[0]
     if question.item == "channel":
-        told = f"{{{mapping.columns[0].name if mapping.columns else ''!r}: {option!r}}}"
+        told = f"{{{mapping.columns[0].label!r}: {option!r}}}"
     else:
         told = f"{{{question.channel!r}: {option!r}}}" if question.channel else repr(option)
     return f"answer it on the page, or propose_mapping(log).mapping.answer({question.item}={told})"

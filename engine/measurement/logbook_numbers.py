@@ -14,6 +14,8 @@ from collections.abc import Callable, Iterable
 from functools import lru_cache
 from typing import NamedTuple
 
+from engine.measurement.logbook_words import unit_of
+
 # The reasons a numeric cell can be refused for; the words are the ones a user reads.
 NOT_A_NUMBER = "not a number"
 NO_VALUE = "the instrument says that it has no value"
@@ -40,7 +42,7 @@ NO_VALUE_CODES = (-9999.0, -9999.9, -9999.99, -99999.0, -32768.0)
 
 
 _TO_SHAPE = str.maketrans("12345678", "99999999")  # a leading zero still tells that no thousands follow
-_PLAIN_SHAPE = re.compile(r"[09.,]+")
+_PLAIN_SHAPE = re.compile(rf"([09.,]+)(?:[{_SPACES}]?[^\W0-9_].*|[{_SPACES}]?[°%].*)?")  # a unit may follow
 _GROUPED_SHAPE = re.compile(r"9[09]{0,2}([.,])[09]{3}(\1[09]{3})*")
 
 
@@ -64,8 +66,10 @@ def number_signs(cells: Iterable[str]) -> Signs:
     # Only the shape of a number matters, and a log has few: 9.017 and 8.365 are both 9.999.
     shapes = Counter(cell.translate(_TO_SHAPE).strip().lstrip("+-\u2212") for cell in cells)
     for shape, n in shapes.items():
-        if not _PLAIN_SHAPE.fullmatch(shape):
+        plain = _PLAIN_SHAPE.fullmatch(shape)
+        if plain is None:
             continue
+        shape = plain[1]
         point, comma = shape.count("."), shape.count(",")
         if point and comma:  # the last sign is the decimal one, the other groups digits
             if shape.rfind(",") > shape.rfind("."):
@@ -85,7 +89,7 @@ def number_signs(cells: Iterable[str]) -> Signs:
     if commas and (points or groups_comma) or points and groups_point:
         # Two habits in one file: the more frequent one wins only when it wins clearly.
         many, few = max(commas, points), min(commas, points)
-        return Signs("," if commas > points else ".", "", settled=few <= 0.1 * many)
+        return Signs("," if commas > points else ".", "", settled=few <= 0.2 * many)
     if commas or groups_point:
         return Signs(",", "." if groups_point or open_points else "")
     if points or groups_comma:
@@ -123,11 +127,10 @@ def read_number(cell: str, decimal: str = ".", thousands: str = "",
         return math.nan, ""
     match = _form(decimal, thousands).fullmatch(text)
     if match is None:
-        return math.nan, _why_not(text, thousands)
+        return math.nan, _why_not(text, decimal, thousands)
     tail = match["tail"]
     if tail and not is_unit(tail):
-        reason = _why_not(text, thousands)
-        return math.nan, _tail_reason(tail) if reason == NOT_A_NUMBER else reason
+        return math.nan, OTHER_UNIT if unit_of(tail)[1] else _why_not(text, decimal, thousands)
     digits = match["number"]
     for sign in {*_BLANK_GROUPS, thousands} - {""}:
         digits = digits.replace(sign, "")
@@ -135,11 +138,7 @@ def read_number(cell: str, decimal: str = ".", thousands: str = "",
     return (value, "") if math.isfinite(value) else (math.nan, NOT_FINITE)
 
 
-def _tail_reason(tail: str) -> str:
-    return OTHER_UNIT if re.fullmatch(r"[^\W\d_°%][\w°²()/. ]{0,9}|[°%]\s?\w?", tail) else NOT_A_NUMBER
-
-
-def _why_not(text: str, thousands: str) -> str:
+def _why_not(text: str, decimal: str, thousands: str) -> str:
     """The most telling reason why a text is no number."""
     low = text.casefold()
     if low in _SHEET_ERRORS:
@@ -152,9 +151,10 @@ def _why_not(text: str, thousands: str) -> str:
         return FORMULA
     if _CONTROL.search(text):
         return CONTROL
-    digits = text.lstrip("+-")
-    if re.fullmatch(r"\d+[.,]\d+(?:[eE][+-]?\d+)?", digits, re.ASCII):
-        return WRONG_GROUPS if thousands and thousands in digits else WRONG_SIGN
-    if re.fullmatch(rf"[\d.,{re.escape(_BLANK_GROUPS)}]+", digits, re.ASCII) and re.search(r"\d", digits):
+    if text.count(decimal) > 1:
+        return NOT_A_NUMBER
+    if re.fullmatch(r"[+-]?[0-9]+[.,][0-9]+(?:[eE][+-]?[0-9]+)?", text):
+        return WRONG_GROUPS if thousands and thousands in text else WRONG_SIGN
+    if re.fullmatch(rf"[+-]?[0-9][0-9.,{re.escape(_BLANK_GROUPS)}]*", text):
         return WRONG_GROUPS
     return NOT_A_NUMBER

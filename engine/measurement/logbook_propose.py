@@ -78,6 +78,8 @@ def propose(rows: list[Row], spots: list[list[str]], source: str, layout: Layout
                if f.channel != "remark" and f.unit not in STAMPS]
     signs = number_signs(numeric if text_numbers is None else text_numbers)
     found = [_unit_from_cells(f, column, signs) for f, column in zip(found, cells, strict=True)]
+    if not any(f.channel for f in found):
+        _refuse_prose(data, source)
     columns = tuple(Column(k, names[k], f.channel, f.unit, f.basis) for k, f in enumerate(found))
     mapping = Mapping(columns, signs.decimal if signs.settled else "", signs.thousands, order, layout.delimiter,
                       layout.encoding, rows[at][0] if at >= 0 else 0, data[0][0], layout.sheet)
@@ -148,6 +150,15 @@ def _refuse_comma_clash(heading: list[str], data: list[Row], delimiter: str, sou
         raise refuse(source, f"{width} headings over {len(cells)} cells (line {line}: {','.join(cells)[:60]})",
                      "the comma parts the cells and is the decimal sign as well",
                      "export with semicolons or tabs between the cells, or with a decimal point")
+
+
+def _refuse_prose(data: list[Row], source: str) -> None:
+    """Text that names no channel and holds hardly a value is no table of readings."""
+    filled = [c for _, cells in data for c in cells if c.strip()]
+    if sum(map(is_value, filled)) < 0.3 * len(filled):
+        raise refuse(source, f"text without readings, such as {' '.join(data[0][1])[:60]!r}",
+                     "no heading names a known channel and hardly a cell holds a number",
+                     "give the table alone, with headings such as: time [s], p1 [bar g], T2 [°C]")
 
 
 def _choose(found: list[Found], cells: list[list[str]], names: list[str]) -> tuple[list[Found], list[str], list[str]]:

@@ -121,14 +121,17 @@ def find_encoding(source: Source) -> str:
         if max(even, odd) > 0.35 * len(head) / 2 and min(even, odd) < 0.05 * max(even, odd):
             return "utf-16-le" if odd > even else "utf-16-be"
     controls = len(head) - len(head.translate(None, bytes(set(range(32)) - set(b"\t\n\r\f"))))
-    if controls > 0.01 * len(head) or (controls and len(head) < 100):
+    if controls > max(3, 0.01 * len(head)):
         raise refuse(source.name, "a binary file", f"{controls} of its first {len(head)} bytes are control characters",
                      "export the readings from the logger's program as CSV or XLSX")
-    try:
-        codecs.getincrementaldecoder("utf-8")().decode(head)  # not final: the last character may be cut
-        return "utf-8"
-    except UnicodeDecodeError:
-        return "cp1252"
+    return "utf-8" if _is_utf8(head) else "cp1252"
+
+
+def _is_utf8(raw: bytes) -> bool:
+    """Whether bytes read as UTF-8; a stray byte among good characters does not make them another code."""
+    text = codecs.getincrementaldecoder("utf-8")("replace").decode(raw)  # not final: the last one may be cut
+    wrong = text.count("\ufffd")
+    return wrong == 0 or wrong <= sum(not c.isascii() for c in text) - wrong
 
 
 class TextBlock(NamedTuple):
@@ -201,10 +204,7 @@ class _Recoder:
         if self.encoding == "utf-8" and raw.isascii() and not self._wide.getstate()[0]:
             return raw
         if self.encoding == "utf-8" and self._ascii:
-            try:
-                codecs.getincrementaldecoder("utf-8")().decode(raw)
-            except UnicodeDecodeError:
-                # Plain ASCII until here, and no UTF-8 now: the old single-byte code of the same family.
+            if not _is_utf8(raw):  # plain ASCII until here: so it was the old single-byte code all along
                 self.encoding, self._wide = "cp1252", None
             self._ascii = False
         text = self._wide.decode(raw, last) if self._wide else raw.decode("cp1252", "replace")

@@ -298,8 +298,8 @@ def date_order(cells: list[str]) -> str:
     """Order of day, month and year, decided by the data; "" where they fit more than one.
 
     Written with dots the day comes first, by the usage of all countries that write so. Otherwise an
-    order must be possible for every cell; of two that are possible, one is taken only when it makes
-    the log at least twenty times as short, as it does when a night is crossed.
+    order must make dates of as many cells as any other does; of two that do, one is taken only when it
+    makes the log at least twenty times as short, as the right one does when a night is crossed.
 
     >>> date_order(["03/04/2024", "13/04/2024"]), date_order(["03/04/2024"]), date_order(["2024-03-04"])
     ('dmy', '', 'ymd')
@@ -312,9 +312,11 @@ def date_order(cells: list[str]) -> str:
     spans = {}
     for order in ("dmy", "mdy", "ymd"):
         times = read_times(array, "stamp", order)
-        if (times.reason == 0).mean() > 0.98:
-            good = times.micros[times.reason == 0]
-            spans[order] = (int(np.ptp(good)) + _SECOND, bool((np.diff(good) < 0).any()))
+        good = times.micros[times.reason != REASONS.index(NO_SUCH_DATE)]
+        if good.size:
+            spans[order] = (int(np.ptp(good)) + _SECOND, bool((np.diff(good) < 0).any()), good.size)
+    most = max((size for *_, size in spans.values()), default=0)  # a stray date must not decide
+    spans = {order: span for order, span in spans.items() if span[2] >= most - 0.02 * len(loose)}
     if "dmy" in spans and all("." in c.split()[0] for c in loose):
         return "dmy"
     if len(spans) <= 1:

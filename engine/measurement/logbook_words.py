@@ -120,7 +120,7 @@ _SYMBOLS = {"p1": "p_line", "pl": "p_line", "pline": "p_line", "t1": "T_line", "
             "pbaro": "p_barometer", "ta": "T_ambient", "tamb": "T_ambient", "tu": "T_ambient", "mdot": "sample_flow"}
 # Columns about a channel that are not its readings.
 _NOT_READINGS = _set("setpoint sp soll sollwert alarm status limit std stdev sigma consigne target quality flag error "
-                     "saturation tsat")
+                     "saturation tsat superheat")
 _BRACKETS = re.compile(r"[\[({<]([^\[\](){}<>]*(?:\([^()]*\))?[^\[\](){}<>]*)[\])}>]")
 _BEFORE_UNIT = re.compile(r"(?<=[^\s/;,|:])\s*[;,|]\s*|\s+/\s*|\s+in\s+|(?<=\w)/(?=[a-zA-Z°]+[ (]?[a-z()]*$)|\s+")
 
