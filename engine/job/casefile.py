@@ -57,6 +57,8 @@ def from_json(data: bytes | str) -> Case:
 
 
 def _first_line(error: Exception) -> str:
+    if isinstance(error, RecursionError):
+        return "brackets nested too deeply"
     return (str(error).splitlines() or [type(error).__name__])[0]
 
 
