@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from engine.job.case import Case
+from engine.job.fields_instruments import HALF_WIDTH, LIMIT, SHOWS_GAUGE
 from engine.job.fields_path import BY_CONDUCTANCE
 from engine.job.fields_rig import DRY, ELECTRIC_PROBE
 from engine.job.rows import Entry
@@ -25,6 +26,24 @@ FACTORY_MAIN = Case({
     "conductance": Entry(0.18, "W/K"),
     "T_ambient": Entry(24.0, "°C"),
     "x_limit": Entry(0.970, "1"),
+    # how sure each reading is
+    "line_gauge_kind": "EN 837-1",
+    "line_gauge_grade": "1",
+    "line_gauge_high": Entry(16.0, "bar"),
+    "line_gauge_resolution": Entry(0.1, "bar"),
+    "exhaust_gauge_kind": LIMIT,
+    "exhaust_gauge_U": Entry(0.5, "kPa"),
+    "exhaust_gauge_shows": SHOWS_GAUGE,
+    "thermometer_kind": "IEC 60751",
+    "thermometer_grade": "A",
+    "thermometer_resolution": Entry(0.1, "K"),
+    "barometer_kind": LIMIT,
+    "barometer_U": Entry(0.2, "kPa"),
+    "flow_meter_kind": LIMIT,
+    "flow_meter_U": Entry(5.0, "%"),
+    "heat_loss_tolerance": Entry(40.0, "%"),
+    "sampling_kind": HALF_WIDTH,
+    "sampling": Entry(0.5, "%pt"),
     # the rig: orifice, exhaust pipe, nozzle, body, thermometer
     "bore": Entry(3.0, "mm"),
     "discharge": Entry(0.85, "1"),

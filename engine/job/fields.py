@@ -6,11 +6,12 @@ one of the modules gathered here.
 
 from __future__ import annotations
 
+from engine.job.fields_instruments import INSTRUMENT_FIELDS
 from engine.job.fields_modes import MODE_FIELDS
 from engine.job.fields_path import PATH_FIELDS
 from engine.job.fields_reach import REACH_FIELDS
 from engine.job.fields_rig import RIG_FIELDS
 from engine.job.rows import Field
 
-_ROWS = (*PATH_FIELDS, *MODE_FIELDS, *REACH_FIELDS, *RIG_FIELDS)
+_ROWS = (*PATH_FIELDS, *MODE_FIELDS, *REACH_FIELDS, *RIG_FIELDS, *INSTRUMENT_FIELDS)
 FIELDS: dict[str, Field] = {row.name: row for row in _ROWS}
