@@ -268,8 +268,9 @@ def test_on_a_constant_bore(log_p1, x, share, log_c):
     assert (np.diff(path.s) > -1e-6).all()  # J/(kg K): entropy never falls
     if path.dries_out and path.p_dry < p1 * (1 - 1e-9):
         k = np.flatnonzero(path.p == path.p_dry)[0]
+        # the search for p_dry stops at 1e-8 of its logarithm
         assert path.x[k] == pytest.approx(1.0, abs=1e-6)
-        assert path.T[k] == pytest.approx(saturated(path.p_dry).T, rel=1e-12)
+        assert path.T[k] == pytest.approx(saturated(path.p_dry).T, abs=1e-5)
 
 
 def test_slow_flow_is_isenthalpic():
