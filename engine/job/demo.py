@@ -49,7 +49,7 @@ FACTORY_MAIN = Case({
     "discharge": Entry(0.85, "1"),
     "exhaust_length": Entry(1.5, "m"),
     "elbows": Entry(2.0, "1"),
-    "loss_coefficient": Entry(2.0, "1"),
+    "loss_coefficient": Entry(2.8, "1"),
     "line_flow": Entry(8.0, "t/h"),
     "pipe_bore": Entry(154.0, "mm"),
     "ports": Entry(6.0, "1"),
