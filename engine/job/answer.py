@@ -7,7 +7,8 @@ from dataclasses import dataclass
 from engine.job import methods_said as said
 from engine.job.assessment import Assessment, Verdict
 from engine.job.case import T_LEG, describe
-from engine.job.fields_path import BY_ALTITUDE, NONE, UNDECIDED
+from engine.job.fields_path import BY_ALTITUDE, BY_KG, NONE, UNDECIDED
+from engine.job.terms import HOW
 from engine.steam.units import UnitSystem, from_si
 
 # A shape beside the word, so that a verdict never hangs on colour alone
@@ -57,9 +58,14 @@ def _pressure(si: float, units: UnitSystem) -> str:
 
 
 def _margin(a: Assessment, units: UnitSystem) -> str:
-    least = units.text(a.si["least_superheat"], "difference", 0)
     return (f"The {said.place(a)} {'must be' if a.expected else 'is'} {_superheat(a, units)} superheated, "
-            f"{units.text(a.margin, 'difference')} above the least readable superheat of {least}.")
+            f"{units.text(a.margin, 'difference')} above the least readable superheat of "
+            f"{_limit(a.least_readable, units)}.")
+
+
+def _limit(superheat: float, units: UnitSystem) -> str:
+    """A limit of the superheat, in no more digits than it has: ``5 K``, ``2.5 K``."""
+    return f"{units.value(superheat, 'difference'):.3g} {units.unit('difference')}"
 
 
 def _reads(a: Assessment, units: UnitSystem):
@@ -70,7 +76,7 @@ def _reads(a: Assessment, units: UnitSystem):
         headline = f"Quality in the line {quality_text(a.x)}, wetness {100 * (1 - a.x):.2f} %."
     reasons, remedies = (*said.method(a, units), _margin(a, units), said.reach(a)), ()
     if a.verdict is Verdict.THIN:
-        comfortable = units.text(a.si["comfortable_superheat"], "difference", 0)
+        comfortable = _limit(a.si["comfortable_superheat"], units)
         reasons += (f"The margin is thin: below {comfortable} of superheat a small error of the thermometer or of the "
                     "pressure beside it can hide wet steam.",)
         remedies = ("Put in more power, or use a better thermometer, and check it before relying on it." if a.heating
@@ -87,13 +93,16 @@ def _cannot(a: Assessment, units: UnitSystem):
         reasons = (f"The {said.thermometer(a)} would show {units.text(a.T_exhaust, 'temperature')}; saturation there "
                    f"is {saturation}.{wet}",)
     else:
-        bound = f"below {quality_text(a.x_below)}" if a.x_below < 1 else "not told at all"
-        headline = f"No quality can be given: it is {bound}."
+        headline = (f"No quality can be given: it is below {quality_text(a.x_below)}." if a.x_below < 1 else
+                    "No quality can be given, nor a bound of it.")
         shown = f"The {said.thermometer(a)} shows {units.text(a.T_exhaust, 'temperature')}, "
         if a.superheat > 0:
-            least = units.text(a.si["least_superheat"], "difference", 0)
-            reasons = (f"{shown}only {_superheat(a, units)} above saturation there, {saturation}: less than "
-                       f"the {least} below which wet steam may pass for superheated.",)
+            fast = a.least_readable > a.si["least_superheat"]
+            stream = units.text(a.terms.exhaust_velocity, "velocity")
+            why = (f"in a stream of {stream}, which the thermometer slows down and so heats, wet steam can show that"
+                   if fast else "wet steam may pass for superheated")
+            reasons = (f"{shown}only {_superheat(a, units)} above saturation there, {saturation}: below "
+                       f"{_limit(a.least_readable, units)} {why}.",)
         else:
             reasons = (f"{shown}not above saturation there, {saturation}: wet steam has no enthalpy that "
                        "pressure and temperature could tell.",)
@@ -128,13 +137,16 @@ def assumptions(a: Assessment, units: UnitSystem) -> tuple[str, ...]:
     return (*lines, "Steam properties: IAPWS-IF97. The figure carries no uncertainty yet.")
 
 
+_HOW = {**HOW, BY_KG: "as entered"}
+
+
 def _heat_loss(a: Assessment, units: UnitSystem) -> str:
     method = a.case["heat_loss_method"]
     if method == UNDECIDED:
         return "Heat loss not decided: taken as nothing, so the steam may be drier than shown."
     if method == NONE:
         return "Heat loss knowingly taken as nothing."
-    return (f"Heat loss {units.text(a.terms.heat_loss, 'enthalpy')} of sample, by {method}, "
+    return (f"Heat loss {units.text(a.terms.heat_loss, 'enthalpy')} of sample, {_HOW[method]}, "
             f"{percent_points(a.in_quality(a.terms.heat_loss))}.")
 
 

@@ -21,18 +21,20 @@ from engine.calorimeter import (
     velocity,
     velocity_ratio,
 )
-from engine.job.case import Case, Resolved, resolve
+from engine.job.case import Case, Resolved, as_entered, describe, resolve
+from engine.job.fields import FIELDS
 from engine.job.fields_modes import ELECTRIC, SEPARATING
 from engine.job.fields_path import BY_NORMAL, EXPECTED, UNDECIDED
 from engine.job.heating import Heating, heat, heating_path
 from engine.job.modes import check_mode
 from engine.job.separation import Separation, separated, stage_of
-from engine.job.terms import Terms, check_method, terms_at
+from engine.job.terms import Terms, check_method, refuse_supersonic, terms_at
 from engine.job.verdict import Verdict, verdict_of
-from engine.steam import Saturated, saturated, saturation_temperature, vapour
+from engine.steam import Saturated, saturated, saturation_temperature, state_ph, vapour
 from engine.steam.errors import Fault, InputError
 
 POINTS = 25  # along a path: the eye sees no corner, and the page stays quick
+_FAST = 300.0  # m/s: slower than sound in any dry saturated steam
 
 
 @dataclass(frozen=True)
@@ -73,6 +75,8 @@ class Assessment:
     x_without_kinetic   with the heat loss alone
     T_exhaust, superheat   what the thermometer reads, or must read for the expected wetness
     x_least     least readable quality, at the least superheat asked for
+    least_readable      superheat from which the exhaust can be read [K]: the least asked for, or more in a fast
+        stream, which is still wet while a probe that stops it shows superheat
     margin      superheat above the least readable one [K]
     line_superheat      [K], 0 for a wet line
     read_state  the exhaust steam as the thermometer reads it; None where that is not superheated
@@ -94,6 +98,7 @@ class Assessment:
     superheat: float
     x_exhaust: float
     x_least: float
+    least_readable: float
     margin: float
     line_superheat: float
     terms: Terms
@@ -167,7 +172,9 @@ def _throttled(case: Case, si: Resolved) -> Assessment:
             Status(result.status))
         x_exhaust = 1.0
     least, comfortable = si["least_superheat"], si["comfortable_superheat"]
-    x_least = least_quality(p1, p2, least, **terms.arguments())
+    least_readable = max(least, _superheat_of_dry_stream(terms, p2, T_sat))
+    # at the temperature of the limit, not of the reading: how far the rig reaches does not depend on what it read
+    x_least = least_quality(p1, p2, least, **terms_at(case, si, T_sat + least_readable).arguments())
     if status == Status.LINE_SUPERHEATED:
         verdict, x_below = Verdict.SUPERHEATED, None
     elif status == Status.NOT_SUPERHEATED or superheat < least:
@@ -177,17 +184,17 @@ def _throttled(case: Case, si: Resolved) -> Assessment:
     else:
         verdict, x_below = (Verdict.THIN if superheat < comfortable else Verdict.READS), None
     if np.isnan(h_line):  # only a bound is known: the path of the driest steam that could read so
-        h_line = line.h_f + x_bound * (line.h_g - line.h_f)
+        h_line = line.h_f + min(x_bound, 1.0) * (line.h_g - line.h_f)
     h_least = line.h_f + x_least * (line.h_g - line.h_f)
     both = isenthalpic_path_at(p1, np.array([h_line, h_least]), p2, points=POINTS)
     path, reach_path = _row(both, 0), _row(both, 1)
-    velocities = _velocities(si, path, terms, line)
+    velocities = _velocities(case, si, path, line)
     bore_path = None
     if velocities.sample and line_superheat == 0.0 and path.x[0] <= 1.0:
         bore_path = constant_bore_path(p1, float(path.x[0]), p2, velocities.sample, points=POINTS)
     return Assessment(case, si, verdict, status, x, x_below, as_read, without_kinetic, T, T_sat, superheat, x_exhaust,
-                      x_least, superheat - least, line_superheat, terms, line, velocities, path, reach_path,
-                      bore_path, _states(path, bore_path, velocities),
+                      x_least, least_readable, superheat - least_readable, line_superheat, terms, line, velocities,
+                      path, reach_path, bore_path, _states(path, bore_path, velocities),
                       _read_state(p2, T, superheat, velocities))
 
 
@@ -207,17 +214,25 @@ def _heated(case: Case, si: Resolved) -> Assessment:
     return Assessment(
         case, si, verdict, found.status, found.x if known else None,
         None if expected or verdict is not Verdict.CANNOT else min(max(x_least, 0.0), 1.0), found.x_without_loss, None,
-        found.T, saturation_temperature(heating.p), found.superheat, found.x_after, x_least, found.superheat - least,
-        found.line_superheat, Terms(0.0, 0.0, 0.0, 1.0), line, velocities, path,
+        found.T, saturation_temperature(heating.p), found.superheat, found.x_after, x_least, least,
+        found.superheat - least, found.line_superheat, Terms(0.0, 0.0, 0.0, 1.0), line, velocities, path,
         heating_path(si["p_line"], h_least, heating) if x_least <= 1.0 else None, None,
         _states(path, None, velocities, end="After the heater"), None, heating=heating)
 
 
+def _superheat_of_dry_stream(terms: Terms, p: float, T_sat: float) -> float:
+    """What the probe shows above saturation [K] where the stream it stands in is just dry."""
+    stopped = 0.5 * terms.recovery * terms.exhaust_velocity**2
+    return state_ph(p, vapour(p, T_sat).h + stopped).T - T_sat if stopped else 0.0
+
+
 def _check_normal(case: Case, si: Resolved) -> None:
-    if case["heat_loss_method"] == BY_NORMAL and not si["T_normal"] > saturation_temperature(si["p_exhaust"]):
+    T_sat = saturation_temperature(si["p_exhaust"])
+    if case["heat_loss_method"] == BY_NORMAL and not si["T_normal"] > T_sat:
         entry = case["T_normal"]
-        raise InputError(Fault("Normal reading, dry steam", entry.value, entry.unit,
-                               "a temperature above saturation at the exhaust pressure",
+        limit = describe(as_entered(FIELDS["T_normal"], T_sat, entry, 0.0))
+        raise InputError(Fault(FIELDS["T_normal"].label, entry.value, entry.unit,
+                               f"more than {limit}, saturation at the exhaust pressure",
                                "dry steam must arrive superheated, or it says nothing of the heat loss",
                                "check it, or account for the heat loss in another way", "T_normal"))
 
@@ -256,10 +271,12 @@ def _row(paths: Path, k: int) -> Path:
     return Path(*(pick(getattr(paths, name)) for name in Path.__dataclass_fields__))
 
 
-def _velocities(si: Resolved, path: Path, terms: Terms, line: Saturated) -> Velocities:
+def _velocities(case: Case, si: Resolved, path: Path, line: Saturated) -> Velocities:
     v1, v2 = float(path.v[0]), float(path.v[-1])
     flow, d1, d2 = si["sample_flow"], si["line_bore"], si["exhaust_bore"]
     sample = velocity(flow, d1, v1) if flow and d1 else None
+    if sample and sample > _FAST:
+        refuse_supersonic(case, "line_bore", sample, vapour(si["p_line"], line.T).sound_speed)
     exhaust = velocity(flow, d2, v2) if flow and d2 else None
     ratio = exhaust / sample if sample and exhaust else None
     if ratio is None and d1 and d2:

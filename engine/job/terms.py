@@ -7,12 +7,15 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from engine.calorimeter import fit_two_flows, heat_loss_per_kg, velocity
-from engine.job.case import Case, Resolved
+from engine.job.case import Case, Resolved, describe
+from engine.job.fields import FIELDS
 from engine.job.fields_path import BY_CONDUCTANCE, BY_KG, BY_NORMAL, BY_TWO_FLOWS
 from engine.steam import saturated, saturation_temperature, vapour
 from engine.steam.errors import Fault, InputError
 
 _SECOND = "Temperature at the second flow"
+HOW = {BY_CONDUCTANCE: "by conductance", BY_KG: "per kg of sample", BY_NORMAL: "by a normal reading",
+       BY_TWO_FLOWS: "by two flows"}
 _NEEDED = {
     BY_CONDUCTANCE: (("sample_flow", "Sample flow"), ("conductance", "Heat loss conductance UA"),
                      ("T_ambient", "Ambient temperature")),
@@ -40,9 +43,10 @@ class Terms:
 
 def check_method(case: Case) -> None:
     """InputError where the chosen heat-loss method lacks an entry."""
-    faults = [Fault(label, "nothing", "", f"a value, since the heat loss is taken by {case['heat_loss_method']}",
+    method = case["heat_loss_method"]
+    faults = [Fault(label, "nothing", "", f"a value, since the heat loss is taken {HOW[method]}",
                     hint="enter it, or choose another way to account for the heat loss", name=name)
-              for name, label in _NEEDED.get(case["heat_loss_method"], ()) if case[name] is None]
+              for name, label in _NEEDED.get(method, ()) if case[name] is None]
     if faults:
         raise InputError(*faults)
 
@@ -53,11 +57,25 @@ def terms_at(case: Case, si: Resolved, T_exhaust: float) -> Terms:
     T = max(T_exhaust, saturation_temperature(p))
     c2 = 0.0
     if si["sample_flow"] and si["exhaust_bore"]:
-        c2 = velocity(si["sample_flow"], si["exhaust_bore"], vapour(p, T).v)
+        steam = vapour(p, T)
+        c2 = velocity(si["sample_flow"], si["exhaust_bore"], steam.v)
+        refuse_supersonic(case, "exhaust_bore", c2, steam.sound_speed)
     c1 = si["line_velocity"] or 0.0
     recovery = si["recovery"] if si["recovery"] is not None else 1.0
     streams = Terms(0.0, c1, c2, recovery)
     return replace(streams, heat_loss=heat_loss_by(case["heat_loss_method"], case, si, T, streams))
+
+
+def refuse_supersonic(case: Case, bore: str, velocity: float, sound_speed: float) -> None:
+    """InputError where the sample flow would have to be faster than sound in one of its bores."""
+    if velocity <= sound_speed:
+        return
+    entry = case[bore]
+    least = describe(replace(entry, value=float(f"{entry.value * (velocity / sound_speed) ** 0.5:.3g}")))
+    raise InputError(Fault(FIELDS[bore].label, entry.value, entry.unit,
+                           f"about {least} at least for a sample flow of {describe(case['sample_flow'])}",
+                           "in a smaller bore the steam would have to be faster than sound",
+                           "check the sample flow and the bore, and their units", bore))
 
 
 def heat_loss_by(method: str, case: Case, si: Resolved, T: float, streams: Terms) -> float:
