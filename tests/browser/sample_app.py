@@ -1,7 +1,8 @@
 """A small app for the tests and the bench: three sliders, an answer, three diagrams of an invented fluid.
 
 SAMPLE_PICTURES=none leaves the diagrams away, SAMPLE_PICTURES=replaced draws them with Streamlit's own element.
-In the query, ``pages`` adds a second page and ``follow`` lets the process window follow the temperature.
+In the query, ``pages`` adds a second page, ``follow`` lets the process window follow the temperature, and ``free``
+leaves the ranges of the axes to Plotly.
 """
 
 import os
@@ -23,9 +24,9 @@ PICTURES = os.environ.get("SAMPLE_PICTURES", "live")
 def row():
     st.markdown(f"### The answer is {np.hypot(line, temperature) + exhaust:.4f}")
     further = st.checkbox("Further path")
+    ways = {way: way in st.session_state.asked for way in ("follow", "free")}
     diagrams = [
-        diagram(number, name, line, exhaust, temperature, further=further, follow="follow" in st.session_state.asked)
-        for number, name in enumerate("abc")
+        diagram(number, name, line, exhaust, temperature, further=further, **ways) for number, name in enumerate("abc")
     ]
     if PICTURES == "live":
         live.show(diagrams, key="row")

@@ -23,7 +23,7 @@ def background(diagram):
     return [dome, lines]
 
 
-def diagram(number, name, line, exhaust, temperature, *, further=False, follow=False):
+def diagram(number, name, line, exhaust, temperature, *, further=False, follow=False, free=False):
     x = np.linspace(2 + line / 50, 6 + exhaust / 10, 40)
     y = 100 + temperature / 2 + 10 * np.sin(x)
     low = 50 + (temperature - 120) / 2 * follow
@@ -48,11 +48,13 @@ def diagram(number, name, line, exhaust, temperature, *, further=False, follow=F
             "whole": {"xaxis.range": [0, 9], "yaxis.range": [0, 420]},
         },
     }
-    data = [*background(number), *moving]
+    if free:  # axes that follow the data, as Plotly does where no range is given
+        del layout["meta"]
+    data = [*([] if free else background(number)), *moving]
     return Diagram(
         key=name,
         title=f"Diagram {name}",
         figure={"data": data, "layout": layout},
-        moving=tuple(range(2, len(data))),
+        moving=tuple(range(len(data) - len(moving), len(data))),
         label=f"Path {name} ends at {y[-1]:.4f}",
     )

@@ -170,6 +170,22 @@ def test_the_process_window_follows_the_process(sheet):
     assert path_of(page)[1] == pytest.approx(160.25 + 10 * 0.8085, abs=0.3)
 
 
+def test_axes_without_a_view_follow_the_data(sheet):
+    page = sheet("?free=1")
+    assert page.get_by_role("button", name="Whole dome").count() == 0
+    for _ in range(8):
+        press(page)
+    low, high = ranges(page)[2:]
+    assert 149 < low < 152 < 170.1 < high < 173  # the path: 162 - 10 to 162 + 10 sin 2.2
+    own = zoom(page)
+    press(page)
+    assert ranges(page) == own
+    page.locator(".stage[data-key=a] .nsewdrag").first.dblclick()
+    page.wait_for_function("document.querySelector('.stage')._fullLayout.yaxis.autorange")
+    press(page)
+    assert ranges(page)[2:] == pytest.approx([low + 0.5, high + 0.5], abs=0.01)
+
+
 def test_enlarge_and_back_by_button_and_by_key(sheet):
     page = sheet()
     width = figure(page, "b").bounding_box()["width"]

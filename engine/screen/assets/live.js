@@ -2,15 +2,21 @@
 // element, what moves in another; a change then touches the moving traces only.
 
 const grounds = new Map(); // name -> background, the newest few
-const boards = new Map(); // element on the page -> its Board
-const choices = new Map(); // "board/diagram" -> the reader's view, kept when the page is left
+const boards = new Map(); // key -> Board; one that has left the page keeps its drawings and comes back with them
 
-const MODE_BAR = [["zoom2d", "pan2d", "toImage"]];
+const touch = matchMedia("(pointer: coarse)").matches; // there a finger on a diagram must scroll the page
+const SETTINGS = {
+  displaylogo: false,
+  showSendToCloud: false, // nothing leaves the machine
+  showTips: false,
+  doubleClick: false, // ours goes back to the process
+  displayModeBar: touch ? false : "hover",
+  modeBarButtons: [["zoom2d", "pan2d", "toImage"]],
+};
 const POINTS = new Set(["x", "y", "text", "hovertext", "customdata"]); // what a step may change in a trace
 const AT_ONCE = { duration: 0, easing: "linear" };
-const VIEW = /^[xy]axis\d*\.(range\[|autorange)/; // how Plotly names what the reader has zoomed or moved
-const FAILED = "The diagrams could not be drawn; the numbers on this page do not depend on them. Reload the page to try again.";
-const touch = matchMedia("(pointer: coarse)").matches; // there a finger on a diagram must scroll the page
+const VIEW = /^[xy]axis\d*\.range\[/; // how Plotly names what the reader has zoomed or moved
+const FAILED = "The diagrams could not be drawn; the numbers on this page do not depend on them. Reload to try again.";
 
 const here = (file) => new URL(file + new URL(import.meta.url).search, import.meta.url).href;
 
@@ -50,14 +56,13 @@ export function background({ data, parentElement }) {
 
 export function diagrams({ data, parentElement }) {
   const wanted = JSON.parse(data);
-  if (!boards.has(parentElement)) boards.set(parentElement, new Board(parentElement, wanted.settings));
-  const board = boards.get(parentElement);
+  const { key, enlarged } = wanted.settings;
+  if (!boards.has(key)) boards.set(key, new Board(enlarged));
+  const board = boards.get(key);
   board.wanted = wanted;
+  board.mount(parentElement);
   board.draw();
-  return () => {
-    board.close();
-    boards.delete(parentElement);
-  };
+  return () => board.leave(parentElement);
 }
 
 // ---- colours
@@ -96,7 +101,8 @@ function isDark(colour) {
 function painted(part, colour) {
   if (typeof part === "string") return part.startsWith("var:") ? colour(part.slice(4)) : part;
   if (Array.isArray(part)) {
-    return part.some((item) => item !== null && typeof item !== "number") ? part.map((item) => painted(item, colour)) : part;
+    const plain = part.every((item) => item === null || typeof item === "number");
+    return plain ? part : part.map((item) => painted(item, colour));
   }
   if (part === null || typeof part !== "object") return part;
   return Object.fromEntries(Object.entries(part).map(([name, value]) => [name, painted(value, colour)]));
@@ -105,33 +111,34 @@ function painted(part, colour) {
 // ---- a row of diagrams
 
 class Board {
-  constructor(parent, { key, enlarged }) {
-    this.key = key;
+  constructor(enlarged) {
+    this.enlarged = enlarged;
     this.plots = new Map();
     this.drawn = 0;
     this.root = document.createElement("div");
     this.root.className = "diagrams";
-    parent.append(this.root);
-    this.enlarged = choices.has(key) ? choices.get(key) : enlarged;
-    this.sizes = new ResizeObserver((entries) => entries.forEach(({ target }) => this.plots.get(target.dataset.key)?.fit()));
-    this.escape = (event) => {
-      if (event.key === "Escape" && this.enlarged && !document.querySelector("[role=dialog]")) this.enlarge(null);
-    };
-    document.addEventListener("keydown", this.escape);
+    this.sizes = new ResizeObserver((changes) => {
+      changes.forEach(({ target }) => this.plots.get(target.dataset.key)?.fit());
+    });
+    document.addEventListener("keydown", ({ key, defaultPrevented }) => {
+      if (key !== "Escape" || defaultPrevented || document.querySelector("[role=dialog]")) return;
+      if (this.enlarged && this.root.isConnected) this.enlarge(null);
+    });
   }
 
-  close() {
-    document.removeEventListener("keydown", this.escape);
-    this.sizes.disconnect();
-    this.plots.forEach((plot) => plot.close());
-    this.root.remove();
-    this.closed = true;
+  mount(parent) {
+    if (this.root.parentElement !== parent) parent.append(this.root);
+  }
+
+  // Streamlit may have put the diagrams elsewhere on the page before it takes them away here.
+  leave(parent) {
+    if (this.root.parentElement === parent) this.root.remove();
   }
 
   enlarge(key) {
     this.enlarged = key;
-    choices.set(this.key, key);
     this.arrange();
+    this.root.scrollIntoView({ block: "nearest" });
     this.draw(); // those that were out of sight have not followed
   }
 
@@ -155,8 +162,7 @@ class Board {
         if (!ground) break; // it is on its way and calls draw() when it arrives
         this.furnish();
         const [Plotly] = await Promise.all([plotly(), styled]);
-        if (this.closed) return;
-        this.step(Plotly, ground);
+        if (this.root.isConnected) this.step(Plotly, ground);
       } while (this.again);
     } catch (error) {
       this.fail(error);
@@ -211,13 +217,14 @@ class Plot {
   constructor(board, key) {
     this.board = board;
     this.key = key;
-    this.choice = choices.get(`${board.key}/${key}`) ?? { view: "process" };
+    this.choice = { view: "process" };
     this.section = document.createElement("section");
     this.section.setAttribute("role", "figure");
     this.section.innerHTML = `
       <header><h4></h4>
         <div role="group" aria-label="View">
-          <button type="button" data-view="process">Process</button><button type="button" data-view="whole">Whole dome</button>
+          <button type="button" data-view="process">Process</button>
+          <button type="button" data-view="whole">Whole dome</button>
         </div>
         <button type="button" data-enlarge>Enlarge</button>
       </header>
@@ -250,7 +257,6 @@ class Plot {
 
   choose(choice) {
     this.choice = choice;
-    choices.set(`${this.board.key}/${this.key}`, choice);
     this.mark();
     if (choice.view !== "own") this.board.draw();
   }
@@ -289,11 +295,10 @@ class Plot {
   // spent on looking through attributes that have not changed. It uses parts of Plotly that are not promised,
   // so whatever is not as expected there falls back on building.
   move(Plotly, traces, ranges) {
-    const moved = JSON.stringify(ranges) !== JSON.stringify(this.ranges);
     const { moving } = this.ground;
     const { _fullData: full, _fullLayout: layout, data, calcdata } = this.stage;
-    if (layout.xaxis.autorange || layout.yaxis.autorange) return false; // the axes have to follow
-    if (!moving.every((position) => full[position].type === "scatter")) return false;
+    const change = this.rangeChange(ranges, layout);
+    if (!change || !moving.every((position) => full[position].type === "scatter")) return false;
     traces.forEach((trace, i) => {
       const position = moving[i];
       const points = Object.fromEntries(Object.entries(trace).filter(([name]) => POINTS.has(name)));
@@ -303,9 +308,18 @@ class Plot {
       Object.assign(calcdata[position][0], { t: {}, trace: target });
     });
     this.ranges = ranges;
-    if (moved) Plotly.relayout(this.stage, own(ranges)); // draws all traces
+    if (Object.keys(change).length) Plotly.relayout(this.stage, change); // draws all traces
     else layout._basePlotModules.forEach((module) => module.plot(this.stage, moving, AT_ONCE, () => () => {}));
     return true;
+  }
+
+  // What to tell Plotly so that the axes show the ranges, or follow the data where none are given; null: build anew.
+  rangeChange(ranges, { xaxis, yaxis }) {
+    if (JSON.stringify(ranges) !== JSON.stringify(this.ranges)) return Object.keys(ranges).length ? own(ranges) : null;
+    const change = {};
+    if (xaxis.autorange) change["xaxis.autorange"] = xaxis.autorange;
+    if (yaxis.autorange) change["yaxis.autorange"] = yaxis.autorange;
+    return change;
   }
 
   build(Plotly, traces, ranges, { data, moving, layout }) {
@@ -317,10 +331,7 @@ class Plot {
     if (touch) layout.dragmode = false;
     const first = !this.stage.on;
     this.ranges = ranges;
-    Plotly.react(this.stage, data, layout, {
-      displaylogo: false, showSendToCloud: false, showTips: false, doubleClick: false,
-      displayModeBar: touch ? false : "hover", modeBarButtons: MODE_BAR, toImageButtonOptions: { filename: this.key, scale: 2 },
-    });
+    Plotly.react(this.stage, data, layout, { ...SETTINGS, toImageButtonOptions: { filename: this.key, scale: 2 } });
     if (!first) return;
     this.stage.on("plotly_relayout", (change) => this.looked(change));
     this.stage.on("plotly_doubleclick", () => this.choose({ view: "process" }));
@@ -335,7 +346,9 @@ class Plot {
   }
 
   fit() {
-    if (this.ground && this.stage.clientWidth) window.Plotly.Plots.resize(this.stage);
+    const { clientWidth: width, clientHeight: height } = this.stage;
+    const { width: w, height: h } = this.stage._fullLayout ?? {};
+    if (w && width && (w !== width || h !== height)) window.Plotly.Plots.resize(this.stage);
   }
 }
 
