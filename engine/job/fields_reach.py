@@ -14,6 +14,6 @@ REACH_FIELDS = (
     quantity("U_quality", "Expanded uncertainty expected of the quality", "reach", 0.0, 0.1, Entry(0.1, "%pt"),
              why="a wetness smaller than it cannot be told from none"),
     quantity("p_exhaust_lowest", "Lowest exhaust pressure to be had", "reach", 1e3, 40e5,
-             Entry(0.2, "bar", "absolute"), why="a condenser with a pump or an ejector sets it",
+             Entry(0.1, "bar", "absolute"), why="a condenser with a pump or an ejector sets it",
              hint="give the barometer's where there is no condenser"),
 )

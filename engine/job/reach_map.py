@@ -1,0 +1,132 @@
+"""How far a method reaches over two pressures, or over pressure and power: map, sections and the edges of both."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from engine.calorimeter import (
+    Status,
+    combined_quality,
+    exhaust_pressure_for,
+    least_electric_quality,
+    power_needed,
+    reach_map,
+)
+from engine.job.fields_modes import ELECTRIC, SEPARATING
+from engine.job.reach import ReachAssessment
+from engine.job.terms import Terms
+
+SIZE = 300  # points along each axis
+P_LINE = (1.2e5, 160e5)  # Pa
+P_EXHAUST = (0.05e5, 4e5)
+POWER = 5.0e5  # J per kg of sample at the top of the axis of power: more than the wetness of any line here takes
+LEVELS = (0.01, 0.02, 0.03, 0.04, 0.05, 0.06, 0.08, 0.10, 0.15, 0.20, 0.30, 0.40)
+
+
+@dataclass(frozen=True)
+class MapKey:
+    """Everything a map depends on, SI: maps of equal keys are the same, however the cases differ otherwise.
+
+    ``water_share`` and ``vessel_loss`` belong to a separator, ``sample_flow``, ``power_loss`` and ``p_heater``
+    (None: the line's) to a heater.
+    """
+
+    mode: str
+    superheat: float
+    terms: Terms
+    water_share: float = 0.0
+    vessel_loss: float = 0.0
+    sample_flow: float = 0.0
+    power_loss: float = 0.0
+    p_heater: float | None = None
+
+
+@dataclass(frozen=True)
+class WetnessMap:
+    """The greatest readable wetness, shape (ordinates, line pressures); NaN where nothing can be read.
+
+    The ordinate is the exhaust pressure [Pa], or the power [W] with a heater. ``dry_edge`` is, along the line
+    pressures, the ordinate at which dry steam is just readable: nothing reads beyond it (with a heater below it).
+    """
+
+    key: MapKey
+    p_line: np.ndarray
+    ordinate: np.ndarray
+    wetness: np.ndarray
+    dry_edge: np.ndarray
+
+    @property
+    def by_power(self) -> bool:
+        return self.key.mode == ELECTRIC
+
+
+@dataclass(frozen=True)
+class Section:
+    """The greatest readable wetness along one axis: readable and, below it, comfortable; NaN where nothing reads."""
+
+    along: np.ndarray
+    readable: np.ndarray
+    comfortable: np.ndarray
+
+
+def map_key(plan: ReachAssessment) -> MapKey:
+    """What the map of a case depends on."""
+    si, mode = plan.si, plan.case["mode"]
+    if mode == ELECTRIC:
+        return MapKey(mode, plan.least, plan.terms, sample_flow=si["sample_flow"],
+                      power_loss=si["power_loss"] or 0.0, p_heater=si["p_heater"])
+    if mode == SEPARATING:
+        return MapKey(mode, plan.least, plan.terms, si["water_share"], si["vessel_loss"] or 0.0)
+    return MapKey(mode, plan.least, plan.terms)
+
+
+def wetness_map(key: MapKey, size: int = SIZE) -> WetnessMap:
+    """The map for a key, a separator standing at line pressure."""
+    p_line = np.geomspace(*P_LINE, size)
+    if key.mode == ELECTRIC:
+        return _power_map(key, p_line, size)
+    p_exhaust = np.geomspace(*P_EXHAUST, size)
+    edge = exhaust_pressure_for(p_line, 1.0, key.superheat, **key.terms.arguments())
+    none = np.where(edge.status == Status.OK, edge.p_exhaust, 0.0)
+    return WetnessMap(key, p_line, p_exhaust, _throttled(key, p_line, p_exhaust, key.superheat), none)
+
+
+def _throttled(key: MapKey, p_line, p_exhaust, superheat: float) -> np.ndarray:
+    found = reach_map(p_line, p_exhaust, superheat, **key.terms.arguments())
+    wetness = np.where(found.status == Status.OK, found.wetness, np.nan)
+    if key.mode != SEPARATING:
+        return wetness
+    reads = np.isfinite(wetness)
+    x = combined_quality(np.broadcast_to(found.p_line, wetness.shape), np.where(reads, 1.0 - wetness, 1.0),
+                         water_share=key.water_share, vessel_loss=key.vessel_loss)
+    return np.where(reads, 1.0 - x, np.nan)
+
+
+def _power_map(key: MapKey, p_line: np.ndarray, size: int) -> WetnessMap:
+    p_heater = p_line if key.p_heater is None else np.minimum(p_line, key.p_heater)
+    power = key.power_loss + key.sample_flow * np.linspace(POWER / size, POWER, size)
+    edge = power_needed(p_line, 1.0, p_heater, key.sample_flow, key.superheat, power_loss=key.power_loss)
+    return WetnessMap(key, p_line, power, _heated(key, p_line, p_heater, power[:, None], key.superheat), edge)
+
+
+def _heated(key: MapKey, p_line, p_heater, power, superheat: float) -> np.ndarray:
+    x = least_electric_quality(p_line, p_heater, power, key.sample_flow, superheat, power_loss=key.power_loss)
+    return np.where(x <= 1.0, np.minimum(1.0 - x, 1.0), np.nan)
+
+
+def sections(plan: ReachAssessment, size: int = SIZE) -> tuple[Section, Section]:
+    """Along the line pressure at the exhaust (or power) of the case, and along the other axis at its line pressure."""
+    key, si = map_key(plan), plan.si
+    levels = (plan.least, plan.comfortable)
+    p_line = np.geomspace(*P_LINE, size)
+    if key.mode == ELECTRIC:
+        h = plan.wet.assessment.heating
+        power = key.power_loss + key.sample_flow * np.linspace(POWER / size, POWER, size)
+        p_heater = p_line if key.p_heater is None else np.minimum(p_line, key.p_heater)
+        return (Section(p_line, *(_heated(key, p_line, p_heater, h.power, level) for level in levels)),
+                Section(power, *(_heated(key, si["p_line"], h.p, power, level) for level in levels)))
+    p_exhaust = np.geomspace(*P_EXHAUST, size)
+    return (Section(p_line, *(_throttled(key, p_line, si["p_exhaust"], level)[0] for level in levels)),
+            Section(p_exhaust, *(_throttled(key, si["p_line"], p_exhaust, level)[:, 0] for level in levels)))
