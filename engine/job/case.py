@@ -10,12 +10,12 @@ from types import MappingProxyType
 from engine.calorimeter import leg_density, standard_pressure
 from engine.job.fields import FIELDS
 from engine.job.fields_path import BY_ALTITUDE
-from engine.job.rows import CHOICE, QUANTITY, TEXT, Entry, Field
+from engine.job.rows import CHOICE, QUANTITY, TABLE, TEXT, Entry, Field, Row
 from engine.steam.arrays import shortened
 from engine.steam.errors import Fault, InputError
 from engine.steam.units import G_STANDARD, P_STANDARD, UNITS, absolute_from_gauge, from_si, to_si
 
-Value = Entry | str | None
+Value = Entry | str | tuple[Row, ...] | None
 GAUGE, ABSOLUTE = BASES = "gauge", "absolute"
 T_LEG = 293.15  # K, water leg at the temperature of the room unless measured
 
@@ -111,7 +111,9 @@ class Resolved:
 def form_fault(field: Field, value: Value) -> Fault | None:
     """What keeps an entry from meaning anything: of the wrong kind, or in a unit or on a basis it cannot have."""
     label = field.label.lower()
-    if field.form == CHOICE:
+    if field.form == TABLE:
+        fits, limit = _is_table(field, value), f"a table of at most {field.most} rows"
+    elif field.form == CHOICE:
         fits, limit = value in field.options, "one of: " + ", ".join(field.options)
     elif field.form == TEXT:
         fits, limit = isinstance(value, str), "text"
@@ -129,26 +131,44 @@ def form_fault(field: Field, value: Value) -> Fault | None:
     return None if fits else Fault(field.label, _given(value), "", limit, name=field.name)
 
 
+def _is_table(field: Field, value: object) -> bool:
+    names = [column.name for column in field.columns]
+    return (isinstance(value, tuple) and len(value) <= field.most
+            and all(isinstance(row, Row) and [name for name, _ in row.cells] == names for row in value))
+
+
 def _given(value: object) -> str:
     if value is None or value == "":
         return "nothing"
     return value[:120] if isinstance(value, str) else shortened(value)
 
 
+def slots(case: Case) -> dict[str, tuple[Field, Value]]:
+    """Everything entered by its place, down to the cells of the tables, with the field that rules it."""
+    found = {name: (field, case[name]) for name, field in FIELDS.items()}
+    for name, field in FIELDS.items():
+        if field.form == TABLE and case[name] and _is_table(field, case[name]):
+            for number, row in enumerate(case[name], 1):
+                cells = (field.cell(number, column) for column in field.columns)
+                found |= {cell.name: (cell, value) for cell, (_, value) in zip(cells, row.cells, strict=True)}
+    return found
+
+
 def entry_faults(case: Case) -> list[Fault]:
     """Every entry that cannot be used, each looked at for itself."""
-    faults = {name: fault for name, field in FIELDS.items() if (fault := form_fault(field, case[name]))}
+    entered = slots(case)
+    faults = {place: fault for place, (field, value) in entered.items() if (fault := form_fault(field, value))}
     atmosphere = ("p_barometer", "altitude")
     for name in atmosphere:
         if name not in faults and (fault := entry_fault(FIELDS[name], case[name], 0.0)):
             faults[name] = fault
     known = not any(name in faults for name in (*atmosphere, "barometer_source"))
     p_barometer = barometer(case) if known else P_STANDARD
-    for name, field in FIELDS.items():
-        entered = field.form == QUANTITY and case[name] is not None and name not in atmosphere
-        if entered and name not in faults and (fault := entry_fault(field, case[name], p_barometer)):
-            faults[name] = fault
-    return [faults[name] for name in FIELDS if name in faults]
+    for place, (field, value) in entered.items():
+        limited = field.form == QUANTITY and value is not None and place not in atmosphere
+        if limited and place not in faults and (fault := entry_fault(field, value, p_barometer)):
+            faults[place] = fault
+    return [faults[place] for place in entered if place in faults]
 
 
 def faults_of(case: Case) -> list[Fault]:

@@ -11,7 +11,7 @@ import zlib
 from engine import __version__
 from engine.job.case import BLANK, Case, Value, entry_faults, faults_of
 from engine.job.fields import FIELDS
-from engine.job.rows import QUANTITY, Entry, Field
+from engine.job.rows import QUANTITY, TABLE, Entry, Field, Row
 from engine.steam.arrays import shortened
 from engine.steam.errors import Fault, InputError
 from engine.steam.units import ALIASES
@@ -32,6 +32,8 @@ def _as_json(value: Value):
     if isinstance(value, Entry):
         row = {"value": value.value, "unit": value.unit}
         return {**row, "basis": value.basis} if value.basis else row
+    if isinstance(value, tuple):  # a table; empty cells are left out
+        return [{name: _as_json(cell) for name, cell in row.cells if cell not in (None, "")} for row in value]
     return value
 
 
@@ -102,6 +104,31 @@ def _value(name: str, raw: object) -> Value:
     field = FIELDS.get(name)
     if field is None:
         raise _refusal("entry of the case", name, "an entry that this version knows")
+    return _table(field, raw) if field.form == TABLE else _single(field, raw)
+
+
+def _table(field: Field, raw: object) -> tuple[Row, ...]:
+    if not isinstance(raw, list) or len(raw) > field.most:
+        got = f"{len(raw)} rows" if isinstance(raw, list) else raw
+        raise _refusal(field.label, got, f"a list of at most {field.most} rows")
+    columns, rows, faults = {column.name: column for column in field.columns}, [], []
+    for number, cells in enumerate(raw, 1):
+        if not isinstance(cells, dict) or not set(cells) <= set(columns):
+            faults += _refusal(f"{field.label}, row {number}", cells, "cells by name: " + ", ".join(columns)).faults
+            continue
+        read = {}
+        for name, cell in cells.items():
+            try:
+                read[name] = _single(field.cell(number, columns[name]), cell)
+            except InputError as error:
+                faults += error.faults
+        rows.append(field.row(**read))
+    if faults:
+        raise InputError(*faults)
+    return tuple(rows)
+
+
+def _single(field: Field, raw: object) -> Value:
     if field.form == QUANTITY:
         return _entry(field, raw)
     if not isinstance(raw, str):

@@ -1,13 +1,18 @@
-"""What a row of the case table is: an entry's name, label, kind, limits, and what to do when they are broken."""
+"""What an entry of the case is: its name, label, form, limits, and what to do when they are broken.
+
+An entry is a quantity, a choice, free words, or a table; the columns of a table are entries
+themselves, so that one set of rules covers a single value and a thousand cells.
+"""
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
+from engine.steam.errors import Fault, InputError
 from engine.steam.quantities import QUANTITIES
 from engine.steam.units import UNITS
 
-QUANTITY, CHOICE, TEXT = "quantity", "choice", "text"
+QUANTITY, CHOICE, TEXT, TABLE = "quantity", "choice", "text", "table"
 
 
 @dataclass(frozen=True)
@@ -20,20 +25,52 @@ class Entry:
 
 
 @dataclass(frozen=True)
+class Row:
+    """One row of a table, as entered: ``row["T_exhaust"]``. Made by ``Field.row``."""
+
+    cells: tuple[tuple[str, Entry | str | None], ...]
+
+    def __getitem__(self, name: str) -> Entry | str | None:
+        return dict(self.cells)[name]
+
+    def with_(self, **changes: Entry | str | None) -> Row:
+        """A copy with some cells changed."""
+        return Row(tuple((name, changes.get(name, value)) for name, value in self.cells))
+
+
+@dataclass(frozen=True)
 class Field:
-    """One row: ``low`` and ``high`` are SI and absolute; ``blank`` is what a new case holds (None: nothing)."""
+    """One entry: ``low`` and ``high`` are SI and absolute; ``blank`` is what a new case holds (None: nothing).
+
+    A table has ``columns``, which are fields, and at most ``most`` rows.
+    """
 
     name: str
     label: str
     form: str
     group: str
-    blank: Entry | str | None = None
+    blank: Entry | str | tuple[Row, ...] | None = None
     kind: str = ""
     low: float = 0.0
     high: float = 0.0
     why: str = ""
     hint: str = ""
     options: tuple[str, ...] = ()
+    columns: tuple[Field, ...] = ()
+    most: int = 0
+
+    def row(self, **cells: Entry | str | None) -> Row:
+        """A row of this table; cells that are not given hold what a new one does."""
+        unknown = set(cells) - {column.name for column in self.columns}
+        if unknown:
+            raise InputError(Fault(f"columns of {self.label.lower()}", ", ".join(sorted(unknown)), "",
+                                   "one of: " + ", ".join(column.name for column in self.columns), name=self.name))
+        return Row(tuple((column.name, cells.get(column.name, column.blank)) for column in self.columns))
+
+    def cell(self, number: int, column: Field) -> Field:
+        """The column as the field of one cell, so that a refusal names the place; rows count from 1."""
+        return replace(column, name=f"{self.name}[{number}].{column.name}",
+                       label=f"{self.label}, row {number}, {column.label.lower()}")
 
 
 def quantity(name: str, label: str, group: str, low: float, high: float, blank: Entry | None = None, *,
@@ -52,3 +89,8 @@ def choice(name: str, label: str, group: str, options: tuple[str, ...], hint: st
 def text(name: str, label: str, group: str) -> Field:
     """A row for free words."""
     return Field(name, label, TEXT, group, "")
+
+
+def table(name: str, label: str, group: str, columns: tuple[Field, ...], most: int, hint: str = "") -> Field:
+    """A table that a new case holds empty."""
+    return Field(name, label, TABLE, group, (), hint=hint, columns=columns, most=most)

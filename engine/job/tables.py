@@ -112,4 +112,6 @@ def _quality(a: Assessment) -> str:
 
 
 def _entry_text(value) -> str:
+    if isinstance(value, tuple):
+        return f"{len(value)} row{'' if len(value) == 1 else 's'}"
     return describe(value) if isinstance(value, Entry) else (value or "")

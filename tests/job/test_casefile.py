@@ -12,7 +12,7 @@ from engine.job.case import BLANK, Case, as_entered, faults_of
 from engine.job.casefile import FORMAT, LISTED, MAX_BYTES, MAX_TEXT, SCHEMA, from_json, from_link, to_json, to_link
 from engine.job.demo import DEMO
 from engine.job.fields import FIELDS
-from engine.job.rows import CHOICE, QUANTITY, TEXT, Entry
+from engine.job.rows import CHOICE, QUANTITY, TABLE, TEXT, Entry
 from engine.steam.errors import InputError
 from engine.steam.units import UNITS
 
@@ -51,7 +51,9 @@ def _entries(field):
 
 
 _PRINTED = st.text(st.characters(exclude_categories=["Cs"]), max_size=40)
-_VALUES = {QUANTITY: _entries, CHOICE: lambda field: st.sampled_from(field.options), TEXT: lambda field: _PRINTED}
+_VALUES = {QUANTITY: _entries, CHOICE: lambda field: st.sampled_from(field.options), TEXT: lambda field: _PRINTED,
+           TABLE: lambda field: st.lists(st.builds(field.row, **{
+               column.name: _VALUES[column.form](column) for column in field.columns}), max_size=3).map(tuple)}
 CASES = st.fixed_dictionaries({}, optional={name: _VALUES[field.form](field) for name, field in FIELDS.items()})
 
 
