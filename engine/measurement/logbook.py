@@ -221,7 +221,7 @@ def _propose(source: Source, layout: Layout) -> Proposal:
 def _worked(source: Source, mapping: Mapping) -> Iterator[Worked]:
     """The blocks of a log, parsed and worked at, in their order."""
     if mapping.delimiter:
-        blocks = text_blocks(source, mapping.encoding, mapping.first_line)
+        blocks = text_blocks(source, mapping.encoding, mapping.delimiter, mapping.first_line)
         return in_order(lambda block: work(parse(block, mapping), mapping), blocks)
     return (work(block, mapping) for block in sheet_table(source, mapping))
 

@@ -143,8 +143,9 @@ class TextBlock(NamedTuple):
     last: bool
 
 
-def text_blocks(source: Source, encoding: str, first_line: int = 1, size: int = BLOCK_BYTES) -> Iterator[TextBlock]:
-    """The log from ``first_line`` (from 1) on, as UTF-8 in blocks of whole lines."""
+def text_blocks(source: Source, encoding: str, delimiter: str, first_line: int = 1,
+                size: int = BLOCK_BYTES) -> Iterator[TextBlock]:
+    """The log from ``first_line`` (from 1) on, as UTF-8 in blocks of whole rows."""
     decoder = _Recoder(encoding)
     rest, done, skip = b"", 0, first_line - 1
     whole_lines = encoding in ("utf-8", "utf-8-sig", "cp1252")  # a line feed is one byte there
@@ -156,7 +157,7 @@ def text_blocks(source: Source, encoding: str, first_line: int = 1, size: int = 
             last = done >= source.size or not raw
             text = decoder.recode(raw, last)
             text = rest + text if rest else text
-            cut = len(text) if last else _last_line_end(text)
+            cut = len(text) if last else _end_of_rows(text, delimiter)
             rest, text = text[cut:], text[:cut]
             if len(rest) > max(size, LONGEST_LINE):
                 raise refuse(source.name, f"a line of more than {len(rest) >> 20} MiB",
@@ -178,15 +179,24 @@ def _without_lines(text: bytes, count: int) -> tuple[int, bytes]:
     return count, text[at:]
 
 
-def _last_line_end(text: bytes) -> int:
-    """End of the last whole line, moved back to before a quoted cell that is still open."""
+def _end_of_rows(text: bytes, delimiter: str) -> int:
+    """End of the last whole line, moved back to before a row whose quoted cell is still open there.
+
+    Where rows start is not known in the middle of a text, but a few lines on they are in step again.
+    """
     cut = text.rfind(b"\n") + 1
-    if b'"' in text and text.count(b'"', 0, cut) % 2:
-        earlier = cut
-        for _ in range(QUOTE_LINES):
-            earlier = text.rfind(b"\n", 0, max(earlier - 1, 0)) + 1
-            if earlier and text.count(b'"', 0, earlier) % 2 == 0:
-                return earlier
+    start = cut
+    for _ in range(2 * QUOTE_LINES):
+        start = text.rfind(b"\n", 0, max(start - 1, 0)) + 1
+    if text.find(b'"', start, cut) < 0:
+        return cut
+    lines = text[start:cut].decode("utf-8", "replace").split("\n")[:-1]
+    i = 0
+    while i < len(lines):
+        _, count, is_open = _row_at(lines, i, delimiter)
+        if is_open and count < QUOTE_LINES:
+            return start + len("\n".join(lines[:i]).encode()) + (i > 0)
+        i += 1 if is_open else count
     return cut
 
 
@@ -248,28 +258,32 @@ def split_rows(lines: list[str], delimiter: str) -> Iterator[tuple[int, list[str
     """
     i = 0
     while i < len(lines):
-        line = lines[i]
-        if '"' not in line:
-            yield i, line.split(delimiter)
-            i += 1
-            continue
-        for count in range(1, QUOTE_LINES + 1):
-            text = "\n".join(lines[i:i + count])
-            cells = _quoted(text, delimiter)
-            if cells is not None or i + count >= len(lines):
-                break
-        yield i, cells
-        i += count if cells is not None else 1
+        cells, count, is_open = _row_at(lines, i, delimiter)
+        yield i, None if is_open else cells
+        i += 1 if is_open else count
 
 
-def _quoted(text: str, delimiter: str) -> list[str] | None:
+def _row_at(lines: list[str], i: int, delimiter: str) -> tuple[list[str], int, bool]:
+    """(cells, lines it takes, whether its quote is still open after them) of the row that starts at ``lines[i]``."""
+    line = lines[i]
+    if '"' not in line:
+        return line.split(delimiter), 1, False
+    for count in range(1, min(QUOTE_LINES, len(lines) - i) + 1):
+        cells, is_open = _quoted("\n".join(lines[i:i + count]), delimiter)
+        if not is_open:
+            break
+    if cells is None and count == 1 and not is_open:
+        cells = line.split(delimiter)  # quotes that are inch signs or the like: they quote nothing
+    return cells or [], count, cells is None
+
+
+def _quoted(text: str, delimiter: str) -> tuple[list[str] | None, bool]:
+    """(cells, whether a quote is still open); cells None where the quotes make no sense."""
     try:
         rows = list(csv.reader([text], delimiter=delimiter, skipinitialspace=True, strict=True))
-    except csv.Error:  # an open quote, or text after a closing one: only the first is worth more lines
-        if text.count('"') % 2 == 0:
-            return text.split(delimiter)
-        return None
-    return rows[0] if len(rows) == 1 else None
+    except csv.Error as error:
+        return None, "unexpected end" in str(error)
+    return (rows[0] if len(rows) == 1 else None), False
 
 
 def find_delimiter(lines: list[str], source: str) -> str:
