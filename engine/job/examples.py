@@ -30,6 +30,7 @@ HEATING_STEAM = Case({
     "wetness": Entry(3.0, "%"), "wetness_low": Entry(1.0, "%"), "wetness_high": Entry(3.0, "%"),
     "sample_flow": Entry(19.0, "kg/h"), "line_bore": Entry(20.9, "mm"), "exhaust_bore": Entry(40.9, "mm"),
     "heat_loss_method": BY_CONDUCTANCE, "conductance": Entry(0.18, "W/K"), "T_ambient": Entry(20.0, "°C"),
+    "U_thermometer": Entry(0.5, "K"),
 })
 
 HEATING_STEAM_DRY = HEATING_STEAM.with_(
@@ -60,6 +61,7 @@ WET_LINE = Case({
     "wetness": Entry(12.0, "%"), "wetness_low": Entry(10.0, "%"), "wetness_high": Entry(14.0, "%"),
     "sample_flow": Entry(25.0, "kg/h"), "line_bore": Entry(15.7, "mm"), "exhaust_bore": Entry(26.6, "mm"),
     "heat_loss_method": BY_CONDUCTANCE, "conductance": Entry(0.18, "W/K"), "T_ambient": Entry(20.0, "°C"),
+    "U_thermometer": Entry(0.5, "K"),
 })
 
 WET_LINE_READ = Case({
@@ -70,7 +72,7 @@ WET_LINE_READ = Case({
     "T_exhaust": Entry(112.3, "°C"),
     "water_mass": Entry(0.9, "kg"), "weighed_mass": Entry(9.1, "kg"), "vessel_loss": Entry(0.0, "kJ/kg"),
     "wetness": Entry(12.0, "%"), "wetness_low": Entry(10.0, "%"), "wetness_high": Entry(14.0, "%"),
-    "heat_loss_method": NONE,
+    "heat_loss_method": NONE, "U_thermometer": Entry(0.5, "K"),
 })
 
 HEATED = Case({
@@ -80,6 +82,7 @@ HEATED = Case({
     "p_line": Entry(6.0, "bar", "absolute"), "T_heater": Entry(178.8, "°C"), "sample_flow": Entry(12.0, "kg/h"),
     "power": Entry(860.0, "W"), "power_loss": Entry(7.4, "W"),
     "wetness": Entry(10.0, "%"), "wetness_low": Entry(8.0, "%"), "wetness_high": Entry(10.5, "%"),
+    "U_thermometer": Entry(0.5, "K"),
 })
 
 EXAMPLES: dict[str, Case] = {str(case["title"]): case for case in (

@@ -7,6 +7,7 @@ velocities, and cannot say anything else than the answer of that wetness does.
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 from functools import cached_property
 
@@ -24,11 +25,13 @@ from engine.job.case import Case, Resolved, describe, resolve
 from engine.job.fields import FIELDS
 from engine.job.fields_modes import ELECTRIC
 from engine.job.fields_path import EXPECTED
+from engine.job.instruments import thermometer_doubts
 from engine.job.rows import Entry
 from engine.job.terms import Terms, terms_at
 from engine.steam import saturation_temperature
 from engine.steam.errors import Fault, InputError
 
+AS_ENTERED, BY_INSTRUMENT, NOT_STATED = "as entered", "by the class of the thermometer", "not stated"
 _MOST = 1.999  # a throttled quality this far above 1 only says that nothing can be read
 
 
@@ -72,6 +75,7 @@ class ReachAssessment:
     least: float
     comfortable: float
     U: float
+    U_from: str
     terms: Terms
 
     @property
@@ -95,11 +99,11 @@ def assess_reach(case: Case) -> ReachAssessment:
     >>> from engine.job.demo import DEMO
     >>> plan = assess_reach(DEMO)
     >>> plan.verdict.name, round(plan.wetness_most, 4), round(plan.wet.margin, 1)
-    ('WHOLE', 0.0434, 18.1)
+    ('WHOLE', 0.0438, 18.5)
     """
     si = resolve(case.with_(question=EXPECTED))
     _check_range(case, si)
-    U = si["U_thermometer"]
+    U, U_from = thermometer_U(case, si)
     wet = assess(_planned(case, si, si["wetness_high"], U))
     if case["mode"] == ELECTRIC and si["power"] is None:  # the same power for the whole range: that of the wet end
         case = case.with_(power=Entry(wet.heating.power, "W"))
@@ -109,13 +113,24 @@ def assess_reach(case: Case) -> ReachAssessment:
     _, x_comfortable = _limit(case, wet, comfortable)
     return ReachAssessment(case, si, _verdict(dry, wet), _end(dry, si["wetness_low"], U),
                            _end(wet, si["wetness_high"], U), 1.0 - x_least, 1.0 - x_comfortable, least, comfortable, U,
-                           terms)
+                           U_from, terms)
+
+
+def thermometer_U(case: Case, si: Resolved) -> tuple[float, str]:
+    """Expanded uncertainty of the deciding thermometer [K], k = 2, and where it comes from."""
+    if si["U_thermometer"] is not None:
+        return si["U_thermometer"], AS_ENTERED
+    p = si["p_exhaust"] if case["mode"] != ELECTRIC else si["p_heater"] or si["p_line"]
+    doubts = thermometer_doubts(case, si, saturation_temperature(p) + si["comfortable_superheat"])
+    if doubts.missing:
+        return 0.0, NOT_STATED
+    return 2.0 * math.hypot(*(component.u for component in doubts.components)), BY_INSTRUMENT
 
 
 def wettest(case: Case) -> Assessment:
     """The wettest steam expected, with the thermometer's uncertainty on top of both limits. Raises InputError."""
     si = resolve(case.with_(question=EXPECTED))
-    return assess(_planned(case, si, si["wetness_high"], si["U_thermometer"]))
+    return assess(_planned(case, si, si["wetness_high"], thermometer_U(case, si)[0]))
 
 
 def _check_range(case: Case, si: Resolved) -> None:

@@ -49,10 +49,7 @@ class Way:
     case: Case | None = None
     thin: bool = False
     why_not: str = ""
-
-    @property
-    def price(self) -> str:
-        return PRICES[self.kind]
+    price: str = ""
 
     @property
     def feasible(self) -> bool:
@@ -62,7 +59,8 @@ class Way:
 def ways(plan: ReachAssessment) -> tuple[Way, ...]:
     """The ways out for a case, what can be done first; empty where the whole range reads comfortably."""
     if plan.verdict is Readability.WHOLE:
-        return (_other(plan),) if plan.indistinct else ()
+        other = _other(plan)
+        return (replace(other, price=_price(plan, other)),) if plan.indistinct else ()
     found = {}
     for superheat in (plan.comfortable, plan.least):
         for way in _BY_METHOD[plan.case["mode"]](plan, superheat):
@@ -70,7 +68,15 @@ def ways(plan: ReachAssessment) -> tuple[Way, ...]:
             if way.kind not in found or (way.feasible and not found[way.kind].feasible):
                 found[way.kind] = way
     found[WayKind.OTHER] = _other(plan)
-    return tuple(sorted(found.values(), key=lambda way: _rank(plan, way)))
+    priced = (replace(way, price=_price(plan, way)) for way in found.values())
+    return tuple(sorted(priced, key=lambda way: _rank(plan, way)))
+
+
+def _price(plan: ReachAssessment, way: Way) -> str:
+    """What it costs, in words; an exhaust into the open air needs no condenser."""
+    if way.kind is WayKind.EXHAUST and way.numbers.get("p_exhaust", 0.0) >= plan.si.p_barometer:
+        return "A shorter or wider exhaust, which makes less back pressure."
+    return PRICES[way.kind]
 
 
 def _rank(plan: ReachAssessment, way: Way) -> tuple:
