@@ -12,7 +12,9 @@ from engine.job.fields_path import PATH_FIELDS
 from engine.job.fields_reach import REACH_FIELDS
 from engine.job.fields_readings import READING_FIELDS
 from engine.job.fields_rig import RIG_FIELDS
+from engine.job.fields_runsheet import RUNSHEET_FIELDS
 from engine.job.rows import Field
 
-_ROWS = (*PATH_FIELDS, *MODE_FIELDS, *REACH_FIELDS, *RIG_FIELDS, *INSTRUMENT_FIELDS, *READING_FIELDS)
+_ROWS = (*PATH_FIELDS, *MODE_FIELDS, *REACH_FIELDS, *RIG_FIELDS, *INSTRUMENT_FIELDS, *READING_FIELDS,
+         *RUNSHEET_FIELDS)
 FIELDS: dict[str, Field] = {row.name: row for row in _ROWS}
