@@ -203,7 +203,7 @@ def _thermometer(point: Point, t: Thermometer) -> Found:
 
 def _sampling(point: Point, nozzle: Part[Nozzle]) -> Found:
     entry = nozzle.value.entry if nozzle else nozzle
-    name = "Entry of the nozzle"
+    name = "Nozzle entry"
     if entry:
         e = entry.value
         ratio = (e.velocity_ratio, "number", 2)

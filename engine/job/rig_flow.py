@@ -168,7 +168,7 @@ def _nozzle(point: Point) -> Nozzle:
     ports = part(si, ("ports", "port_bore"), lambda: si["ports"] * np.pi / 4 * si["port_bore"] ** 2)
     drops = np.geomspace(0.3e-6, 300e-6, 61)
 
-    def through(port_area: float, drop) -> SampleBias:
+    def through(port_area, drop) -> SampleBias:
         return sample_bias(sample_flow=drawn, port_area=port_area, port_bore=si["port_bore"], drop_diameter=drop, **rig)
 
     def entry() -> Entry:
@@ -176,13 +176,13 @@ def _nozzle(point: Point) -> Nozzle:
         error = float(sampling_error(point, b.aspiration))
         return Entry(b.port_velocity, b.velocity_ratio, b.stokes, b.aspiration, error)
 
-    curve, compared = None, ()
+    curve, compared = None, []
     if ports and area:
-        curve = sampling_error(point, through(ports.value, drops).aspiration)
-        compared = tuple(sampling_error(point, through(ratio * area.value, drops).aspiration) for ratio in RATIOS)
+        areas = np.array([ports.value, *(ratio * area.value for ratio in RATIOS)])
+        curve, *compared = sampling_error(point, through(areas[:, np.newaxis], drops).aspiration)
     entered = part(si, ("sample_flow", "ports", "port_bore", "drop_diameter"), entry)
     return Nozzle(pipe_velocity(si["line_flow"], si["pipe_bore"], line["p_line"], x), area, wanted if area else area,
-                  ports, entered, drops, curve, compared)
+                  ports, entered, drops, curve, tuple(compared))
 
 
 def sampling_error(point: Point, aspiration, wall_film: float = 0.0):

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 from engine.calorimeter import WEATHER_HALF_WIDTH
 from engine.job.fields_path import BY_ALTITUDE, BY_CONDUCTANCE, BY_KG, BY_NORMAL, BY_TWO_FLOWS
 from engine.job.fields_rig import WEIGHED
@@ -19,8 +21,8 @@ _METHODS = {BY_GEOMETRY: "Dimensions and lagging", BY_CONDUCTANCE: "Conductance 
 def points(size: float, *, signed: bool = False) -> str:
     """A size in percentage points, in the digits it deserves.
 
-    >>> points(-0.000985), points(0.0000123), points(1e-9), points(-0.0021, signed=True)
-    ('0.098 %pt', '0.001 %pt', 'under 0.001 %pt', '-0.21 %pt')
+    >>> points(-0.000985), points(0.0000102), points(1e-9), points(-0.0021, signed=True)
+    ('0.099 %pt', '0.001 %pt', 'under 0.001 %pt', '-0.21 %pt')
     """
     value = 100.0 * size
     if abs(value) < 0.0005:
@@ -29,27 +31,30 @@ def points(size: float, *, signed: bool = False) -> str:
 
 
 def headline(rig: RigAssessment) -> str:
-    """What matters most, in a sentence or two."""
+    """What matters most, in one sentence."""
     if not rig.sized:
-        return "Nothing can be sized yet. Start with the orifice and the exhaust pipe."
-    first, left = rig.sized[0], [e for e in rig.sized if not e.corrected]
-    words = f"What matters most here: {_small(first.name)}, {points(first.size)}, "
-    if not first.corrected:
-        words += f"still in the answer: {_reads(first)}."
-    elif left:
-        words += (f"already taken out of the answer. Of what is left in it, {_small(left[0].name)} is largest: "
-                  f"{points(left[0].size)}, {_reads(left[0])}.")
-    else:
-        words += "already taken out of the answer. Nothing else is left in it."
-    return words
+        return "Nothing can be sized yet: describe the orifice and the exhaust pipe first."
+    first = rig.sized[0]
+    where = "already taken out of the answer" if first.corrected else f"still in the answer: {_reads(first)}"
+    return f"What matters most here: {_small(first.name)}, {points(first.size)}, {where}."
 
 
-def together(rig: RigAssessment) -> str:
-    """The sum of what is left in the answer, where there is more than one such effect."""
-    left = [e.size for e in rig.sized if not e.corrected and not e.either_way]
-    if len(left) < 2:
-        return ""
-    return f"Together, what is left makes the quality {points(sum(left), signed=True)} wrong if every entry is right."
+def left_words(rig: RigAssessment) -> str:
+    """What the answer still has in it: the largest such effect, and all of them together."""
+    left = [e for e in rig.sized if not e.corrected]
+    if not left:
+        return "Nothing else is left in the answer." if rig.sized else ""
+    words = [f"Of what is left in the answer, the largest is {_small(left[0].name)}: {points(left[0].size)}, "
+             f"{_reads(left[0])}."] if rig.sized[0].corrected else []
+    known = [e.size for e in left if not e.either_way]
+    if len(known) > 1:
+        total = sum(known)
+        reads = "wetter" if total < 0 else "drier"
+        words.append(f"All that is left together makes the steam read {points(total)} {reads} than it is, if every "
+                     "entry is right.")
+    if either := [e.name for e in left if e.either_way]:
+        words.append(f"Not in that sum, since it may go either way: {', '.join(map(_small, either))}.")
+    return " ".join(words)
 
 
 def _small(name: str) -> str:
@@ -104,11 +109,16 @@ def _bore(si: float, units: UnitSystem) -> str:
     return units.text(si, "length", {"SI": 2, "US": 4}[units.name])
 
 
-def flow_words(rig: RigAssessment) -> str:
-    """What the weighed flow says about the orifice."""
+def flow_words(rig: RigAssessment, units: UnitSystem) -> str:
+    """What the weighed flow says about the orifice, or that it should be weighed."""
     f = rig.flow.value
-    if f is None or f.implied is None or rig.case["flow_source"] != WEIGHED:
-        return "Weigh the condensate: the coefficient out of a table is what is known least." if f else ""
+    if f is None:
+        return ""
+    if f.implied is None or rig.case["flow_source"] != WEIGHED:
+        moved = f.implied is not None and abs(f.orifice.computed / f.orifice.sample_flow - 1.0) > 2e-3
+        return ("Weigh the condensate: a coefficient out of a table is what is known least." if not moved else
+                f"The flow in the case was taken over earlier; the orifice now passes "
+                f"{units.text(f.orifice.computed, 'mass flow', 2)}.")
     share = f.implied / rig.point.si["discharge"]
     if f.implied > 1.05:
         return "A coefficient well above 1 cannot be: check the bore, the line pressure and the weighing."
@@ -154,6 +164,36 @@ def _reach(x: float | None) -> str | None:
     return None if x is None else f"{x:.4f}" if x <= 1 else "none"
 
 
+def exhaust_words(rig: RigAssessment, units: UnitSystem) -> str:
+    """What is wrong with the exhaust, if anything."""
+    e = rig.exhaust.value
+    if e is None:
+        return ""
+    words = []
+    if e.kinetic_quality > rig.point.si["kinetic_error"]:
+        words.append(f"The exhaust is too narrow for this flow: its kinetic energy is worth "
+                     f"{points(e.kinetic_quality)}. A bore of {units.text(e.least_bore, 'length')} would do.")
+    if e.pipe and e.pipe.value.choked:
+        words.append("The open end is choked: the pipe is far too narrow.")
+    if e.superheat is not None and e.superheat_piped is not None and e.superheat - e.superheat_piped > 1.0:
+        words.append(f"By its back pressure the pipe costs {units.text(e.superheat - e.superheat_piped, 'difference')} "
+                     "of the superheat the case counts on.")
+    return " ".join(words) or "Velocity and back pressure are small here."
+
+
+def nozzle_words(rig: RigAssessment, units: UnitSystem) -> str:
+    """What the ports do to the sample."""
+    n = rig.nozzle.value
+    if n is None or not n.entry:
+        return ""
+    e = n.entry.value
+    if abs(e.velocity_ratio - 1.0) < 0.02:
+        return "The ports draw at the velocity of the line."
+    more, reads = ("more", "wetter") if e.velocity_ratio > 1.0 else ("fewer", "drier")
+    return (f"The ports draw {'slower' if e.velocity_ratio > 1.0 else 'faster'} than the line flows: they collect "
+            f"{more} drops than belong to the sample, and the steam reads {reads} than it is.")
+
+
 def nozzle_rows(rig: RigAssessment, units: UnitSystem) -> list[Row]:
     """Line velocity, the ports wanted and the ports there are."""
     n = rig.nozzle.value
@@ -178,33 +218,33 @@ def nozzle_rows(rig: RigAssessment, units: UnitSystem) -> list[Row]:
 
 
 def loss_rows(rig: RigAssessment, units: UnitSystem) -> list[dict[str, str]]:
-    """The heat loss by every method, side by side."""
+    """The heat loss by every method, side by side; ● is the one in the answer."""
     rows = []
     for method, words in _METHODS.items():
         loss, chosen = rig.losses[method], rig.case["heat_loss_method"] == method
+        if method == BY_KG and not chosen:  # nothing but what someone else found
+            continue
         mark = "● " if chosen else ""
         if not loss:
-            blank = dict.fromkeys(("Heat loss", "In the reading", "In the quality", "UA"), "–")
-            rows.append({"Method": mark + words, **blank, "": loss.trouble})
+            rows.append({"Method": mark + words, "Heat loss": loss.trouble, "In reading and quality": "–", "UA": "–"})
             continue
         v = loss.value
         rows.append({"Method": mark + words, "Heat loss": units.text(v.heat_loss, "enthalpy", 2),
-                     "In the reading": units.text(v.kelvin, "difference", 2), "In the quality": points(v.quality),
-                     "UA": "–" if v.conductance is None else units.text(v.conductance, "conductance"),
-                     "": "in the answer" if chosen else ""})
+                     "In reading and quality": f"{units.text(v.kelvin, 'difference', 2)}, {points(v.quality)}",
+                     "UA": "–" if v.conductance is None else units.text(v.conductance, "conductance")})
     return rows
 
 
-def geometry_rows(rig: RigAssessment, units: UnitSystem) -> list[Row]:
-    """What the conductance is made of."""
+def geometry_words(rig: RigAssessment, units: UnitSystem) -> str:
+    """What the conductance by dimensions and lagging is made of."""
     g = rig.geometry.value
     if g is None:
-        return []
-    rows = [("UA of the body", units.text(g.body, "conductance"))]
+        return ""
+    parts = f"By dimensions and lagging the body has UA = {units.text(g.body, 'conductance')}"
     if g.sampling is not None:
-        rows += [("UA of the sampling line", units.text(g.sampling, "conductance")),
-                 ("Both, by the exhaust's temperature difference", units.text(g.whole, "conductance"))]
-    return [*rows, ("Wall inside the body", units.text(g.T_wall, "temperature"))]
+        parts += (f" and the sampling line {units.text(g.sampling, 'conductance')}; as the line's steam is hotter, both "
+                  f"count as {units.text(g.whole, 'conductance')}")
+    return f"{parts}. The wall inside the body stands at {units.text(g.T_wall, 'temperature')}."
 
 
 def thermometer_rows(rig: RigAssessment, units: UnitSystem) -> list[dict[str, str]]:
@@ -219,12 +259,12 @@ def thermometer_rows(rig: RigAssessment, units: UnitSystem) -> list[dict[str, st
         size = sizes[name].size
         rows.append({"Error": name, "Reading − truth": units.text(error.value, "difference", 2) if error else "–",
                      "In the quality": "–" if size is None else points(size, signed=True),
-                     "": error.trouble or sizes[name].words(units)})
+                     "Note": error.trouble or sizes[name].words(units)})
     e = sizes["Velocity at the thermometer"]
     rows.append({"Error": "Recovery in the moving steam",
                  "Reading − truth": units.text(t.stream.value.of_total, "difference", 2) if t.stream else "–",
                  "In the quality": "–" if e.size is None else points(e.size, signed=True),
-                 "": t.stream.trouble or (TAKEN if e.corrected else LEFT)})
+                 "Note": t.stream.trouble or (TAKEN if e.corrected else LEFT)})
     return rows
 
 
@@ -275,3 +315,18 @@ def gauge_rows(rig: RigAssessment, units: UnitSystem) -> list[Row]:
         rows.append(("Standard altitude of that pressure", f"{height:.0f} {length}"))
     leg = [e.in_its_own_unit(units) for e in rig.effects if e.name == "Water leg of the gauge"]
     return [*rows, ("Water leg of the line gauge", leg[0] if leg else "none")]
+
+
+def comparison_rows(named: Sequence[tuple[str, RigAssessment]], units: UnitSystem) -> list[dict[str, str]]:
+    """The effects of several rigs side by side, in the order of the first."""
+    names = dict.fromkeys(e.name for _, rig in named for e in rig.effects)
+    found = [(title, {e.name: e for e in rig.effects}) for title, rig in named]
+    flow = {title: units.text(rig.point.flow, "mass flow", 2) for title, rig in named}
+    return [{"": "Sample flow", **flow}, *({"": name, **{title: _cell(of.get(name)) for title, of in found}}
+                                           for name in names)]
+
+
+def _cell(e: Effect | None) -> str:
+    if e is None or e.size is None:
+        return "–"
+    return f"{points(e.size)} {e.direction} {(TAKEN if e.corrected else LEFT)[0]}"

@@ -33,7 +33,8 @@ SLIDERS: dict[str, dict[str, Range]] = {
 _STEPS = {"bar": 0.01, "psi": 0.1, "°C": 0.1, "°F": 0.1, "%": 0.01, "1": 0.01, "mm": 0.1, "in": 0.01, "kPa": 0.1,
           "inHg": 0.01, "m": 0.1, "ft": 0.1, "m/s": 0.5, "ft/s": 1.0, "kg/h": 0.1, "lb/h": 0.1, "W/K": 0.01,
           "Btu/(h °F)": 0.01, "kJ/kg": 0.1, "Btu/lb": 0.1, "K": 0.5,
-          "W": 1.0, "%pt": 0.01, "kg": 0.01, "lb": 0.01, "L": 0.01, "in³": 1.0}
+          "W": 1.0, "%pt": 0.01, "kg": 0.01, "lb": 0.01, "L": 0.01, "in³": 1.0,
+          "µm": 1.0, "t/h": 0.1, "min": 1.0}
 
 
 def slider(name: str) -> None:
@@ -54,7 +55,8 @@ def slider(name: str) -> None:
         number(name, label_hidden=True)
 
 
-def number(name: str, *, help: str | None = None, label_hidden: bool = False) -> None:
+def number(name: str, *, help: str | None = None, label_hidden: bool = False,
+           step: float | None = None) -> None:
     """An exact entry, in the reader's units; empty where the case has nothing and needs nothing."""
     field, entry, unit = FIELDS[name], session.shown_entry(name), session.display_unit(name)
     key = f"exact {name} {unit}"
@@ -67,7 +69,7 @@ def number(name: str, *, help: str | None = None, label_hidden: bool = False) ->
         return field.blank if value is None else Entry(float(value), unit, basis_now)
 
     session.mirror(key, None if entry is None else entry.value)
-    st.number_input(named, value=None, step=_STEPS.get(unit, 0.1), format="%.7g", key=key,
+    st.number_input(named, value=None, step=step or _STEPS.get(unit, 0.1), format="%.7g", key=key,
                     help=help or field.hint or None, on_change=session.callback(name, key, read),
                     label_visibility="collapsed" if label_hidden else "visible")
 

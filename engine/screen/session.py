@@ -141,6 +141,13 @@ _ENTRY_UNITS = {
     "water_share": {"SI": "%", "US": "%"},
     "power": {"SI": "W", "US": "W"},
     "power_loss": {"SI": "W", "US": "W"},
+    "exhaust_length": {"SI": "m", "US": "ft"},
+    "roughness": {"SI": "µm", "US": "µm"},
+    "kinetic_error": {"SI": "%pt", "US": "%pt"},
+    "line_flow": {"SI": "t/h", "US": "lb/h"},
+    "drop_diameter": {"SI": "µm", "US": "µm"},
+    "wall_film": {"SI": "%", "US": "%"},
+    "sampling_length": {"SI": "m", "US": "ft"},
 }
 
 

@@ -14,7 +14,7 @@ _CSS = """
 .st-key-casebar {border-bottom: 1px solid var(--st-border-color-light, rgba(128,128,128,.3)); padding-bottom: .4rem;}
 .st-key-answer {min-height: 8.5rem;}
 .st-key-answer h3 {padding: 0 0 .3rem 0;}
-[data-testid="stMainBlockContainer"] {padding-top: 3.2rem; padding-bottom: 3rem;}
+[data-testid="stMainBlockContainer"] {padding-top: 4.5rem; padding-bottom: 3rem;}
 .legends {font-size: .9rem; line-height: 1.7;}
 .legend {white-space: nowrap; margin-right: 1.6em;}
 .legend i {display: inline-block; width: 2.2em; vertical-align: middle; margin-right: .5em;}
