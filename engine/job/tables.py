@@ -4,15 +4,18 @@ from __future__ import annotations
 
 import csv
 import io
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
+from functools import partial
 
 from engine.job.answer import SHAPES, percent_points, quality_text
 from engine.job.assessment import Assessment, Verdict
-from engine.job.case import describe
+from engine.job.case import Value, describe
 from engine.job.fields import FIELDS
-from engine.job.rows import Entry
+from engine.job.rows import TEXT, Entry
 from engine.steam.units import UnitSystem
 
+ABSENT = "–"  # stands where there is nothing to show
+FORMULA = tuple("=+-@\t\n")  # what a spreadsheet takes for the beginning of a formula
 _STATE_COLUMNS = (("p", "pressure", "p"), ("T", "temperature", "T"), ("h", "enthalpy", "h"), ("s", "entropy", "s"),
                   ("v", "specific volume", "v"), ("velocity", "velocity", "c"))
 
@@ -49,7 +52,10 @@ def as_csv(rows: Sequence[dict]) -> str:
 
 
 def _safe(value):
-    return "'" + value if isinstance(value, str) and value[:1] in ("=", "+", "-", "@", "\t", "\r") else value
+    if not isinstance(value, str):
+        return value
+    value = value.replace("\r\n", "\n").replace("\r", "\n")  # a bare return would end the row
+    return "'" + value if value.lstrip(" ")[:1] in FORMULA else value
 
 
 def velocity_rows(a: Assessment, units: UnitSystem) -> list[tuple[str, str]]:
@@ -80,24 +86,31 @@ def velocity_rows(a: Assessment, units: UnitSystem) -> list[tuple[str, str]]:
     return rows
 
 
-def comparison_rows(named: Sequence[tuple[str, Assessment]], units: UnitSystem) -> list[dict[str, str]]:
-    """What was found for each case, and every entry in which they differ; one column per case."""
-    def row(label, text):
-        return {"": label, **{name: text(a) for name, a in named}}
+def comparison_rows(named: Sequence[tuple[str, Assessment]], units: UnitSystem,
+                    words: Callable[[str], str] = str) -> list[dict[str, str]]:
+    """What was found for each case, and every entry in which they differ; one column per case.
+
+    ``words`` turns what people wrote themselves into what may be shown where the table goes.
+    """
+    def row(label: str, text: Callable[[Assessment], str | None]) -> dict[str, str]:
+        return {"": label, **{name: text(a) or ABSENT for name, a in named}}
+
+    def entry(name: str, a: Assessment) -> str:
+        text = _entry_text(a.case[name])
+        return words(text) if FIELDS[name].form == TEXT else text
 
     rows = [row("Verdict", lambda a: f"{SHAPES[a.verdict]} {a.verdict.value}"),
-            row("Quality", _quality), row("Wetness, %", lambda a: "" if a.x is None else f"{100 * (1 - a.x):.2f}"),
+            row("Quality", _quality), row("Wetness, %", lambda a: None if a.x is None else f"{100 * (1 - a.x):.2f}"),
             row("Exhaust temperature", lambda a: units.text(a.T_exhaust, "temperature")),
             row("Superheat", lambda a: units.text(a.superheat, "difference")),
             row("Margin", lambda a: units.text(a.margin, "difference")),
-            row("Least readable quality", lambda a: quality_text(a.x_least) if a.x_least <= 1 else "none"),
-            row("Exhaust velocity", lambda a: units.text(a.velocities.exhaust, "velocity")),
-            row("Kinetic energy, %pt", lambda a: f"{100 * a.velocities.kinetic_quality:.3f}"
-                if a.velocities.kinetic_quality is not None else "")]
+            row("Least readable quality", lambda a: quality_text(a.x_least) if a.x_least <= 1 else "above dry"),
+            row("Exhaust velocity", lambda a: a.velocities.exhaust and units.text(a.velocities.exhaust, "velocity")),
+            row("Kinetic energy, %pt", lambda a: a.velocities.exhaust and f"{100 * a.velocities.kinetic_quality:.3f}")]
     for name, field in FIELDS.items():
         entries = [a.case[name] for _, a in named]
         if any(e != entries[0] for e in entries):
-            rows.append(row(field.label, lambda a, name=name: _entry_text(a.case[name])))
+            rows.append(row(field.label, partial(entry, name)))
     return rows
 
 
@@ -111,7 +124,7 @@ def _quality(a: Assessment) -> str:
     return f"below {quality_text(a.x_below)}" if a.x_below < 1 else "not told"
 
 
-def _entry_text(value) -> str:
+def _entry_text(value: Value) -> str:
     if isinstance(value, tuple):
         return f"{len(value)} row{'' if len(value) == 1 else 's'}"
-    return describe(value) if isinstance(value, Entry) else (value or "")
+    return describe(value) if isinstance(value, Entry) else value or ""

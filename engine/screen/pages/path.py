@@ -14,7 +14,7 @@ from engine.screen import entries, live, methods, session, style
 from engine.screen.charts.process import process_diagrams
 from engine.screen.charts.speed import velocity_diagram
 from engine.screen.shell import assessed
-from engine.screen.style import escaped_lines
+from engine.screen.style import escaped, escaped_lines
 from engine.steam.errors import InputError
 
 QUESTIONS = {READING: "I have a reading", EXPECTED: "I expect this wetness"}
@@ -142,7 +142,7 @@ def _comparison(a: Assessment, others: list[tuple[str, Assessment]]) -> None:
     if not others:
         return
     st.subheader("Side by side", anchor=False)
-    st.table(comparison_rows([("open", a), *others], session.units()))
+    st.table(comparison_rows([("open", a), *others], session.units(), escaped))
     for name, _ in others:
         with st.container(horizontal=True):
             st.button(f"Open {name}", key=f"open pinned {name}", on_click=session.open_pinned, args=(name,))
