@@ -119,7 +119,7 @@ def test_a_wetness_that_leaves_the_exhaust_wet():
     assert said(UNSEEN).reasons[0] == (
         "The exhaust thermometer would show 100.2 °C; saturation there is 100.2 °C. The exhaust would be wet, quality "
         "0.9904.")
-    assert said(UNSEEN_THIN).reasons[0] == "The exhaust thermometer would show 102.9 °C; saturation there is 100.2 °C."
+    assert said(UNSEEN_THIN).reasons[0] == "The exhaust thermometer would show 103.5 °C; saturation there is 100.2 °C."
 
 
 def test_a_superheated_line_asks_whether_it_should_be_wet():
