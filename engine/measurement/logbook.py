@@ -16,7 +16,7 @@ import numpy as np
 from engine.measurement.logbook_cells import Worked, work
 from engine.measurement.logbook_checks import Checked, suspicions
 from engine.measurement.logbook_mapping import Mapping, is_dated, refuse_open
-from engine.measurement.logbook_propose import Layout, Proposal, propose
+from engine.measurement.logbook_propose import Layout, Proposal, named_channels, propose
 from engine.measurement.logbook_rows import Collector, Rejected, Remark, Rows, in_order
 from engine.measurement.logbook_sheet import check_archive, is_workbook, propose_sheet, sheet_table
 from engine.measurement.logbook_suspicion import Suspicion
@@ -25,7 +25,7 @@ from engine.measurement.logbook_text import (
     DELIMITERS,
     ENCODINGS,
     Source,
-    find_delimiter,
+    find_delimiters,
     find_encoding,
     refuse,
     sample_lines,
@@ -212,8 +212,11 @@ def _propose(source: Source, layout: Layout) -> Proposal:
     by_mark = found in ("utf-8-sig", "utf-16", "utf-32")
     encoding = found if by_mark or not layout.encoding else layout.encoding
     lines, spots = sample_lines(source, encoding)
-    delimiter = layout.delimiter or find_delimiter(lines, source.name)
-    rows = [(k + 1, cells) for k, cells in split_rows(lines, delimiter) if cells is not None]
+    possible = [layout.delimiter] if layout.delimiter else find_delimiters(lines, source.name)
+    tables = {d: [(k + 1, cells) for k, cells in split_rows(lines, d) if cells is not None] for d in possible}
+    # The heading decides, where lines before it or decimal commas leave more than one delimiter possible.
+    delimiter = max(possible, key=lambda d: named_channels(tables[d])) if len(possible) > 1 else possible[0]
+    rows = tables[delimiter]
     spots = [cells for _, cells in split_rows(spots, delimiter) if cells is not None]
     return propose(rows, spots, source.name, layout._replace(delimiter=delimiter, encoding=encoding))
 

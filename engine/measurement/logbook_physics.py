@@ -21,6 +21,7 @@ EXHAUST_GAUGE_BAND = 0.3e5  # Pa; within it an exhaust pressure is a gauge readi
 EXHAUST_ABSOLUTE_BAND = (0.55e5, 1.15e5)  # Pa; a gauge reading there looks like the atmosphere itself
 SATURATION_FIT = 1.0  # K; line temperature and pressure agree so well when both are meant as read
 LEAST_MISFIT = 1.5  # K; below it gauge and absolute cannot be told apart
+MISFIT_OF_UNIT, FIT_OF_UNIT = 8.0, 3.0  # K between line temperature and saturation: wrong unit, right unit
 JUMP = 30.0  # K from one row to the next: no steam does that, a change of unit does
 COLD = 2.0  # K below saturation: flowing steam cannot be that cold
 
@@ -49,9 +50,13 @@ def physics_suspicions(rows: np.ndarray, channels: Channels, columns: Columns) -
     for name in middle:
         if name not in suspected and CHANNELS[name].kind in ("pressure", "mass flow"):
             found += _unit(name, middle, absolute, columns[name], suspect)
+    if "T_line" in middle and "p_line" in absolute and "p_line" not in {s.channel for s in found}:
+        found += _unit_by_temperature(middle, absolute, columns["p_line"], suspect)
+    suspected = {s.channel for s in found}
+    trusted = {name: values for name, values in absolute.items() if name not in suspected}
     for name in ("T_line", "T_exhaust", "T_ambient"):
         if name in middle:
-            found += _temperature_unit(name, channels[name], rows, middle, absolute, columns[name])
+            found += _temperature_unit(name, channels[name], rows, trusted, columns[name])
     suspected = {s.channel for s in found}
     if not suspected & {"T_exhaust", "p_exhaust", "p_line"}:
         found += _too_cold(thin, absolute, rows, suspect)
@@ -152,7 +157,23 @@ def _unit(name: str, middle, absolute: Channels, column: Column, suspect) -> lis
                     f"usual{fits}", "check the unit of this column")]
 
 
-def _temperature_unit(name: str, values: np.ndarray, rows: np.ndarray, middle, absolute: Channels,
+def _unit_by_temperature(middle, absolute: Channels, column: Column, suspect) -> list[Suspicion]:
+    """A line pressure that contradicts the line temperature in the unit said, and agrees in another."""
+    p, T = _median(absolute["p_line"]), middle["T_line"]
+    boiling = float(_saturation(np.array([p]))[0])
+    if abs(boiling - T) < MISFIT_OF_UNIT:
+        return []
+    offset, written = p - middle["p_line"], from_si(middle["p_line"], column.unit, "pressure")
+    units = [u for u in UNITS["pressure"] if u != column.unit]
+    others = _saturation(np.array([to_si(written, u, "pressure") + offset for u in units]))
+    fitting = [u for u, other in zip(units, others, strict=True) if abs(other - T) < FIT_OF_UNIT]
+    if not fitting:
+        return []
+    return [suspect("unit", "p_line", f"the line pressure of {_digits(written)} {column.unit} does not belong to the "
+                    f"line temperature; in {' or '.join(fitting)} it would", "check the unit of this column")]
+
+
+def _temperature_unit(name: str, values: np.ndarray, rows: np.ndarray, absolute: Channels,
                       column: Column) -> list[Suspicion]:
     """Temperatures written in another unit than said, throughout or from a row on."""
     low, high = _expected(name, absolute)

@@ -21,6 +21,7 @@ from engine.measurement.logbook_time import STAMPS, count_unit, date_order, text
 from engine.measurement.logbook_words import CHANNELS, Found, recognise, unit_of
 
 HEADER_ROWS = 200  # how far down a heading is looked for
+LONGEST_HEADING = 80
 _COMMENT = re.compile(r"^\s*(#|//|%|;|')+\s*")
 _NUMBER = re.compile(r"[+\-−]?[\d.,'’\s]*\d[\d.,'’\s]*([eE][+-]?\d+)?\s*[°%]?\s*[\w/²()]{0,8}", re.ASCII)
 
@@ -109,19 +110,26 @@ def _told_heading(rows: list[Row], layout: Layout, source: str) -> tuple[int | N
 
 def find_heading(rows: list[Row]) -> tuple[int, int]:
     """(index of the heading row, rows it takes with its row of units); (-1, 0) when there is none."""
-    best, at = 0, -1
-    for k, (_, cells) in enumerate(rows[:HEADER_ROWS]):
-        filled = [c for c in cells if c.strip()]
-        if not filled or sum(map(is_value, filled)) > 0.3 * len(filled) or max(map(len, filled)) > 80:
-            continue
-        named = {recognise(_COMMENT.sub("", c)).channel for c in filled} - {""}
-        if len(named) > best:
-            best, at = len(named), k
+    named, at = max(((_named(cells), -k) for k, (_, cells) in enumerate(rows[:HEADER_ROWS])), default=(0, 0))
+    at = -at if named else -1
     if at < 0:
         at = _row_above_the_values(rows)
         if at < 0:
             return -1, 0
     return at, 2 if at + 1 < len(rows) and _is_unit_row(rows[at + 1][1]) else 1
+
+
+def named_channels(rows: list[Row]) -> int:
+    """How many channels the row names that names most."""
+    return max((_named(cells) for _, cells in rows[:HEADER_ROWS]), default=0)
+
+
+def _named(cells: list[str]) -> int:
+    """How many channels a row names, 0 if it looks like readings or like prose."""
+    filled = [c for c in cells if c.strip()]
+    if not filled or sum(map(is_value, filled)) > 0.3 * len(filled) or max(map(len, filled)) > LONGEST_HEADING:
+        return 0
+    return len({recognise(_COMMENT.sub("", c)).channel for c in filled} - {""})
 
 
 def _row_above_the_values(rows: list[Row]) -> int:

@@ -25,6 +25,7 @@ BLOCK_BYTES = 4 << 20
 HEAD_BYTES = 256 << 10
 MOST_BYTES = 2 << 30
 LONGEST_LINE = 1 << 20
+LEAST_SHARE = 0.2  # of the lines that a delimiter must cut into one number of cells
 QUOTE_LINES = 20  # a quoted cell may run over so many lines; beyond that the quote was never closed
 HEAD_LINES = 400  # of the head; decisions need no more
 SPOTS, SPOT_BYTES = 16, 2 << 10
@@ -286,25 +287,23 @@ def _quoted(text: str, delimiter: str) -> tuple[list[str] | None, bool]:
     return (rows[0] if len(rows) == 1 else None), False
 
 
-def find_delimiter(lines: list[str], source: str) -> str:
-    """The sign between the cells: the one that cuts most lines into the same number of cells.
+def find_delimiters(lines: list[str], source: str) -> list[str]:
+    """The signs that may stand between the cells, the one that cuts most lines alike first.
 
     Between equals a tab is believed before a semicolon, a bar and a comma, because the commas of a
     semicolon file may be decimal signs.
     """
     told = re.fullmatch(r'"?sep=(.)"?', lines[0].strip("\ufeff \r")) if lines else None
     if told and told[1] in DELIMITERS:
-        return told[1]
+        return [told[1]]
     lines = [line for line in lines if line.strip()][-200:]
-    best, best_share = "", 0.0
+    shares = {}
     for delimiter in DELIMITERS:
         counts = Counter(len(cells) for _, cells in split_rows(lines, delimiter) if cells is not None)
-        share = max((n / len(lines) for width, n in counts.items() if width > 1), default=0.0)
-        if share > best_share + 0.1:
-            best, best_share = delimiter, share
-    if best_share < 0.2:
+        shares[delimiter] = max((n / len(lines) for width, n in counts.items() if width > 1), default=0.0)
+    possible = [d for d in sorted(DELIMITERS, key=lambda d: -round(shares[d], 1)) if shares[d] >= LEAST_SHARE]
+    if not possible:
         got = f"lines without a common delimiter, such as {lines[-1][:60]!r}" if lines else "blank lines"
-        raise refuse(source, got,
-                     "no tab, semicolon, bar or comma parts most lines into the same number of cells",
+        raise refuse(source, got, "no tab, semicolon, bar or comma parts enough lines into the same number of cells",
                      "export the log with one of these between the cells")
-    return best
+    return possible

@@ -145,7 +145,7 @@ def unit_of(text: str, kind: str = "") -> tuple[str, str, str]:
             return each, known[low], ""
         for spelling, unit in known.items() if each == "pressure" else ():
             ending = low[len(spelling):].strip("/,;:") if low.startswith(spelling) else None
-            if ending in _BASIS_ENDINGS and not (spelling == "pa" and len(ending) == 1):
+            if ending in _BASIS_ENDINGS:
                 return each, unit, _BASIS_ENDINGS[ending]
     return "", "", ""
 
