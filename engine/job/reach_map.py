@@ -22,7 +22,6 @@ SIZE = 300  # points along each axis
 P_LINE = (1.2e5, 160e5)  # Pa
 P_EXHAUST = (0.05e5, 4e5)
 POWER = 5.0e5  # J per kg of sample at the top of the axis of power: more than the wetness of any line here takes
-LEVELS = (0.01, 0.02, 0.03, 0.04, 0.05, 0.06, 0.08, 0.10, 0.15, 0.20, 0.30, 0.40)
 
 
 @dataclass(frozen=True)
@@ -114,6 +113,22 @@ def _power_map(key: MapKey, p_line: np.ndarray, size: int) -> WetnessMap:
 def _heated(key: MapKey, p_line, p_heater, power, superheat: float) -> np.ndarray:
     x = least_electric_quality(p_line, p_heater, power, key.sample_flow, superheat, power_loss=key.power_loss)
     return np.where(x <= 1.0, np.minimum(1.0 - x, 1.0), np.nan)
+
+
+def edge_of(found: WetnessMap, wetness: float) -> np.ndarray:
+    """Along the line pressures, the ordinate at which ``wetness`` is just readable; NaN where it never is."""
+    log = np.log(found.ordinate)
+    reads = np.nan_to_num(found.wetness, nan=-1.0) >= wetness
+    edge = np.full(found.p_line.size, np.nan)
+    for k in np.flatnonzero(reads.any(axis=0) & ~reads.all(axis=0)):
+        # a wetness that can be read is read at all lower exhaust pressures, or all higher powers
+        last = reads[:, k].argmax() if found.by_power else found.ordinate.size - 1 - reads[::-1, k].argmax()
+        other = last - 1 if found.by_power else last + 1
+        ends = np.array([last, other])
+        y = np.nan_to_num(found.wetness[ends, k], nan=0.0)
+        share = 0.0 if y[0] == y[1] else (y[0] - wetness) / (y[0] - y[1])
+        edge[k] = np.exp(log[last] + share * (log[other] - log[last]))
+    return edge
 
 
 def sections(plan: ReachAssessment, size: int = SIZE) -> tuple[Section, Section]:

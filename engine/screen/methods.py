@@ -29,20 +29,20 @@ def main_entries() -> tuple[str, str, str]:
     return "p_line", "p_exhaust", "wetness" if asked else "T_exhaust"
 
 
-def entries_of_method() -> None:
-    """What a separator or a heater brings; nothing for throttling alone."""
+def entries_of_method(*, planning: bool = False) -> None:
+    """What a separator or a heater brings; nothing for throttling alone. A plan needs no readings."""
     case = session.case()
     if case["mode"] == SEPARATING:
         with st.container(border=True, key="method entries"):
-            _separator()
+            _separator(planning or case["question"] == EXPECTED)
     elif case["mode"] == ELECTRIC:
         with st.container(border=True, key="method entries"):
             _heater()
 
 
-def _separator() -> None:
+def _separator(planning: bool) -> None:
     case = session.case()
-    if case["question"] == EXPECTED:
+    if planning:
         share, at, vessel = st.columns(3, gap="medium")
         with share:
             entries.number("water_share")

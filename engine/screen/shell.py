@@ -12,7 +12,7 @@ from engine.job.answer import SHAPES, quality_text
 from engine.job.assessment import Assessment, Verdict, assess
 from engine.job.case import Case
 from engine.job.casefile import to_json
-from engine.job.demo import DEMO
+from engine.job.examples import EXAMPLES
 from engine.job.methods_said import in_short
 from engine.screen import address, entries, session, style
 from engine.steam.errors import InputError
@@ -99,6 +99,8 @@ def _case_tools() -> None:
         st.file_uploader("Open a case file", type=["json"], key="open", on_change=session.open_file, args=("open",))
         st.caption("Link to this case: the page's own address holds it; copy it, or this word behind `?case=`.")
         st.code(f"?case={session.link()}", language=None, wrap_lines=True)
+        st.selectbox("Invented examples", list(EXAMPLES), index=None, placeholder="Choose one to open it",
+                     key="example", on_change=session.open_example, args=("example",))
         left, right = st.columns(2)
         left.button("Demo case", key="demo", on_click=session.open_demo, width="stretch")
         right.button("Empty case", key="blank", on_click=session.open_blank, width="stretch")
@@ -109,5 +111,5 @@ def _notice() -> None:
     if notice:
         kind, text = notice
         {"error": st.error, "success": st.success}[kind](style.escaped_lines(text))
-    if session.case() == DEMO:
+    if session.case() in EXAMPLES.values():
         st.caption("This is an invented demo case. Change it, open your own, or start with an empty one under “Case”.")
