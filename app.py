@@ -8,6 +8,7 @@ st.set_page_config(page_title="Steam quality by throttling", page_icon="♨️",
 
 PAGES = (
     st.Page("engine/screen/pages/path.py", title="Path", default=True),
+    st.Page("engine/screen/pages/reach.py", title="Reach"),
     st.Page("engine/screen/pages/rig.py", title="Rig"),
 )
 

@@ -15,6 +15,7 @@ import streamlit as st
 from engine.job.case import BLANK, Case, Value, as_entered, barometer, entry_si
 from engine.job.casefile import from_json, from_link, to_link
 from engine.job.demo import DEMO
+from engine.job.examples import EXAMPLES
 from engine.job.fields import FIELDS
 from engine.job.rows import Entry
 from engine.steam.errors import InputError
@@ -83,6 +84,14 @@ def _step(source: str, target: str) -> None:
 
 def open_demo(demo: Case = DEMO) -> None:
     change(demo)
+
+
+def open_example(key: str) -> None:
+    """Open the invented case chosen in the widget ``key``, and leave the widget ready for the next choice."""
+    name = st.session_state[key]
+    if name:
+        change(EXAMPLES[name])
+        st.session_state[key] = None
 
 
 def open_blank() -> None:
