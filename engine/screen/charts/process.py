@@ -31,7 +31,7 @@ def _diagram(axes: Axes, a: Assessment, units: UnitSystem, pinned, label: str) -
     still = list(background(axes.key, units.name))
     moving = [_reach(axes, a, units), _pinned(axes, pinned, units), _bore(axes, a, units), _path(axes, a, units),
               _reading(axes, a, units), _points(axes, a, units)]
-    figure = {"data": still + moving, "layout": _layout(axes, a, units)}
+    figure = {"data": still + moving, "layout": _layout(axes, a, units, pinned)}
     name = f"{axes.title} diagram"
     return Diagram(axes.key, axes.title, figure, tuple(range(len(still), len(still) + len(moving))), f"{name}. {label}")
 
@@ -107,7 +107,7 @@ def _hover(s: StatePoint, units: UnitSystem) -> str:
     return "<br>".join(rows + ([f"c {units.text(s.velocity, 'velocity')}"] if s.velocity else []))
 
 
-def _layout(axes: Axes, a: Assessment, units: UnitSystem) -> dict[str, Any]:
+def _layout(axes: Axes, a: Assessment, units: UnitSystem, pinned) -> dict[str, Any]:
     def axis(name: str, kind: str, log: bool) -> dict[str, Any]:
         common = {"title": {"text": axis_title(name, kind, units), "standoff": 4}, "gridcolor": "var:grid",
                   "zeroline": False, "linecolor": "var:muted", "ticks": "outside", "tickcolor": "var:muted",
@@ -120,7 +120,7 @@ def _layout(axes: Axes, a: Assessment, units: UnitSystem) -> dict[str, Any]:
     return {"margin": {"l": 62, "r": 10, "t": 8, "b": 46}, "showlegend": False, "hovermode": "closest",
             "font": {"size": 14}, "xaxis": axis(axes.x, axes.x_kind, False),
             "yaxis": axis(axes.y, axes.y_kind, axes.log_y),
-            "meta": {"process": _window(axes, a, units), "whole": _whole(axes, units)}}
+            "meta": {"process": _window(axes, a, units, pinned), "whole": _whole(axes, units)}}
 
 
 def _whole(axes: Axes, units: UnitSystem) -> dict[str, Any]:
@@ -134,12 +134,13 @@ def _ranges(axes: Axes, units: UnitSystem, limits: dict[str, tuple[float, float]
     return {"xaxis.range": x, "yaxis.range": [math.log10(v) for v in y] if axes.log_y else y}
 
 
-def _window(axes: Axes, a: Assessment, units: UnitSystem) -> dict[str, Any]:
-    """Where the process happens, rounded outward so that it stands still while a slider moves a little."""
-    paths = [p for p in (a.path, a.reach_path, a.bore_path) if p is not None]
+def _window(axes: Axes, a: Assessment, units: UnitSystem, pinned) -> dict[str, Any]:
+    """Where the processes happen, rounded outward so that it stands still while a slider moves a little."""
+    parts = (a.path, a.reach_path, a.bore_path, a.read_state, *(other.path for _, other in pinned))
+    drawn = [part for part in parts if part is not None]
 
     def span(name: str, step: float, pad: float) -> tuple[float, float]:
-        values = np.concatenate([getattr(p, name) for p in paths])
+        values = np.hstack([getattr(part, name) for part in drawn])
         low, high = float(values.min()) - pad, float(values.max()) + pad
         return step * math.floor(low / step), step * math.ceil(high / step)
 
@@ -148,7 +149,7 @@ def _window(axes: Axes, a: Assessment, units: UnitSystem) -> dict[str, Any]:
         return (math.exp(half * math.floor(math.log(low * 0.6) / half)),
                 math.exp(half * math.ceil(math.log(high * 1.7) / half)))
 
-    p = np.concatenate([path.p for path in paths])
+    p = np.hstack([part.p for part in drawn])
     limits = {"s": span("s", 250.0, 150.0), "T": span("T", 25.0, 12.0), "h": span("h", 100e3, 60e3),
               "p": factors(float(p.min()), float(p.max()))}
     return _ranges(axes, units, limits)
