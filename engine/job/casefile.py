@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import base64
-import binascii
 import json
 import math
 import zlib
@@ -23,8 +22,7 @@ LISTED = 20  # faults spelled out
 _LINK_BYTES = 200_000
 
 
-def _refusal(what: str, got: object, needs: str, hint: str = "the open case stays as it was",
-             why: str = "") -> InputError:
+def _refusal(what: str, got: object, needs: str, hint: str = "", why: str = "") -> InputError:
     return InputError(Fault(what, got[:120] if isinstance(got, str) else shortened(got), "", needs, why, hint))
 
 
@@ -172,6 +170,7 @@ def from_link(word: str) -> Case:
         if unpacker.unconsumed_tail or not unpacker.eof:
             raise ValueError("too long or cut off")
         schema, values = json.loads(text, parse_constant=_no_constant)
-    except (ValueError, TypeError, binascii.Error, zlib.error, RecursionError) as error:
-        raise _refusal("case in the link", _first_line(error), "a link made by this program, copied whole") from error
+    except (ValueError, TypeError, zlib.error, RecursionError) as error:
+        raise _refusal("case in the link", f"“{word[:40]}”", "a link made by this program, copied whole",
+                       "copy it once more from where it came, from the first to the last letter") from error
     return _from_document({"format": FORMAT, "schema": schema, "values": values}, "link")

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import replace
+from math import isfinite
 from typing import NamedTuple
 
 import streamlit as st
@@ -68,7 +69,7 @@ def number(name: str, *, help: str | None = None, label_hidden: bool = False,
     def read(value: object) -> Entry | None:
         return field.blank if value is None else Entry(float(value), unit, basis_now)
 
-    session.mirror(key, None if entry is None else entry.value)
+    session.mirror(key, entry.value if entry is not None and isfinite(entry.value) else None)
     st.number_input(named, value=None, step=step or _STEPS.get(unit, 0.1), format="%.7g", key=key,
                     help=help or field.hint or None, on_change=session.callback(name, key, read),
                     label_visibility="collapsed" if label_hidden else "visible")

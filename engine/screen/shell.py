@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import gc
+import textwrap
 from collections.abc import Sequence
 from functools import lru_cache
 
@@ -54,8 +55,9 @@ def _bar() -> None:
             state = st.session_state
             st.button("Undo", key="undo", disabled=not state["past"], on_click=session.undo)
             st.button("Redo", key="redo", disabled=not state["future"], on_click=session.redo)
-            st.button("Pin", key="pin", on_click=session.pin,
-                      help="Keep this case beside the ones to come: in the comparison and on the diagrams.")
+            st.button("Pin", key="pin", on_click=session.pin, disabled=_usable(session.case()) is None,
+                      help="Keep this case beside the ones to come: in the comparison and on the diagrams. "
+                      f"The last {session.PINS} are kept.")
             _case_tools()
 
 
@@ -71,15 +73,21 @@ def _units() -> None:
 
 def _summary(case: Case) -> str:
     """The case in one line: what it is, what was entered, what can be said."""
-    title = style.escaped(case["title"]) or "Untitled case"
+    title = style.escaped(textwrap.shorten(case["title"], 80, placeholder=" …")) or "Untitled case"
     parts = [f"**{title}**", *in_short(case), f"**{_verdict(case)}**"]
     return " · ".join(parts)
 
 
-def _verdict(case: Case) -> str:
+def _usable(case: Case) -> Assessment | None:
     try:
-        a = assessed(case)
+        return assessed(case)
     except InputError:
+        return None
+
+
+def _verdict(case: Case) -> str:
+    a = _usable(case)
+    if a is None:
         return "✕ an entry cannot be used"
     said = f"{SHAPES[a.verdict]} {a.verdict.value}"
     return f"{said} {quality_text(a.x)}" if a.x is not None and a.verdict is not Verdict.CANNOT else said
@@ -90,11 +98,10 @@ def _case_tools() -> None:
     with st.popover("Case", help="Name, open, save, share, start anew"):
         entries.words("title")
         entries.words("note", area=True)
-        try:
-            assessed(case)
+        if _usable(case):
             st.download_button("Save case file", to_json(case), "case.json", "application/json", key="save",
                                on_click="ignore")
-        except InputError:
+        else:
             st.caption("The case file can be saved once every entry can be used.")
         st.file_uploader("Open a case file", type=["json"], key="open", on_change=session.open_file, args=("open",))
         st.caption("Link to this case: the page's own address holds it; copy it, or this word behind `?case=`.")

@@ -8,7 +8,17 @@ from engine.job.answer import answer
 from engine.job.assessment import Assessment
 from engine.job.cautions import CAUTIONS, SHORT
 from engine.job.fields_modes import ELECTRIC, SEPARATING, THROTTLING
-from engine.job.fields_path import BY_ALTITUDE, BY_CONDUCTANCE, BY_KG, BY_NORMAL, EXPECTED, NONE, READING, UNDECIDED
+from engine.job.fields_path import (
+    BY_ALTITUDE,
+    BY_CONDUCTANCE,
+    BY_KG,
+    BY_NORMAL,
+    BY_TWO_FLOWS,
+    EXPECTED,
+    NONE,
+    READING,
+    UNDECIDED,
+)
 from engine.job.tables import as_csv, comparison_rows, state_rows, velocity_rows
 from engine.screen import entries, live, methods, session, style
 from engine.screen.charts.process import process_diagrams
@@ -24,7 +34,9 @@ WAYS = {THROTTLING: "constant enthalpy: ● line, ◆ dries out, ■ exhaust",
 LEGEND = (("blue", "dashed", "one constant bore; ✚ exhaust as read"),
           ("text", "dashed", "reach limit: the wettest steam still readable"), ("green", "solid", "pinned cases"))
 LOSSES = {UNDECIDED: "Not decided yet", NONE: "Knowingly none", BY_CONDUCTANCE: "By conductance UA",
-          BY_KG: "Known per kg of sample", BY_NORMAL: "By a normal reading on dry steam"}
+          BY_KG: "Known per kg of sample", BY_NORMAL: "By a normal reading on dry steam", BY_TWO_FLOWS: "By two flows"}
+ENTRIES_OF_LOSS = {BY_CONDUCTANCE: ("conductance", "T_ambient"), BY_KG: ("heat_loss",), BY_NORMAL: ("T_normal",),
+                   BY_TWO_FLOWS: ("second_flow", "T_second", "T_ambient")}
 
 
 def page() -> None:
@@ -41,7 +53,8 @@ def page() -> None:
     style.legend((("vermilion", "solid", WAYS[session.case()["mode"]]), *LEGEND))
     st.caption(SHORT)
     _assumed()
-    _velocities(a)
+    if not a.heating:
+        _velocities(a)
     _states(a)
     _comparison(a, others)
     with st.expander("Cautions"):
@@ -69,8 +82,7 @@ def _assumed() -> None:
     if case["mode"] != ELECTRIC:  # a heater has its own loss, and needs no fast stream
         with loss:
             entries.choice("heat_loss_method", LOSSES)
-            for name in {BY_CONDUCTANCE: ("conductance", "T_ambient"), BY_KG: ("heat_loss",),
-                         BY_NORMAL: ("T_normal",)}.get(case["heat_loss_method"], ()):
+            for name in ENTRIES_OF_LOSS.get(case["heat_loss_method"], ()):
                 entries.number(name)
         with speed:
             for name in ("sample_flow", "line_velocity", "line_bore", "exhaust_bore", "recovery"):
