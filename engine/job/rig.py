@@ -88,6 +88,8 @@ def _notes(point: Point) -> tuple[str, ...]:
     if point.at_reach:
         notes.append("As it stands the exhaust would be too little superheated to be read. The sizes below are those "
                      "at the reach limit, the wettest steam still readable.")
+    if point.x > 1.0:
+        notes.append("The line is superheated: its steam is taken for dry here, and there are no drops to miss.")
     if point.flow_computed:
         notes.append("No sample flow is entered: the sizes below rest on the flow computed from the orifice.")
     return tuple(notes)

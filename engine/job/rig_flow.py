@@ -164,7 +164,7 @@ def _nozzle(point: Point) -> Nozzle:
     drawn = None if point.flow is None else point.flow / point.kept  # what the separator drains came through the ports
     rig = {"wetness": 1.0 - x, "p_line": line["p_line"], "line_flow": si["line_flow"], "pipe_bore": si["pipe_bore"]}
     area = part(si, ("sample_flow",), lambda: isokinetic_port_area(drawn, si["line_flow"], si["pipe_bore"]))
-    wanted = part(si, ("sample_flow", "ports"), lambda: float(np.sqrt(4 * area.value / (np.pi * si["ports"]))))
+    wanted = area and part(si, ("ports",), lambda: float(np.sqrt(4 * area.value / (np.pi * si["ports"]))))
     ports = part(si, ("ports", "port_bore"), lambda: si["ports"] * np.pi / 4 * si["port_bore"] ** 2)
     drops = np.geomspace(0.3e-6, 300e-6, 61)
 
@@ -181,7 +181,7 @@ def _nozzle(point: Point) -> Nozzle:
         areas = np.array([ports.value, *(ratio * area.value for ratio in RATIOS)])
         curve, *compared = sampling_error(point, through(areas[:, np.newaxis], drops).aspiration)
     entered = part(si, ("sample_flow", "ports", "port_bore", "drop_diameter"), entry)
-    return Nozzle(pipe_velocity(si["line_flow"], si["pipe_bore"], line["p_line"], x), area, wanted if area else area,
+    return Nozzle(pipe_velocity(si["line_flow"], si["pipe_bore"], line["p_line"], x), area, wanted,
                   ports, entered, drops, curve, tuple(compared))
 
 

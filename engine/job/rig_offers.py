@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 
-from engine.job.case import Case
+from engine.job.case import Case, Value
 from engine.job.fields import FIELDS
 from engine.job.fields_path import BY_CONDUCTANCE, BY_NORMAL, BY_TWO_FLOWS
 from engine.job.fields_rig import COMPUTED, WEIGHED
@@ -18,12 +19,12 @@ _LEAST_DIFFERENCE = 2e-3  # of a value, below which it is no news
 
 @dataclass(frozen=True)
 class Offer:
-    """A number found here that the case can take over with one click: ``case`` is the case with it."""
+    """A number found here that the case can take over with one click: ``changes`` are the entries it writes."""
 
     key: str
     section: str
     label: str
-    case: Case
+    changes: Mapping[str, Value]
 
 
 def offers(rig: RigAssessment, units: UnitSystem) -> tuple[Offer, ...]:
@@ -37,7 +38,7 @@ def offers(rig: RigAssessment, units: UnitSystem) -> tuple[Offer, ...]:
             basis = " abs" if entry.basis == "absolute" else " gauge" if entry.basis else ""
             unit = "" if entry.unit == "1" else f" {entry.unit}"
             label = f"{words}, {entry.value:g}{unit}{basis}"
-            made.append(Offer(key, section, label, case.with_(**{name: entry}, **more)))
+            made.append(Offer(key, section, label, {name: entry, **more}))
 
     if flow := rig.flow.value:
         offer("flow", "orifice", "Use the computed flow", "sample_flow", flow.orifice.computed, flow_source=COMPUTED)
@@ -57,7 +58,7 @@ def offers(rig: RigAssessment, units: UnitSystem) -> tuple[Offer, ...]:
     for method, words in ((BY_TWO_FLOWS, "Take the heat loss by two flows"),
                           (BY_NORMAL, "Take the heat loss by the normal reading")):
         if rig.losses[method] and case["heat_loss_method"] != method and case["sample_flow"] is not None:
-            made.append(Offer(method, "heat", words, case.with_(heat_loss_method=method)))
+            made.append(Offer(method, "heat", words, {"heat_loss_method": method}))
     return tuple(made)
 
 

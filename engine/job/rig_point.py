@@ -3,13 +3,13 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass, fields, replace
+from dataclasses import dataclass, fields
 from types import MappingProxyType
 from typing import Generic, TypeVar
 
 import numpy as np
 
-from engine.calorimeter import Status, exhaust_temperature, orifice_flow, quality
+from engine.calorimeter import Status, exhaust_temperature, orifice_flow, quality, velocity
 from engine.job.case import Case, Resolved, faults_of, resolve
 from engine.job.fields import FIELDS
 from engine.job.fields_modes import SEPARATING
@@ -18,7 +18,7 @@ from engine.job.modes import check_mode
 from engine.job.rows import Entry
 from engine.job.separation import stage_of
 from engine.job.terms import Terms, check_method, terms_at
-from engine.steam import saturated, saturation_temperature, state_ph
+from engine.steam import saturated, saturation_temperature, state_ph, vapour
 from engine.steam.errors import Fault, InputError
 
 _CORE = {"question", "barometer_source", "p_barometer", "altitude", "leg_height", "p_line", "p_exhaust",
@@ -188,30 +188,48 @@ def _judged(case: Case, entered: Case, aside: tuple[Fault, ...]) -> Point:
             kept = 1.0 - separation.drain_fraction
         except InputError as error:
             troubles.append("The separator is left out: " + _sentence(error.faults[0]))
+    if faster := _faster_than_sound(si):
+        troubles.append("The exhaust bore is left out: " + faster)
+        case, si = case.with_(exhaust_bore=None), Resolved(MappingProxyType({**si.si, "exhaust_bore": None}),
+                                                           si.p_barometer)
     try:
         check_method(case)
-        reading, at_reach = _where(case, si)
+        reading, at_reach, x = _where(case, si)
     except InputError as error:
         troubles.append("The heat loss of the case is left out: " + _sentence(error.faults[0]))
         case = case.with_(heat_loss_method=UNDECIDED)
-        reading, at_reach = _where(case, si)
-    x = float(shares([reading])[0])
+        reading, at_reach, x = _where(case, si)
     return Point(case, entered, si, line, reading, x, kept, at_reach, aside, tuple(troubles))
 
 
-def _where(case: Case, si: Resolved) -> tuple[Reading, bool]:
-    """The reading of the case; where its exhaust would be too wet to read, the least that can be read."""
+def _faster_than_sound(si: Resolved) -> str:
+    """In words, where the flow cannot pass the exhaust bore at the exhaust pressure."""
+    if not (si["sample_flow"] and si["exhaust_bore"]):
+        return ""
+    p = si["p_exhaust"]
+    steam = vapour(p, max(si["T_exhaust"], saturation_temperature(p)))
+    c = velocity(si["sample_flow"], si["exhaust_bore"], steam.v)
+    return "" if c <= steam.sound_speed else "the sample flow would have to pass it faster than sound."
+
+
+def _where(case: Case, si: Resolved) -> tuple[Reading, bool, float]:
+    """The reading of the case; where its exhaust would be too wet to read, the least that can be read; its quality."""
     T_sat = saturation_temperature(si["p_exhaust"])
     T_read = _must_show(case, si, T_sat) if case["question"] == EXPECTED else si["T_exhaust"]
     reading = _reading(case, si, T_read)
-    if T_read - T_sat >= max(si["least_superheat"], _LEAST) and np.isfinite(shares([reading])[0]):
-        return reading, False
+    if T_read - T_sat >= max(si["least_superheat"], _LEAST) and np.isfinite(x := float(shares([reading])[0])):
+        return reading, False, x
     T_least = T_sat + max(si["least_superheat"], _LEAST)
     for _ in range(4):  # a fast stream is colder than the probe, and has to be dry itself
         reading = _reading(case, si, T_least)
         dry = saturated(si["p_exhaust"]).h_g + 0.5 * reading.recovery * reading.exhaust_velocity**2
         T_least = max(T_least, state_ph(si["p_exhaust"], dry).T + _LEAST)
-    return replace(reading, T_exhaust=T_least), True
+    reading = _reading(case, si, T_least)
+    if not np.isfinite(x := float(shares([reading])[0])):
+        raise InputError(Fault("energy balance", "neither wet nor superheated steam", "", "an enthalpy steam can have",
+                               "each entry is possible, but not all of them together",
+                               "check heat loss, flow and velocities", "h"))
+    return reading, True, x
 
 
 def _must_show(case: Case, si: Resolved, T_sat: float) -> float:

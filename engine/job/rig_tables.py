@@ -242,8 +242,8 @@ def geometry_words(rig: RigAssessment, units: UnitSystem) -> str:
         return ""
     parts = f"By dimensions and lagging the body has UA = {units.text(g.body, 'conductance')}"
     if g.sampling is not None:
-        parts += (f" and the sampling line {units.text(g.sampling, 'conductance')}; as the line's steam is hotter, both "
-                  f"count as {units.text(g.whole, 'conductance')}")
+        parts += (f" and the sampling line {units.text(g.sampling, 'conductance')}; as the line's steam is hotter, "
+                  f"both count as {units.text(g.whole, 'conductance')}")
     return f"{parts}. The wall inside the body stands at {units.text(g.T_wall, 'temperature')}."
 
 

@@ -157,6 +157,14 @@ _ENTRY_UNITS = {
     "drop_diameter": {"SI": "µm", "US": "µm"},
     "wall_film": {"SI": "%", "US": "%"},
     "sampling_length": {"SI": "m", "US": "ft"},
+    "exhaust_gauge_U": {"SI": "kPa", "US": "psi"},
+    "barometer_U": {"SI": "kPa", "US": "inHg"},
+    "barometer_resolution": {"SI": "kPa", "US": "inHg"},
+    "flow_meter_U": {"SI": "%", "US": "%"},
+    "heat_loss_tolerance": {"SI": "%", "US": "%"},
+    "sampling": {"SI": "%pt", "US": "%pt"},
+    "coverage": {"SI": "%", "US": "%"},
+    "decision_risk": {"SI": "%", "US": "%"},
 }
 
 

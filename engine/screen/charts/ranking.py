@@ -23,8 +23,8 @@ def ranking_diagram(rig: RigAssessment, units: UnitSystem) -> Diagram:
     taken = _bars(effects, True, units, TAKEN, {
         "color": "var:blue/0.25", "line": {"color": "var:blue", "width": 1.5},
         "pattern": {"shape": "/", "fgcolor": "var:blue", "size": 7, "solidity": 0.3}})
-    names = _words([f"{_mark(e)} <b>{e.name}</b>" for e in effects], 0.0, "middle right")
-    sizes = _words([_size(e) for e in effects], 1.04 * longest, "middle left")
+    names = words_above([f"{_mark(e)} <b>{e.name}</b>" for e in effects], 0.0, "middle right")
+    sizes = words_above([_size(e) for e in effects], 1.04 * longest, "middle left")
     layout = {"margin": {"l": 8, "r": 8, "t": 8, "b": 46}, "font": {"size": 15}, "bargap": 0, "barmode": "overlay",
               "hovermode": "closest", "showlegend": True,
               "legend": {"orientation": "h", "x": 0, "y": -0.1, "yanchor": "top", "bgcolor": "rgba(0,0,0,0)"},
@@ -58,7 +58,8 @@ def _hover(e: Effect, units: UnitSystem) -> str:
     return "<br>".join([f"<b>{e.name}</b>", f"{_size(e)}{own}", *textwrap.wrap(e.words(units), 60)])
 
 
-def _words(texts: Sequence[str], x: float, position: str) -> dict[str, Any]:
+def words_above(texts: Sequence[str], x: float, position: str) -> dict[str, Any]:
+    """A trace of words above the bars of rows 0, 1, 2 …, from ``x`` on or up to it."""
     return {"type": "scatter", "mode": "text", "x": [x] * len(texts), "y": [i - _ABOVE for i in range(len(texts))],
             "text": list(texts), "textposition": position, "textfont": {"color": "var:text", "size": 14},
             "hoverinfo": "skip", "showlegend": False, "cliponaxis": False}

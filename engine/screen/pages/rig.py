@@ -7,10 +7,11 @@ from functools import lru_cache
 
 import streamlit as st
 
-from engine.job.case import Case
+from engine.job.case import Case, Value
 from engine.job.cautions import SHORT
 from engine.job.fields_path import BY_CONDUCTANCE, BY_KG, BY_NORMAL, BY_TWO_FLOWS, NONE, UNDECIDED
 from engine.job.fields_rig import BARE, COMPUTED, ELECTRIC_PROBE, MERCURY, OPEN_AIR, ORGANIC, VESSEL, WEIGHED
+from engine.job.forecast_words import budget_rows, forecast_advice, forecast_headline
 from engine.job.rig import RigAssessment, assess_rig
 from engine.job.rig_offers import Offer, offers
 from engine.job.rig_tables import (
@@ -32,10 +33,13 @@ from engine.job.rig_tables import (
     warming_rows,
 )
 from engine.job.tables import as_csv
+from engine.job.uncertainty import forecast
 from engine.screen import entries, live, session
 from engine.screen.charts.diagram import Diagram
+from engine.screen.charts.forecast import budget_diagram
 from engine.screen.charts.ranking import ranking_diagram
 from engine.screen.charts.rig_curves import flow_diagram, sampling_diagram, warm_up_diagram
+from engine.screen.instrument_entries import instruments
 from engine.screen.style import escaped, escaped_lines
 from engine.steam.errors import InputError
 
@@ -62,10 +66,10 @@ def page() -> None:
         return
     units = session.units()
     with ranking:
-        live.show((ranking_diagram(rig, units),), key="rig ranking", height=600, columns=1)
+        live.show((ranking_diagram(rig, units),), key="rig ranking", height=540, columns=1)
     _every_effect(rig)
     st.caption(SHORT)
-    for section in (_flow, _exhaust, _nozzle, _heat, _thermometer, _warm_up, _comparison):
+    for section in (_flow, _exhaust, _nozzle, _heat, _thermometer, _warm_up, _forecast, _comparison):
         section(rig)
 
 
@@ -80,8 +84,10 @@ def _assessment(place) -> RigAssessment | None:
         return st.session_state.get("last good rig")
     with place:
         st.markdown(f"### {escaped(headline(rig))}")
-        if words := " ".join((left_words(rig), *rig.notes)).strip():
+        if words := left_words(rig):
             st.markdown(escaped(words))
+        if rig.notes:
+            st.warning(escaped_lines("\n".join(rig.notes)))
         if aside := rig.point.aside:
             st.error(escaped_lines("Left out, since it cannot be used:\n" + "\n".join(map(str, aside))))
     return rig
@@ -104,8 +110,13 @@ def _entries(rig: RigAssessment | None) -> None:
 
 def _offers(offered: Sequence[Offer]) -> None:
     for o in offered:
-        st.button(o.label, key=f"offer {o.key}", on_click=session.change, args=(o.case,), width="stretch",
+        st.button(o.label, key=f"offer {o.key}", on_click=_take, args=(dict(o.changes),), width="stretch",
                   help="Writes it into the case. Undo brings back what stood there.")
+
+
+def _take(changes: dict[str, Value]) -> None:
+    """Write the offered entries into the case as it is now, beside whatever was just typed."""
+    session.change(session.case().with_(**changes))
 
 
 def _grid(*draw: Callable[[], None]) -> None:
@@ -252,6 +263,29 @@ def _warm_up(rig: RigAssessment) -> None:
     units = session.units()
     _section("Warm-up and steam used", warming_rows(rig, units), rig.warming.trouble,
              diagram=warm_up_diagram(rig, units), otherwise="With the body described, its warm-up is drawn here.")
+
+
+def _forecast(rig: RigAssessment) -> None:
+    """How sure the quality will be with the instruments chosen, before anyone climbs a ladder."""
+    units = session.units()
+    st.subheader("Uncertainty to expect", anchor=False)
+    try:
+        expected = forecast(rig.case)
+    except InputError as error:
+        st.caption(escaped_lines(str(error)))
+        expected = None
+    if expected is not None:
+        st.markdown(f"**{escaped(forecast_headline(expected))}** "
+                    + " ".join(escaped(line) for line in forecast_advice(expected)))
+    with st.expander("Instruments, and what else is in doubt", expanded=expected is None or bool(expected.missing)):
+        instruments()
+    if expected is None or (diagram := budget_diagram(expected)) is None:
+        return
+    left, right = st.columns([5, 6], gap="large")
+    with left:
+        live.show((diagram,), key="rig budget", height=460, columns=1)
+    with right:
+        st.table(budget_rows(expected, units))
 
 
 def _comparison(rig: RigAssessment) -> None:
