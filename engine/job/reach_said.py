@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from engine.calorimeter import Readability, WayKind
 from engine.job.answer import assumptions, quality_text
 from engine.job.case import describe
-from engine.job.fields_modes import ELECTRIC, SEPARATING
+from engine.job.fields_modes import ELECTRIC, SEPARATING, THROTTLING
 from engine.job.methods_said import power, share, thermometer
 from engine.job.reach import AS_ENTERED, NOT_STATED, End, ReachAssessment
 from engine.job.ways import Way
@@ -16,6 +16,7 @@ from engine.steam.units import UnitSystem
 SHAPES = {Readability.WHOLE: "●", Readability.THIN: "◐", Readability.PART: "◔", Readability.NONE: "○"}
 VERDICTS = {Readability.WHOLE: "reads", Readability.THIN: "thin", Readability.PART: "reads in part",
             Readability.NONE: "cannot read"}
+_WHERE = {THROTTLING: "on this line", SEPARATING: "behind this separator", ELECTRIC: "with this power"}
 
 
 @dataclass(frozen=True)
@@ -38,11 +39,12 @@ def said(plan: ReachAssessment, units: UnitSystem) -> ReachSaid:
     low, high = plan.dry.wetness, plan.wet.wetness
     expected = f"{100 * low:.2f} to {percent(high)} wetness" if low < high else f"{percent(high)} wetness"
     most = percent(plan.wetness_most)
+    where = _WHERE[plan.case["mode"]]
     headline = {
-        Readability.WHOLE: f"All that is expected, {expected}, can be read on this line.",
-        Readability.THIN: f"All that is expected, {expected}, can be read, but thinly where it is wettest.",
-        Readability.PART: f"Only a part can be read: up to {most} of the {expected} expected.",
-        Readability.NONE: f"Nothing of the expected {expected} can be read on this line.",
+        Readability.WHOLE: f"All that is expected, {expected}, can be read {where}.",
+        Readability.THIN: f"All that is expected, {expected}, can be read {where}, but thinly where it is wettest.",
+        Readability.PART: f"Only a part can be read {where}: up to {most} of the {expected} expected.",
+        Readability.NONE: f"Nothing of the expected {expected} can be read {where}.",
     }[plan.verdict]
     return ReachSaid(SHAPES[plan.verdict], headline, _reasons(plan, units), _assumed(plan, units))
 

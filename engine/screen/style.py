@@ -20,6 +20,7 @@ _CSS = """
 .legend i {display: inline-block; width: 2.2em; vertical-align: middle; margin-right: .5em;}
 @media (max-width: 640px) {
   [data-testid="stMainBlockContainer"] {padding-left: .8rem; padding-right: .8rem;}
+  .legend {white-space: normal;}
 }
 @media (min-width: 1800px) {
   html {font-size: 19px;}

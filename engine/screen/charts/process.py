@@ -136,7 +136,8 @@ def _ranges(axes: Axes, units: UnitSystem, limits: dict[str, tuple[float, float]
 
 def _window(axes: Axes, a: Assessment, units: UnitSystem, pinned) -> dict[str, Any]:
     """Where the processes happen, rounded outward so that it stands still while a slider moves a little."""
-    parts = (a.path, a.reach_path, a.bore_path, a.read_state, *(other.path for _, other in pinned))
+    line = a.states[0]  # behind a separator it lies beside the path
+    parts = (line, a.path, a.reach_path, a.bore_path, a.read_state, *(other.path for _, other in pinned))
     drawn = [part for part in parts if part is not None]
 
     def span(name: str, step: float, pad: float) -> tuple[float, float]:

@@ -30,8 +30,8 @@ def _log_axis(title: str, low: float, high: float) -> dict[str, Any]:
             "range": [math.log10(low), math.log10(high)], "title": {"text": title, "standoff": 4}}
 
 
-def _layout(x: dict[str, Any], y: dict[str, Any], **more: Any) -> dict[str, Any]:
-    return {"margin": {"l": 62, "r": 12, "t": 8, "b": 46}, "showlegend": False, "hovermode": "closest",
+def _layout(x: dict[str, Any], y: dict[str, Any], left: int = 62, **more: Any) -> dict[str, Any]:
+    return {"margin": {"l": left, "r": 12, "t": 8, "b": 46}, "showlegend": False, "hovermode": "closest",
             "font": {"size": 14}, "xaxis": x, "yaxis": y, **more}
 
 
@@ -153,14 +153,14 @@ def section_diagrams(plan: ReachAssessment, both: tuple[Section, Section], units
     line = units.text(plan.si["p_line"], "pressure")
     return (_section("section-line", f"Along the line pressure, at {held}", plan, both[0],
                      units.value(both[0].along, "pressure"), units.value(plan.si["p_line"], "pressure"),
-                     f"line pressure, {pressure} abs", True),
+                     f"line pressure, {pressure} abs", True, "top left"),
             _section("section-other", f"Along the {other}, at a line of {line} abs", plan, both[1],
                      from_si(both[1].along, unit, kind), from_si(_ordinate_of(plan), unit, kind), title,
-                     kind == "pressure"))
+                     kind == "pressure", "top right" if kind == "pressure" else "top left"))
 
 
 def _section(key: str, title: str, plan: ReachAssessment, section: Section, x: np.ndarray, here: float,
-             x_title: str, log: bool) -> Diagram:
+             x_title: str, log: bool, beside: str) -> Diagram:
     readable, comfortable = 100 * section.readable, 100 * section.comfortable
     tops = [v for v in (np.nanmax(np.append(readable, 0.0)), 100 * plan.wet.wetness) if math.isfinite(v)]
     top = 1.12 * max(max(tops), 0.5)
@@ -174,7 +174,7 @@ def _section(key: str, title: str, plan: ReachAssessment, section: Section, x: n
               _line(x, comfortable, "var:blue", 2, "dash"),
               {**_line(x, readable, "var:blue", 3.5), "hoverinfo": "all", "hovertemplate": hover},
               {"type": "scatter", "mode": "markers+text", "x": [here], "y": [most], "text": [f"<b>{most:.2f} %</b>"],
-               "textposition": "middle right", "textfont": {"size": 14, "color": "var:text"}, "hoverinfo": "skip",
+               "textposition": beside, "textfont": {"size": 14, "color": "var:text"}, "hoverinfo": "skip",
                "marker": {"size": 13, "color": "var:vermilion", "line": {"color": "var:background", "width": 2}}}]
     axis = _log_axis(x_title, x[0], x[-1]) if log else {
         **_AXIS, "title": {"text": x_title, "standoff": 4}, "range": [float(x[0]), float(x[-1])]}
@@ -218,7 +218,7 @@ def instrument_diagram(plan: ReachAssessment, chart: InstrumentChart, units: Uni
     layout = _layout({**_AXIS, "title": {"text": f"{thermometer(plan.wet.assessment)}, {chart.unit}", "standoff": 4},
                       "minor": fine, "gridcolor": "var:muted/0.45"},
                      {**_AXIS, "title": {"text": f"quality of the {chart.quality_of}", "standoff": 4}, "minor": fine,
-                      "gridcolor": "var:muted/0.45", "tickformat": ".3f" if 1 - x_low > 0.008 else ".4f"},
+                      "gridcolor": "var:muted/0.45", "tickformat": ".3f" if 1 - x_low > 0.008 else ".4f"}, 78,
                      annotations=[words],
                      meta={"process": {"xaxis.range": [t0 - pad, t1 + pad], "yaxis.range": [y0, y1]}})
     label = (f"Quality over temperature, from {chart.x_least:.4f} at {shown(chart.T_least):.1f} to 1 at {t1:.1f} "
