@@ -59,16 +59,17 @@ class Balance:
               T_ambient=None):
         """Heat loss per kg [J/kg] and exhaust velocity [m/s] for the same readings."""
         c2 = 0.0
-        if sample_flow is not None and self.exhaust_bore:
-            c2 = sample_flow * _exhaust_volume(p_exhaust, T_exhaust) / (0.25 * np.pi * self.exhaust_bore**2)
-        return loss * self._heat_loss(p_line, p_exhaust, T_exhaust, sample_flow, recovery, T_normal, T_ambient, c2), c2
+        flow = None if sample_flow is None else np.where(np.asarray(sample_flow) > 0, sample_flow, np.nan)
+        if flow is not None and self.exhaust_bore:
+            c2 = flow * _exhaust_volume(p_exhaust, T_exhaust) / (0.25 * np.pi * self.exhaust_bore**2)
+        return loss * self._heat_loss(p_line, p_exhaust, T_exhaust, flow, recovery, T_normal, T_ambient, c2), c2
 
-    def _heat_loss(self, p_line, p_exhaust, T_exhaust, sample_flow, recovery, T_normal, T_ambient, c2):
+    def _heat_loss(self, p_line, p_exhaust, T_exhaust, flow, recovery, T_normal, T_ambient, c2):
         if self.method == BY_KG:
             return self.heat_loss
         if self.method in (BY_CONDUCTANCE, BY_TWO_FLOWS):
             T_ambient = self.T_ambient if T_ambient is None else T_ambient
-            return self.conductance * (T_exhaust - T_ambient) / sample_flow
+            return self.conductance * (T_exhaust - T_ambient) / flow
         if self.method == BY_NORMAL:
             # on dry steam the balance must give h_g of the line: what is missing was lost
             h_g, h_normal = _normal_enthalpies(p_line, p_exhaust, T_normal)

@@ -143,14 +143,21 @@ def _given(value: object) -> str:
     return value[:120] if isinstance(value, str) else shortened(value)
 
 
+@cache
+def _cells(name: str, number: int) -> tuple[Field, ...]:
+    """The fields of one row of a table."""
+    field = FIELDS[name]
+    return tuple(field.cell(number, column) for column in field.columns)
+
+
 def slots(case: Case) -> dict[str, tuple[Field, Value]]:
     """Everything entered by its place, down to the cells of the tables, with the field that rules it."""
     found = {name: (field, case[name]) for name, field in FIELDS.items()}
     for name, field in FIELDS.items():
         if field.form == TABLE and case[name] and _is_table(field, case[name]):
             for number, row in enumerate(case[name], 1):
-                cells = (field.cell(number, column) for column in field.columns)
-                found |= {cell.name: (cell, value) for cell, (_, value) in zip(cells, row.cells, strict=True)}
+                found |= {cell.name: (cell, value)
+                          for cell, (_, value) in zip(_cells(name, number), row.cells, strict=True)}
     return found
 
 

@@ -7,7 +7,7 @@ both pressures, one thermometer in the reading and in the normal reading) are on
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 from typing import NamedTuple
 
@@ -30,12 +30,16 @@ from engine.job.instruments import (
 from engine.measurement import (
     SAMPLING,
     Budget,
+    Comparison,
     Component,
     Input,
     Limits,
+    MonteCarlo,
     Rule,
     Verdicts,
+    compare,
     decide_both,
+    monte_carlo,
     normal,
     rectangular,
     uncertainty_budget,
@@ -68,7 +72,7 @@ class Measurement:
     ``cautions`` are remarks on the instruments.
     """
 
-    model: Balance
+    model: Callable
     inputs: tuple[Input, ...]
     on_result: tuple[Component, ...]
     coverage: float
@@ -78,6 +82,19 @@ class Measurement:
     def budget(self) -> Budget:
         """The GUM budget; InputError where the reading sits at an edge without a slope."""
         return uncertainty_budget(self.model, self.inputs, on_result=self.on_result, coverage=self.coverage)
+
+
+class Check(NamedTuple):
+    """Monte Carlo beside a budget, with sampling and by instruments alone (the same where it was not stated).
+
+    ``superheated`` is the part of the draws by instruments whose line is superheated.
+    """
+
+    drawn: MonteCarlo
+    comparison: Comparison
+    instruments: MonteCarlo
+    comparison_instruments: Comparison
+    superheated: float
 
 
 class Term(NamedTuple):
@@ -262,3 +279,17 @@ def improvements(budget: Budget) -> tuple[Better, ...]:
 def sampling_share(budget: Budget) -> float:
     """Part of the variance that sampling makes up, 0 to 1."""
     return float(np.sum([row.share for row in budget.rows if row.group == SAMPLING]))
+
+
+def check(measurement: Measurement, budget: Budget, *, draws: int = 1_000_000, seed: int = 1,
+          progress: Callable[[float], None] | None = None) -> Check:
+    """The same doubts propagated as distributions (JCGM 101), compared with the budget.
+
+    One seed gives one answer. ``progress`` is called with the fraction done. Raises InputError where
+    too few of the draws have a quality.
+    """
+    drawn = monte_carlo(measurement.model, measurement.inputs, on_result=measurement.on_result,
+                        coverage=measurement.coverage, draws=draws, seed=seed, progress=progress)
+    alone = drawn.without_sampling or drawn
+    return Check(drawn, compare(budget, drawn), alone, compare(budget.without(SAMPLING), alone),
+                 alone.probability(lower=1.0))
