@@ -17,6 +17,7 @@ from engine.job.fields_rig import BARE
 from engine.job.fields_runsheet import GAS_NOTED
 from engine.job.runsheet_plan import BLOW_FROM, BLOW_TO, FLOW_ALARM, WITHIN, Plan
 from engine.job.said import Said
+from engine.job.uncertainty import leg_pressure
 
 
 @dataclass(frozen=True)
@@ -119,12 +120,12 @@ def _setup(plan: Plan) -> Found:
     if entry:
         yield "nozzle", Said("Nozzle across the pipe, its {0} ports of {1} facing the flow. The line passes them at "
                              "{2} times the velocity in them; equal velocities would take {3} of port area.",
-                             ((si["ports"], "count"), (si["port_bore"], "length", 2),
+                             ((si["ports"], "count"), (si["port_bore"], "bore"),
                               (entry.value.velocity_ratio, "number", 2), (nozzle.value.isokinetic_area.value, "area")))
     else:
         yield "nozzle", Said("Nozzle across the pipe, its ports facing the flow."), entry.trouble
     yield "sampling", (Said("Sampling line {0} to the orifice, without pockets, lagged; its valve of full bore.",
-                            ((si["sampling_length"], "length", 0),)) if si["sampling_length"] else
+                            ((si["sampling_length"], "dimension"),)) if si["sampling_length"] else
                        Said("Sampling line as short as it can be, without pockets, lagged; its valve of full bore."))
     if plan.electric:
         yield "heater", Said("Heater and power meter connected; nothing is throttled on the way to it.")
@@ -136,9 +137,8 @@ def _setup(plan: Plan) -> Found:
     yield "lagging", _lagging(plan)
     yield "thermometer", *_thermometer(plan)
     if si["leg_height"]:
-        head = plan.shown["p_line"] + (si.p_barometer if plan.basis["p_line"] == "gauge" else 0.0) - si["p_line"]
         yield "leg", Said("Line gauge {0} below its tapping, its leg full of cold water: that adds {1} to it.",
-                          ((si["leg_height"], "height"), (head, "pressure difference")))
+                          ((si["leg_height"], "height"), (leg_pressure(si), "pressure difference")))
     yield "weigh", _weighing(plan)
 
 
@@ -147,7 +147,7 @@ def _orifice(plan: Plan) -> tuple[Said, str]:
     if not flow:
         return Said("Orifice clean, its bore measured, its edge as drawn."), flow.trouble
     return Said("Orifice of {0} clean, its edge as drawn. By its bore it passes {1}.",
-                ((plan.a.si["bore"], "length", 2), (flow.value.orifice.computed, "mass flow"))), ""
+                ((plan.a.si["bore"], "bore"), (flow.value.orifice.computed, "mass flow"))), ""
 
 
 def _exhaust(plan: Plan) -> tuple[Said, str]:
@@ -158,7 +158,7 @@ def _exhaust(plan: Plan) -> tuple[Said, str]:
         exhaust = plan.of_rig("exhaust")
         return Said(f"{free}."), exhaust.value.pipe.trouble if exhaust else exhaust.trouble
     return Said(free + ": {0} bore, {1} after the thermometer. It makes {2} abs at the thermometer.",
-                ((si["exhaust_bore"], "length"), (si["exhaust_length"], "height"), (piped, "pressure", 4))), ""
+                ((si["exhaust_bore"], "length"), (si["exhaust_length"], "height"), (piped, "pressure"))), ""
 
 
 def _separator(plan: Plan) -> Said:
@@ -176,7 +176,7 @@ def _lagging(plan: Plan) -> Said:
         return Said(f"The rig is planned without lagging: {where} bare. Lagging it would spare most of the heat loss.")
     if si["lagging"]:
         return Said(f"Lagging of {{0}} on {where}, dry: wet lagging loses several times as much.",
-                    ((si["lagging"], "length", 0),))
+                    ((si["lagging"], "dimension"),))
     return Said(f"Lagging on {where}, dry: wet lagging loses several times as much.")
 
 
@@ -188,9 +188,9 @@ def _thermometer(plan: Plan) -> tuple[Said, str]:
     good = thermometer.value.immersion_good if thermometer else thermometer
     if not good:
         return Said("Thermometer immersed {0} in the stream, its pocket clean, its head lagged.",
-                    ((si["immersion"], "length", 0),)), good.trouble
+                    ((si["immersion"], "dimension"),)), good.trouble
     return Said("Thermometer immersed {0} in the stream, where {1} are enough against heat along its stem; pocket "
-                "clean, head lagged.", ((si["immersion"], "length", 0), (good.value, "length", 0))), ""
+                "clean, head lagged.", ((si["immersion"], "dimension"), (good.value, "dimension"))), ""
 
 
 def _weighing(plan: Plan) -> Said:

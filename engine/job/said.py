@@ -23,6 +23,8 @@ _SPECIAL: dict[str, Callable[[float, UnitSystem], str]] = {
     "barometer": lambda value, units: f"{from_si(value, _BAROMETER[units.name], 'pressure'):.2f} "
                                       f"{_BAROMETER[units.name]}",
     "height": lambda value, units: _height(value, units),
+    "dimension": lambda value, units: units.text(value, "length", {"SI": 0, "US": 2}[units.name]),
+    "bore": lambda value, units: units.text(value, "length", {"SI": 2, "US": 4}[units.name]),
     "seconds": lambda value, units: f"{value:.0f} s",
     "interval": lambda value, units: f"{value / 60:.3g} min",
     "heat": lambda value, units: f"{value / 1e3:.1f} kW" if units.name == "SI" else

@@ -1,0 +1,326 @@
+"""The Run sheet page: the procedure for the open case, to tick on a tablet at the line, and to print."""
+
+from __future__ import annotations
+
+from datetime import datetime
+from functools import lru_cache
+from zoneinfo import ZoneInfo, ZoneInfoNotFoundError
+
+import streamlit as st
+
+from engine.job.case import Case, faults_of
+from engine.job.cautions import CAUTIONS, SHORT
+from engine.job.fields_modes import ELECTRIC
+from engine.job.fields_runsheet import GAS_NONE, GAS_NOTED
+from engine.job.paper import PAPERS, Table, usual_paper
+from engine.job.rows import Entry
+from engine.job.runsheet import RunSheet, headline, notices, run_sheet, tick, untick
+from engine.job.runsheet_plan import Plan, plan_of
+from engine.job.runsheet_print import (
+    deviation_table,
+    gauge_table,
+    mark_table,
+    runsheet_html,
+    title_of,
+)
+from engine.job.runsheet_readings import (
+    columns_of,
+    reading_table,
+    readings_outside,
+    runs_of,
+    with_reading,
+)
+from engine.job.runsheet_steps import Section, Step
+from engine.screen import entries, session
+from engine.screen.style import escaped, escaped_lines
+from engine.steam.errors import Fault, InputError
+from engine.steam.units import to_si
+
+# hands in gloves: whatever is pressed during the test is a finger wide and high
+_CSS = """
+<style>
+.st-key-steps button, .st-key-take button {min-height: 3.5rem; font-size: 1.1rem;}
+.st-key-steps [data-testid="stMarkdownContainer"] p {font-size: 1.08rem; line-height: 1.4;}
+.st-key-take input, .st-key-hand input {min-height: 3.2rem; font-size: 1.15rem;}
+.st-key-parts button {min-height: 3rem;}
+</style>
+"""
+SHEET, REHEARSAL = "Run sheet", "Rehearsal"
+
+
+@lru_cache(maxsize=32)
+def _planned(case: Case) -> Plan:
+    """The plan of a case; neither ticks nor readings change it. Raises InputError."""
+    return plan_of(case)
+
+
+def sheet_of(case: Case) -> RunSheet:
+    """The run sheet of a case; the same plan is not worked out twice. Raises InputError."""
+    return run_sheet(case, _planned(case.with_(ticks=(), readings=(), deviations="")))
+
+
+def page() -> None:
+    """What it leads to, then the steps, the gauges, the readings, the paper."""
+    st.html(_CSS)
+    top = st.container(key="sheet answer", border=True)
+    sheet = _sheet(top)
+    _about()
+    if sheet is None:
+        return
+    _steps(sheet)
+    _gauges(sheet)
+    _readings(sheet)
+    _paper(sheet)
+    with st.expander("Cautions"):
+        st.markdown("\n".join(f"- {line}" for line in CAUTIONS))
+
+
+def _sheet(place) -> RunSheet | None:
+    units = session.units()
+    with place:
+        try:
+            sheet = sheet_of(session.case())
+        except InputError as error:
+            st.error(escaped_lines(str(error)))
+            st.caption("Nothing is lost: correct the entry, or undo. A run sheet is made once every entry can be used.")
+            return None
+        done, held = len(sheet.steps) - len(sheet.unticked), len(sheet.held)
+        holds = f" **✋ {held} hold point{'s' if held != 1 else ''} open.**" if held else ""
+        st.markdown(f"### {escaped(headline(sheet, units))}")
+        st.markdown(f"{done} of {len(sheet.steps)} steps ticked.{holds}")
+        for line in notices(sheet, units):
+            st.markdown(escaped(line))
+        st.caption(SHORT)
+    return sheet
+
+
+def _about() -> None:
+    with st.expander("Where, who, how many readings"):
+        left, right = st.columns(2, gap="medium")
+        with left:
+            for name in ("place", "permit", "tested_by", "witnessed_by"):
+                entries.words(name)
+        with right:
+            entries.words("instrument_list", area=True)
+            entries.choice("gas_hazard", {GAS_NONE: "None noted", GAS_NOTED: "Toxic or suffocating gas possible"})
+            for name, step in (("runs_planned", 1.0), ("read_every", 0.5), ("duration", 5.0)):
+                entries.number(name, step=step)
+
+
+# ---- steps
+
+
+def _steps(sheet: RunSheet) -> None:
+    st.subheader("Steps", anchor=False)
+    with st.container(key="hand"):
+        session.mirror("initials", st.session_state.get("hand", ""))
+        st.text_input("Initials", key="initials", max_chars=12, placeholder="of whoever ticks", on_change=_signed,
+                      help="A tick without a name says nothing. They are needed once, before the first tick.")
+    _refused("steps")
+    sections = {section.key: section for section in sheet.sections}
+    with st.container(key="parts"):
+        chosen = st.segmented_control("Part", list(sections), key="part", label_visibility="collapsed",
+                                      format_func=lambda key: sections[key].title.split(":")[0],
+                                      default=_current(sheet).key, required=True)
+    _section(sections.get(chosen) or _current(sheet), sheet)
+
+
+def _current(sheet: RunSheet) -> Section:
+    """The first part in which something is left to do."""
+    left = {step.key for step in sheet.unticked}
+    return next((s for s in sheet.sections if any(step.key in left for step in s.steps)), sheet.sections[-1])
+
+
+def _section(section: Section, sheet: RunSheet) -> None:
+    held = sheet.held and not section.hold
+    if held:
+        st.warning(f"✋ {len(sheet.held)} hold points are open. Nothing here starts before all of them are ticked.")
+    with st.container(key="steps"):
+        for step in section.steps:
+            _step(step, sheet, bool(held))
+    left = [s.title for s in sheet.sections if s.key == section.key and all(t.key in sheet.ticks for t in s.steps)]
+    if left:
+        st.success(f"All of “{left[0]}” is ticked.")
+
+
+def _step(step: Step, sheet: RunSheet, held: bool) -> None:
+    mark, words = st.columns([1, 4], vertical_alignment="center", gap="medium")
+    ticked = sheet.ticks.get(step.key)
+    with mark:
+        if ticked:
+            with st.popover(f"☑ {ticked.time[-5:]} {ticked.initials}", width="stretch", key=f"ticked {step.key}"):
+                _correct(step, sheet)
+        else:
+            st.button("☐ Done", key=f"tick {step.key}", width="stretch", on_click=_tick, args=(step.key,),
+                      disabled=held, help="Writes time and initials into the case.")
+    with words:
+        st.markdown(escaped(step.said.text(session.units())))
+        if step.missing:
+            st.caption(f"Number missing: {escaped(step.missing)}")
+        if ticked and ticked.remark:
+            st.caption(f"Remark: {escaped(ticked.remark)}")
+
+
+def _signed() -> None:
+    """Initials outlive their widget, which a change of the page takes away."""
+    st.session_state["hand"] = st.session_state["initials"]
+
+
+def _refuse(place: str, error: InputError) -> None:
+    """Keep a refusal for the place where it is read."""
+    st.session_state["refused"] = (place, str(error))
+
+
+def _refused(place: str) -> None:
+    where, words = st.session_state.get("refused") or ("", "")
+    if where == place:
+        st.error(escaped_lines(words))
+        st.session_state["refused"] = None
+
+
+def _tick(key: str) -> None:
+    try:
+        session.change(tick(session.case(), key, _now(), st.session_state["initials"]))
+    except InputError as error:
+        _refuse("steps", error)
+
+
+def _now() -> str:
+    """Date and time where the reader is, to the minute."""
+    try:
+        zone = ZoneInfo(st.context.timezone) if st.context.timezone else None
+    except (ZoneInfoNotFoundError, ValueError):
+        zone = None
+    return datetime.now(zone).strftime("%Y-%m-%d %H:%M")
+
+
+def _correct(step: Step, sheet: RunSheet) -> None:
+    """Time, initials and remark of a tick, to be corrected; or the tick taken back."""
+    ticked = sheet.ticks[step.key]
+    for label, name, most in (("Time", "time", 20), ("Initials", "initials", 12), ("Remark", "remark", 300)):
+        key = f"{name} of {step.key}"
+        session.mirror(key, getattr(ticked, name))
+        st.text_input(label, key=key, max_chars=most, on_change=_corrected, args=(step.key,))
+    st.button("Take the tick back", key=f"untick {step.key}", on_click=_untick, args=(step.key,))
+
+
+def _corrected(key: str) -> None:
+    time, initials, remark = (st.session_state[f"{name} of {key}"] for name in ("time", "initials", "remark"))
+    try:
+        session.change(tick(session.case(), key, time, initials, remark))
+    except InputError as error:
+        _refuse("steps", error)
+
+
+def _untick(key: str) -> None:
+    session.change(untick(session.case(), key))
+
+
+# ---- gauges and readings
+
+
+def _table(table: Table) -> None:
+    """A table whose headings may repeat or be empty: blanks of growing length keep them apart."""
+    headings = [h or " " * (k + 1) for k, h in enumerate(table.headings)]
+    st.table([dict(zip(headings, map(escaped, row), strict=True)) for row in table.rows])
+
+
+def _gauges(sheet: RunSheet) -> None:
+    units = session.units()
+    st.subheader("What every gauge must show", anchor=False)
+    _table(gauge_table(sheet, units))
+    with st.expander("The scale of the thermometer, from dry to wet"):
+        _table(mark_table(sheet, units))
+    st.subheader("When it is otherwise", anchor=False)
+    _table(deviation_table(sheet, units))
+
+
+def _readings(sheet: RunSheet) -> None:
+    st.subheader("Readings", anchor=False)
+    if sheet.case["mode"] == ELECTRIC:
+        st.markdown("With a heater the means of line pressure, power, flow and temperature are entered on the Path "
+                    "page; the printed sheet has room for every set.")
+        return
+    run = _take(sheet)
+    typed = runs_of(sheet.case)
+    for name, rows in typed.items():
+        st.markdown(f"**Run {escaped(name)}**" if name else "**Without a run**")
+        _table(reading_table(rows, sheet.plan, session.units()))
+    if typed.get(run):
+        st.button(f"Take out the last set of run {run}", key="drop set", on_click=_drop, args=(run,))
+
+
+def _take(sheet: RunSheet) -> str:
+    """Room for one set of readings, with buttons wide enough for gloves. Returns the run chosen."""
+    plan = sheet.plan
+    with st.container(key="take", border=True):
+        names = [str(number) for number in range(1, plan.runs + 1)]
+        run = st.segmented_control("Run", names, key="run", default=names[0], required=True) or names[0]
+        taken = runs_of(sheet.case).get(run, [])
+        st.markdown(f"Set {len(taken) + 1} of {plan.sets}, run {run}")
+        last = taken[-1] if taken else None
+        at = 0.0 if last is None or last["time"] is None else (
+            to_si(last["time"].value, last["time"].unit, "time") + plan.a.si["read_every"]) / 60
+        columns = columns_of(plan, session.units())
+        key = f"set {run} {len(sheet.case['readings'])}"
+        grid = st.columns(4)
+        grid[0].number_input("Time from the start, min", value=at, step=0.5, format="%.7g", key=f"{key} time")
+        for k, column in enumerate(columns, 1):
+            grid[k % 4].number_input(column.heading, value=None, step=0.1, format="%.7g",
+                                     key=f"{key} {column.name} {column.unit}")
+        grid[3].text_input("Remark", max_chars=200, key=f"{key} remark")
+        st.button("Write this set down", key="write set", type="primary", width="stretch", on_click=_write,
+                  args=(run, key, columns))
+    _refused("readings")
+    _say_outside(sheet)
+    return run
+
+
+def _write(run: str, key: str, columns) -> None:
+    state = st.session_state
+    cells: dict[str, Entry | str | None] = {"run": run, "remark": state[f"{key} remark"]}
+    if state[f"{key} time"] is not None:
+        cells["time"] = Entry(state[f"{key} time"], "min")
+    for c in columns:
+        value = state[f"{key} {c.name} {c.unit}"]
+        cells[c.name] = None if value is None else Entry(value, c.unit, c.basis)
+    try:
+        if all(cells[c.name] is None for c in columns):
+            raise InputError(Fault("set of readings", "nothing", "", "one reading at least"))
+        case = with_reading(session.case(), **cells)
+        if faults := faults_of(case):
+            raise InputError(*faults)
+        session.change(case)
+    except InputError as error:
+        _refuse("readings", error)
+
+
+def _drop(run: str) -> None:
+    case = session.case()
+    last = max(k for k, row in enumerate(case["readings"]) if row["run"].strip() == run)
+    session.change(case.with_(readings=case["readings"][:last] + case["readings"][last + 1:]))
+
+
+def _say_outside(sheet: RunSheet) -> None:
+    """What the set written down last shows that it should not."""
+    rows = sheet.case["readings"]
+    if not rows:
+        return
+    said = {d.key: d for d in sheet.deviations}
+    for key in readings_outside(rows[-1], sheet.plan, session.site_barometer()):
+        d, units = said[key], session.units()
+        st.warning(f"**{escaped(d.name)}.** {escaped(d.means.text(units))} {escaped(d.do.text(units))}")
+
+
+def _paper(sheet: RunSheet) -> None:
+    case, units = sheet.case, session.units()
+    st.subheader("On paper", anchor=False)
+    paper = st.segmented_control("Paper", PAPERS, key="sheet paper", default=usual_paper(units), required=True)
+    st.download_button("Save the run sheet to print", lambda: runsheet_html(case, units, paper or usual_paper(units)),
+                       "run-sheet.html", "text/html", key="sheet html", on_click="ignore",
+                       help=f"{title_of(case)}: one page of HTML; open it in any browser and print.")
+
+
+if __name__ == "__main__":
+    page()
+
