@@ -223,9 +223,9 @@ def separated_reading(p_line, x, p_exhaust, drain_fraction, *, p_separator=None,
                                                    drain_fraction=drain_fraction)
     h, sep = np.asarray(wet_steam(p, x).h) - q_s, saturated(p_s)
     x_t = ((h - z * sep.h_f) / (1 - z) - sep.h_f) / (sep.h_g - sep.h_f)
-    require("drain_fraction", z, (x_t <= 1 + _ROUNDING) & (x_t >= 0), "no more than the water there is",
+    require("drain_fraction", z, (x_t <= 1 + _ROUNDING) & (x_t >= -_ROUNDING), "no more than the water there is",
             hint="1 - x, and what the vessel condenses by its heat loss")
-    x_t = np.minimum(x_t, 1.0)
+    x_t = np.clip(x_t, 0.0, 1.0)
     seen = exhaust_temperature(*((float(p_s), float(x_t), float(p2)) if scalar else (p_s, x_t, p2)), **terms)
     return SeparatedReading(give_back(x_t, scalar), seen.T_exhaust, seen.superheat, seen.status)
 
