@@ -12,14 +12,12 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from engine.calorimeter import WEATHER_HALF_WIDTH, water_leg
-from engine.job.case import T_LEG, Resolved, resolve
+from engine.job.case import GAUGE, T_LEG
 from engine.job.fields import FIELDS
 from engine.job.fields_path import BY_ALTITUDE, BY_CONDUCTANCE, BY_KG, BY_NORMAL, NONE, UNDECIDED
 from engine.job.rig_flow import Exhaust, Flow, Nozzle, sampling_error
 from engine.job.rig_heat import BY_GEOMETRY, Loss, Thermometer, WarmingUp
 from engine.job.rig_point import Part, Point, Reading, shares
-from engine.job.rows import Entry
-from engine.steam.errors import InputError
 from engine.steam.units import P_STANDARD, UnitSystem, from_si
 
 DISCHARGE_DOUBT = 0.05  # by so much a discharge coefficient out of a table may be off (common practice)
@@ -124,13 +122,20 @@ def _heat(point: Point, losses: dict[str, Part[Loss]]) -> Found:
         return
     corrected = not (point.flow_computed and method == BY_CONDUCTANCE)  # the case itself has no flow for it yet
     yield _loss(name, chosen.value, corrected, f"The sample loses {{0}}, by {_SAID.get(method, method)}.")
-    if method in (BY_CONDUCTANCE, BY_KG) and losses[BY_GEOMETRY]:
-        beyond = losses[BY_GEOMETRY].value.heat_loss - chosen.value.heat_loss
-        r = point.reading
-        yield _Pair(Effect("Heat loss beyond the correction", None, (beyond, "enthalpy"), False,
-                           "Dimensions and lagging say {0}, where {1} is taken off.",
-                           ((losses[BY_GEOMETRY].value.heat_loss, "enthalpy"), (chosen.value.heat_loss, "enthalpy"))),
-                    r, replace(r, heat_loss=r.heat_loss + beyond))
+    if method in (BY_CONDUCTANCE, BY_KG):
+        yield _beyond(point, losses[BY_GEOMETRY], chosen.value)
+
+
+def _beyond(point: Point, geometry: Part[Loss], taken: Loss) -> Effect | _Pair:
+    """What dimensions and lagging say beyond the loss that is taken off."""
+    name = "Heat loss beyond the correction"
+    if not geometry:
+        return Effect(name, None, trouble=geometry.trouble)
+    said, r = geometry.value.heat_loss, point.reading
+    return _Pair(Effect(name, None, (said - taken.heat_loss, "enthalpy", 2), False,
+                        "Dimensions and lagging say {0}, where {1} is taken off.",
+                        ((said, "enthalpy", 2), (taken.heat_loss, "enthalpy", 2))),
+                 r, replace(r, heat_loss=r.heat_loss + said - taken.heat_loss))
 
 
 _SAID = {BY_CONDUCTANCE: "the conductance UA", BY_KG: "the value per kg", BY_NORMAL: "a normal reading"}
@@ -236,31 +241,23 @@ def _gauges(point: Point) -> Found:
         yield _Pair(Effect("Water leg of the gauge", None, (head, "pressure difference"), True,
                            "Water in the leg of the line gauge adds {0} to it.", ((head, "pressure difference"),)),
                     point.variant(p_line=si["p_line"] + head), point.reading)
+    if GAUGE not in (point.case["p_line"].basis, point.case["p_exhaust"].basis):
+        return
     if point.case["barometer_source"] == BY_ALTITUDE:
-        yield from _weather(point, "Weather", si.p_barometer + WEATHER_HALF_WIDTH,
-                            Effect("Weather", None, (WEATHER_HALF_WIDTH, "pressure difference"), False,
-                                   "The barometer is that of the altitude; weather moves the real one by {0} either "
-                                   "way.", ((WEATHER_HALF_WIDTH, "pressure difference"),), True))
+        own = (WEATHER_HALF_WIDTH, "pressure difference")
+        yield _Pair(Effect("Weather", None, own, False, "The barometer is that of the altitude; weather moves the real "
+                           "one by {0} either way.", (own,), True),
+                    _other_barometer(point, WEATHER_HALF_WIDTH), point.reading)
     else:
-        off = P_STANDARD - si.p_barometer
-        yield from _weather(point, "Barometer", P_STANDARD,
-                            Effect("Barometer", None, (off, "pressure difference"), True,
-                                   "Against the standard atmosphere at sea level the barometer differs by {0}.",
-                                   ((off, "pressure difference"),)))
+        own = (P_STANDARD - si.p_barometer, "pressure difference")
+        yield _Pair(Effect("Barometer", None, own, True, "From the standard atmosphere at sea level the barometer "
+                           "differs by {0}.", (own,)), _other_barometer(point, own[0]), point.reading)
 
 
-def _weather(point: Point, name: str, p_barometer: float, effect: Effect) -> Found:
-    """What another barometer does to the pressures entered as gauge; nothing where none was."""
-    case = point.case.with_(barometer_source="reading", p_barometer=Entry(p_barometer, "Pa", "absolute"))
-    if "gauge" not in (case["p_line"].basis, case["p_exhaust"].basis):
-        return
-    try:
-        moved: Resolved = resolve(case)
-    except InputError as error:
-        yield Effect(name, None, trouble=str(error.faults[0]).split("\n")[0])
-        return
-    yield _Pair(effect, point.variant(p_line=point.si["p_line"] + moved["p_line"] - point.line["p_line"],
-                                      p_exhaust=moved["p_exhaust"]), point.reading)
+def _other_barometer(point: Point, off: float) -> Reading:
+    """The reading with a barometer that differs by ``off`` [Pa]: it moves what was entered as gauge."""
+    gauge = {name: off if point.case[name].basis == GAUGE else 0.0 for name in ("p_line", "p_exhaust")}
+    return point.variant(**{name: point.si[name] + moved for name, moved in gauge.items()})
 
 
 def _warm_up(point: Point, warming: Part[WarmingUp]) -> Found:

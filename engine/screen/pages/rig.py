@@ -66,7 +66,9 @@ def page() -> None:
         return
     units = session.units()
     with ranking:
-        live.show((ranking_diagram(rig, units),), key="rig ranking", height=540, columns=1)
+        if rig.sized:
+            live.show((ranking_diagram(rig, units),), key="rig ranking", height=540, columns=1)
+        _unsized(rig)
     _every_effect(rig)
     st.caption(SHORT)
     for section in (_flow, _exhaust, _nozzle, _heat, _thermometer, _warm_up, _forecast, _comparison):
@@ -182,6 +184,12 @@ def _warm_up_entries() -> None:
 
 
 # ---- what follows from it
+
+
+def _unsized(rig: RigAssessment) -> None:
+    if rig.unsized:
+        lines = (f"- ○ **{e.name}**: {escaped(e.trouble)}" for e in rig.unsized)
+        st.markdown("\n".join(["Not sized yet:", "", *lines]))
 
 
 def _every_effect(rig: RigAssessment) -> None:
