@@ -161,7 +161,7 @@ def isenthalpic_path_at(p_line, h_line, p_exhaust, *, points: int = POINTS) -> P
     named, scalar = door(p_line=p_line, h_line=h_line, p_exhaust=p_exhaust)
     shape, (p_line, h, p_exhaust) = _shaped(named, points)
     T = if97.saturation_T(p_line)
-    steam = (h >= if97.enthalpy_1(p_line, T)) & (h <= if97.enthalpy_2(p_line, np.full(T.shape, T_MAX)))
+    steam = (h >= if97.enthalpy_1(p_line, T) * (1 - ROUNDING)) & (h <= if97.enthalpy_2(p_line, np.full(T.shape, T_MAX)))
     if faults := refuse_outside("h_line", named["h_line"], steam.reshape(shape), "that of wet or superheated steam",
                                 why=f"the path starts between saturated water and vapour of {T_MAX} K",
                                 hint="check the unit, and the line pressure"):

@@ -128,6 +128,13 @@ def test_an_expected_wetness_that_stays_wet():
     assert a.states[-1].x == pytest.approx(a.x_exhaust, rel=1e-9)
 
 
+@pytest.mark.parametrize("bar", [1.2, 1.6, 3.0, 7.0, 20.0, 50.0, 111.0, 164.0])
+def test_a_line_full_of_water_is_the_end_of_the_range(bar):
+    a = assess(expecting(1.0, BARE.with_(p_line=Entry(bar, "bar", "absolute"))))
+    assert (a.x, a.verdict) == (0.0, Verdict.CANNOT)
+    assert a.path.x[0] == pytest.approx(0.0, abs=1e-9)
+
+
 def test_an_expected_dry_line_reads_fifty_kelvin():
     a = assess(expecting(0.0))
     assert a.superheat == pytest.approx(50.3, abs=0.05)
@@ -273,7 +280,7 @@ def test_velocities_by_hand():
 def test_without_a_flow_only_the_ratio_is_known():
     v = assess(DEMO.with_(sample_flow=None, heat_loss_method=NONE)).velocities
     assert (v.sample, v.exhaust, v.kinetic_energy, v.kinetic_superheat, v.kinetic_quality) == (None,) * 5
-    assert v.ratio == pytest.approx(1.76 / 0.190 * (15.7 / 26.6) ** 2, rel=0.01)  # m³/kg, steam tables at 122 and 180 °C
+    assert v.ratio == pytest.approx(1.76 / 0.190 * (15.7 / 26.6) ** 2, rel=0.01)  # m³/kg at 122 and 180 °C
     nothing = assess(reading(20)).velocities
     assert (nothing.line, nothing.ratio) == (None, None)
     assert nothing.keeping_bore_ratio > 1
