@@ -134,7 +134,7 @@ def assumptions(a: Assessment, units: UnitSystem) -> tuple[str, ...]:
     if not a.heating:
         lines += [_heat_loss(a, units), _kinetic_energy(a, units)]
     lines += said.assumed(a, units)
-    return (*lines, "Steam properties: IAPWS-IF97. The figure carries no uncertainty yet.")
+    return (*lines, "Steam properties: IAPWS-IF97.")
 
 
 _HOW = {**HOW, BY_KG: "as entered"}

@@ -79,13 +79,15 @@ class RunResult:
     """One run, reduced.
 
     settling    the window
-    used        rows that count: in the window, complete, and not left out
+    window      complete rows of the window, before any was left out: the rows of ``outliers``
+    used        rows that count: those that were not left out
     removed     row number -> reason, of rows that a person left out
     outliers    by channel, the tests of the rows in the window before anything was left out
     means       by channel; a channel that was not recorded is taken from the case and not in here
     shown, corrected  the means as shown and corrected, absolute
     corrections one by one, at the means
     assessment  of the means: the verdict, and the quality where there is one
+    rows_corrected  every row of the run, corrected
     x, status   of every row of the run (x not cut off at 1)
     scatter     of the rows used; None with fewer than two
     unable      why the run gives no quality, in words; "" where it does
@@ -94,6 +96,7 @@ class RunResult:
 
     run: Run
     settling: Settling
+    window: np.ndarray
     used: np.ndarray
     removed: dict[int, str]
     outliers: dict[str, Outliers]
@@ -102,6 +105,7 @@ class RunResult:
     corrected: Corrected | None
     corrections: tuple[Correction, ...]
     assessment: Assessment | None
+    rows_corrected: Corrected
     x: np.ndarray
     status: np.ndarray
     scatter: Scatter | None
@@ -125,20 +129,20 @@ def reduce_run(case: Case, si: Resolved, run: Run, *, progress: Callable[[float]
     absolute = {"T_exhaust": true.T_exhaust, "p_line": true.p_line, "p_exhaust": true.p_exhaust}
     settling = settle(case, si, run, absolute, progress=progress)
     run, notes = _with_weighed_flow(run, settling.used)
-    true = corrected(case, si, _shown(case, si, run, run.channels), off)
-    x, status = (np.broadcast_to(a, len(run)) for a in reduced(balance_without(case, si, off), si, true))
+    rows = corrected(case, si, _shown(case, si, run, run.channels), off)
+    x, status = (np.broadcast_to(a, len(run)) for a in reduced(balance_without(case, si, off), si, rows))
     window = settling.used & _complete(run)
     removed = {int(row["row"].value): row["reason"].strip() for row in case["removed"] if row["log"] == run.name}
     used = window & ~np.isin(run.rows, [number for number, reason in removed.items() if reason])
-    common = (run, settling, used, removed, _outliers(run, window))
+    common = (run, settling, window, used, removed, _outliers(run, window))
     if unable := _nothing_used(run, settling, window, used):
-        return RunResult(*common, {}, None, None, (), None, x, status, None, unable, run.notes)
+        return RunResult(*common, {}, None, None, (), None, rows, x, status, None, unable, run.notes)
     means = {name: _mean(values[used]) for name, values in run.channels.items() if np.isfinite(values[used]).any()}
     shown = _shown(case, si, run, {name: m.mean for name, m in means.items()})
     true = corrected(case, si, shown, off)
     assessment = assess(case_of(case, si, true, off))
     wet = float(np.mean(status[used] == Status.NOT_SUPERHEATED))
-    return RunResult(*common, means, shown, true, one_by_one(case, si, shown), assessment, x, status,
+    return RunResult(*common, means, shown, true, one_by_one(case, si, shown), assessment, rows, x, status,
                      _scatter(run, x, window, used), _unreadable(case, assessment, wet),
                      run.notes + notes + _cautions(run, settling, means, true, wet))
 
@@ -226,6 +230,8 @@ def _scatter(run: Run, x: np.ndarray, window: np.ndarray, used: np.ndarray) -> S
 def _unreadable(case: Case, a: Assessment, wet: float) -> str:
     if a.verdict is Verdict.SUPERHEATED:
         return f"The line is superheated by {a.line_superheat:.1f} K: there is no wetness to measure."
+    if a.verdict is Verdict.CONTRADICTS:
+        return "What was drained and what the throttled steam shows contradict each other."
     if a.verdict is Verdict.CANNOT:
         return (f"The exhaust is not superheated enough: the quality is below {a.x_below:.4f}, and no value can be "
                 "given." if a.x_below < 1 else "The exhaust is not superheated enough for any quality to be told.")

@@ -184,6 +184,7 @@ def forecast(case: Case, assessment: Assessment | None = None) -> Forecast:
 _UNABLE = {
     Verdict.CANNOT: "A reading that cannot be told from wet exhaust steam has no uncertainty: it has no value.",
     Verdict.SUPERHEATED: "The line is superheated, so there is no quality that could be uncertain.",
+    Verdict.CONTRADICTS: "The readings contradict each other, so there is no quality that could be uncertain.",
 }
 
 

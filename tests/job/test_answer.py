@@ -139,7 +139,7 @@ def test_assumptions_of_the_demo_case():
         "Water leg of 0.8 m taken off the line gauge, water at 20 °C.",
         "Heat loss 2.0 kJ/kg of sample, by conductance, +0.10 %pt.",
         "Exhaust velocity 28.0 m/s, recovery factor 0.7: kinetic energy -0.01 %pt.",
-        "Steam properties: IAPWS-IF97. The figure carries no uncertainty yet.")
+        "Steam properties: IAPWS-IF97.")
     assert said(READS, US).assumed[:4] == (
         "Barometer 29.77 inHg, as entered.",
         "Water leg of 0.8 m taken off the line gauge, water at 68 °F.",
