@@ -238,8 +238,8 @@ def _swings(plan: Plan) -> Deviation:
     return Deviation("swings", "Pressure swings",
                      Said("The line pressure leaves ± {0} about its mean.",
                           ((plan.play("p_line"), "pressure difference"),)),
-                     means, Said("Ask for a steady load. Take more sets, and whole swings; do not pick the calm "
-                                 "moments."))
+                     means, Said("Look at gauge and unit first. Then ask for a steady load; take more sets, and "
+                                 "whole swings; do not pick the calm moments."))
 
 
 def _of_separator(plan: Plan) -> Iterator[Deviation]:

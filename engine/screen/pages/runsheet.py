@@ -43,6 +43,8 @@ _CSS = """
 .st-key-steps [data-testid="stMarkdownContainer"] p {font-size: 1.08rem; line-height: 1.4;}
 .st-key-take input, .st-key-hand input {min-height: 3.2rem; font-size: 1.15rem;}
 .st-key-parts button {min-height: 3rem;}
+[class*="st-key-step-"] {border-bottom: 1px solid var(--st-border-color-light, rgba(128,128,128,.3));
+  padding-bottom: .7rem;}
 </style>
 """
 SHEET, REHEARSAL = "Run sheet", "Rehearsal"
@@ -70,6 +72,7 @@ def page() -> None:
     _steps(sheet)
     _gauges(sheet)
     _readings(sheet)
+    _deviations(sheet)
     _paper(sheet)
     with st.expander("Cautions"):
         st.markdown("\n".join(f"- {line}" for line in CAUTIONS))
@@ -85,7 +88,7 @@ def _sheet(place) -> RunSheet | None:
             st.caption("Nothing is lost: correct the entry, or undo. A run sheet is made once every entry can be used.")
             return None
         done, held = len(sheet.steps) - len(sheet.unticked), len(sheet.held)
-        holds = f" **✋ {held} hold point{'s' if held != 1 else ''} open.**" if held else ""
+        holds = f" **■ {held} hold point{'s' if held != 1 else ''} open.**" if held else ""
         st.markdown(f"### {escaped(headline(sheet, units))}")
         st.markdown(f"{done} of {len(sheet.steps)} steps ticked.{holds}")
         for line in notices(sheet, units):
@@ -113,16 +116,21 @@ def _about() -> None:
 def _steps(sheet: RunSheet) -> None:
     st.subheader("Steps", anchor=False)
     with st.container(key="hand"):
-        session.mirror("initials", st.session_state.get("hand", ""))
+        session.mirror("initials", st.session_state.get("hand", next((t.initials for t in sheet.ticks.values()), "")))
         st.text_input("Initials", key="initials", max_chars=12, placeholder="of whoever ticks", on_change=_signed,
                       help="A tick without a name says nothing. They are needed once, before the first tick.")
     _refused("steps")
     sections = {section.key: section for section in sheet.sections}
     with st.container(key="parts"):
         chosen = st.segmented_control("Part", list(sections), key="part", label_visibility="collapsed",
-                                      format_func=lambda key: sections[key].title.split(":")[0],
+                                      format_func=lambda key: _progress(sections[key], sheet),
                                       default=_current(sheet).key, required=True)
     _section(sections.get(chosen) or _current(sheet), sheet)
+
+
+def _progress(section: Section, sheet: RunSheet) -> str:
+    done = sum(step.key in sheet.ticks for step in section.steps)
+    return f"{section.title.split(':')[0]} {done}/{len(section.steps)}"
 
 
 def _current(sheet: RunSheet) -> Section:
@@ -134,7 +142,7 @@ def _current(sheet: RunSheet) -> Section:
 def _section(section: Section, sheet: RunSheet) -> None:
     held = sheet.held and not section.hold
     if held:
-        st.warning(f"✋ {len(sheet.held)} hold points are open. Nothing here starts before all of them are ticked.")
+        st.warning(f"■ {len(sheet.held)} hold points are open. Nothing here starts before all of them are ticked.")
     with st.container(key="steps"):
         for step in section.steps:
             _step(step, sheet, bool(held))
@@ -144,15 +152,16 @@ def _section(section: Section, sheet: RunSheet) -> None:
 
 
 def _step(step: Step, sheet: RunSheet, held: bool) -> None:
-    mark, words = st.columns([1, 4], vertical_alignment="center", gap="medium")
+    with st.container(key=f"step {step.key}"):
+        mark, words = st.columns([1, 4], vertical_alignment="center", gap="medium")
     ticked = sheet.ticks.get(step.key)
     with mark:
         if ticked:
-            with st.popover(f"☑ {ticked.time[-5:]} {ticked.initials}", width="stretch", key=f"ticked {step.key}"):
+            with st.popover(f"✓ {ticked.time[-5:]} {ticked.initials}", width="stretch", key=f"ticked {step.key}"):
                 _correct(step, sheet)
         else:
-            st.button("☐ Done", key=f"tick {step.key}", width="stretch", on_click=_tick, args=(step.key,),
-                      disabled=held, help="Writes time and initials into the case.")
+            st.button("○ Tick", key=f"tick {step.key}", width="stretch", on_click=_tick, args=(step.key,),
+                      disabled=held)
     with words:
         st.markdown(escaped(step.said.text(session.units())))
         if step.missing:
@@ -231,8 +240,11 @@ def _gauges(sheet: RunSheet) -> None:
     _table(gauge_table(sheet, units))
     with st.expander("The scale of the thermometer, from dry to wet"):
         _table(mark_table(sheet, units))
+
+
+def _deviations(sheet: RunSheet) -> None:
     st.subheader("When it is otherwise", anchor=False)
-    _table(deviation_table(sheet, units))
+    _table(deviation_table(sheet, session.units()))
 
 
 def _readings(sheet: RunSheet) -> None:
@@ -263,12 +275,12 @@ def _take(sheet: RunSheet) -> str:
             to_si(last["time"].value, last["time"].unit, "time") + plan.a.si["read_every"]) / 60
         columns = columns_of(plan, session.units())
         key = f"set {run} {len(sheet.case['readings'])}"
-        grid = st.columns(4)
+        grid = [*st.columns(4), *st.columns(4)]
         grid[0].number_input("Time from the start, min", value=at, step=0.5, format="%.7g", key=f"{key} time")
-        for k, column in enumerate(columns, 1):
-            grid[k % 4].number_input(column.heading, value=None, step=0.1, format="%.7g",
-                                     key=f"{key} {column.name} {column.unit}")
-        grid[3].text_input("Remark", max_chars=200, key=f"{key} remark")
+        for place, column in zip(grid[1:], columns, strict=False):
+            place.number_input(column.heading, value=None, step=0.1, format="%.7g",
+                               key=f"{key} {column.name} {column.unit}")
+        grid[-1].text_input("Remark", max_chars=200, key=f"{key} remark")
         st.button("Write this set down", key="write set", type="primary", width="stretch", on_click=_write,
                   args=(run, key, columns))
     _refused("readings")
