@@ -3,16 +3,16 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
-from engine.job.case import Case, Value
+from engine.job.case import Value, as_entered
 from engine.job.fields import FIELDS
 from engine.job.fields_path import BY_CONDUCTANCE, BY_NORMAL, BY_TWO_FLOWS
 from engine.job.fields_rig import COMPUTED, WEIGHED
 from engine.job.rig import RigAssessment
 from engine.job.rig_effects import SAME_PRESSURE
 from engine.job.rows import Entry
-from engine.steam.units import UnitSystem, from_si
+from engine.steam.units import UnitSystem
 
 _LEAST_DIFFERENCE = 2e-3  # of a value, below which it is no news
 
@@ -33,7 +33,7 @@ def offers(rig: RigAssessment, units: UnitSystem) -> tuple[Offer, ...]:
     made: list[Offer] = []
 
     def offer(key: str, section: str, words: str, name: str, value: float, digits: int = 4, **more) -> None:
-        entry = _entry(case, name, value, digits, units)
+        entry = _entry(rig, name, value, digits, units)
         if case[name] != entry and _differs(rig, name, value) or any(case[n] != v for n, v in more.items()):
             basis = " abs" if entry.basis == "absolute" else " gauge" if entry.basis else ""
             unit = "" if entry.unit == "1" else f" {entry.unit}"
@@ -62,12 +62,11 @@ def offers(rig: RigAssessment, units: UnitSystem) -> tuple[Offer, ...]:
     return tuple(made)
 
 
-def _entry(case: Case, name: str, value: float, digits: int, units: UnitSystem) -> Entry:
+def _entry(rig: RigAssessment, name: str, value: float, digits: int, units: UnitSystem) -> Entry:
     """A value as one would type it: in the unit and on the basis of the entry that stands there."""
-    kind, there = FIELDS[name].kind, case[name]
-    unit = there.unit if there is not None else units.unit(kind)
-    basis = there.basis if there is not None else ""
-    return Entry(float(f"{from_si(value, unit, kind):.{digits}g}"), unit, basis)
+    field, there = FIELDS[name], rig.case[name]
+    exact = as_entered(field, value, there or Entry(0.0, units.unit(field.kind)), rig.point.si.p_barometer)
+    return replace(exact, value=float(f"{exact.value:.{digits}g}"))
 
 
 def _differs(rig: RigAssessment, name: str, value: float) -> bool:

@@ -34,7 +34,7 @@ def ranking_diagram(rig: RigAssessment, units: UnitSystem) -> Diagram:
               "yaxis": {"range": [max(len(effects), 1) - 0.4, -0.75], "visible": False, "fixedrange": True}}
     listed = "; ".join(f"{e.name} {_size(e)}, {'taken out' if e.corrected else 'left in'}" for e in effects)
     return Diagram("ranking", "Effects on the quality", {"data": [left, taken, names, sizes], "layout": layout},
-                   (0, 1, 2, 3), f"Effects on the quality, largest first. {headline(rig)} {listed}")
+                   (0, 1, 2, 3), f"Effects on the quality, largest first. {headline(rig)} {listed}.")
 
 
 def _mark(e: Effect) -> str:
