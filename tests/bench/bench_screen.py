@@ -4,7 +4,8 @@
 
 Serves APP twice (default: app.py) and drives both in Debian's chromium by turns, a key press on a slider
 here, a key press there, so that whatever else the machine does falls on both. The copy without pictures
-is the same app in which the functions named by --blank do nothing, so it has the same widgets and texts.
+is the same app in which the functions named by --blank (default: see BLANKS) do nothing and give None, so it
+has the same widgets and texts.
 Time runs from the key press until the frame that shows the new answer, and with pictures until every
 diagram on the page has changed too. A blank frame is one in which a diagram that was there is not.
 """
@@ -22,7 +23,13 @@ from pathlib import Path
 
 CHROMIUM = "/usr/bin/chromium"
 QUIET = ["--no-sandbox", "--disable-gpu", "--no-first-run", "--disable-background-networking"]
-BLANKS = ["engine.screen.live:show", "streamlit:plotly_chart", "streamlit.delta_generator:DeltaGenerator.plotly_chart"]
+BLANKS = [  # what draws, and what prepares the drawings of app.py
+    "engine.screen.live:show",
+    "streamlit:plotly_chart",
+    "streamlit.delta_generator:DeltaGenerator.plotly_chart",
+    "engine.screen.charts.process:process_diagrams",
+    "engine.screen.charts.speed:velocity_diagram",
+]
 
 # Looks at the page once a frame from the key press on. A diagram counts as changed when one of its lines or points has.
 WATCH = """(pictures) => {
