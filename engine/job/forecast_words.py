@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
+from engine.job.result import Result
 from engine.job.rig_tables import points
-from engine.job.uncertainty import HEAT_LOSS, Forecast, Term
+from engine.job.uncertainty import HEAT_LOSS, READINGS, Forecast, Term
 from engine.measurement import SAMPLING
 from engine.steam.units import UnitSystem, uncertainty_from_si
 
@@ -36,20 +37,20 @@ def forecast_advice(f: Forecast) -> tuple[str, ...]:
     return (*lines, *(f"{line[0].upper()}{line[1:].rstrip('.')}." for line in f.cautions if line))
 
 
-def budget_rows(f: Forecast, units: UnitSystem) -> list[dict[str, str]]:
-    """The budget line by line, largest first."""
+def budget_rows(f: Forecast | Result, units: UnitSystem) -> list[dict[str, str]]:
+    """The budget of a forecast or of a result line by line, largest first."""
     return [{"From": t.group, "Cause": t.cause, "Standard uncertainty": _u(t, units),
              "In the quality": points(abs(t.contribution)), "Share of the variance": f"{100 * t.share:.1f} %"}
             for t in largest_first(f)]
 
 
-def largest_first(f: Forecast) -> tuple[Term, ...]:
+def largest_first(f: Forecast | Result) -> tuple[Term, ...]:
     """The terms of the budget, the one that contributes most first."""
     return tuple(sorted(f.terms, key=lambda t: -abs(t.contribution)))
 
 
 def _u(t: Term, units: UnitSystem) -> str:
-    if t.group == SAMPLING:
+    if t.group in (SAMPLING, READINGS):
         return points(t.u)
     if t.group == HEAT_LOSS:  # a share of the correction
         return f"{100 * t.u:.2g} %"

@@ -3,12 +3,13 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from dataclasses import replace
 from typing import NamedTuple
 
 from engine.job.case import Case
 from engine.job.runs import recalled
 from engine.measurement.logbook import Log, fit_mapping, propose_mapping, read_log
-from engine.measurement.logbook_mapping import Mapping
+from engine.measurement.logbook_mapping import Column, Mapping
 from engine.measurement.logbook_text import source_of
 from engine.steam.errors import InputError
 
@@ -38,6 +39,21 @@ def layout_of(case: Case, file) -> Layout:
     except InputError:
         pass  # remembered for another layout, or broken: what the file itself shows goes before it
     return Layout(source.name, found.mapping, False, found.notes, found.preview)
+
+
+def assigned(mapping: Mapping, channel: str, position: int | None, unit: str = "", basis: str = "") -> Mapping:
+    """The mapping with a channel in the column at ``position`` (None: in no column), and what is known of it.
+
+    A column that had another channel gives it up.
+    """
+    columns = []
+    for column in mapping.columns:
+        if column.position == position:
+            column = Column(column.position, column.name, channel, unit, basis)
+        elif column.channel == channel:
+            column = Column(column.position, column.name)
+        columns.append(column)
+    return replace(mapping, columns=tuple(columns))
 
 
 def read(case: Case, file, answers: Callable[[Mapping], Mapping] | None = None,

@@ -3,6 +3,8 @@
 from __future__ import annotations
 
 from engine.job.forecast_words import forecast_headline, largest_first
+from engine.job.result import Result
+from engine.job.result_said import told
 from engine.job.rig_tables import points
 from engine.job.uncertainty import Forecast
 from engine.measurement import SAMPLING
@@ -12,9 +14,10 @@ from engine.screen.charts.ranking import words_above
 SHOWN = 9  # bars; smaller causes stand in the table
 
 
-def budget_diagram(f: Forecast) -> Diagram | None:
+def budget_diagram(f: Forecast | Result) -> Diagram | None:
     """Standard uncertainty that each cause gives the quality, in %pt; sampling hatched; None without a budget."""
     terms = largest_first(f)[:SHOWN]
+    said = forecast_headline(f) if isinstance(f, Forecast) else told(f).headline
     if not terms:
         return None
     sizes = [100.0 * abs(t.contribution) for t in terms]
@@ -41,4 +44,4 @@ def budget_diagram(f: Forecast) -> Diagram | None:
                         "title": {"text": "standard uncertainty of the quality, %pt", "standoff": 2}},
               "yaxis": {"range": [len(terms) - 0.4, -0.75], "visible": False, "fixedrange": True}}
     return Diagram("budget", "Uncertainty budget", {"data": data, "layout": layout}, (0, 1, 2, 3),
-                   f"Uncertainty budget, largest first. {forecast_headline(f)}")
+                   f"Uncertainty budget, largest first. {said}")
