@@ -20,7 +20,7 @@ from engine.measurement.logbook_propose import Layout, Proposal, named_channels,
 from engine.measurement.logbook_rows import Collector, Rejected, Remark, Rows, in_order
 from engine.measurement.logbook_sheet import check_archive, is_workbook, propose_sheet, sheet_table
 from engine.measurement.logbook_suspicion import Suspicion
-from engine.measurement.logbook_table import parse
+from engine.measurement.logbook_table import Words, parse
 from engine.measurement.logbook_text import (
     DELIMITERS,
     ENCODINGS,
@@ -123,17 +123,14 @@ def read_log(path_or_bytes, mapping: Mapping | None = None, *,
     (Rejected(row=3, column='p1 [bar g]', content='n/a', reason='the instrument says that it has no value'),)
     """
     source = source_of(path_or_bytes)
-    if mapping is None:
-        mapping, notes, _ = _propose(source, Layout())
-    else:
-        mapping, notes = fit_mapping(mapping, source), ()
-    refuse_open(mapping, source.name)
-    collector = Collector(mapping)
-    for done in _worked(source, mapping):
+    proposal = _propose(source, Layout()) if mapping is None else fit_mapping(mapping, source)
+    refuse_open(proposal.mapping, source.name)
+    collector = Collector(proposal.mapping)
+    for done in _worked(source, proposal.mapping, Words(proposal.words)):
         collector.take(done)
         if progress:
             progress(0.98 * done.block.fraction)
-    log = _log(source.name, mapping, collector.finish(), notes)
+    log = _log(source.name, proposal.mapping, collector.finish(), proposal.notes if mapping is None else ())
     if progress:
         progress(1.0)
     return log
@@ -168,7 +165,7 @@ def absolute(log: Log, p_barometer=None) -> Log:
     return replace(log, channels=channels, basis={**log.basis, **dict.fromkeys(gauge, "absolute")})
 
 
-def fit_mapping(mapping: Mapping, source: Source) -> Mapping:
+def fit_mapping(mapping: Mapping, source: Source) -> Proposal:
     """A remembered mapping laid on a file: columns by their headings, lines where this file has them.
 
     What was decided (channels, units, bases, decimal sign, date order) stays as decided. The layout
@@ -179,13 +176,14 @@ def fit_mapping(mapping: Mapping, source: Source) -> Mapping:
     told = Layout(mapping.delimiter, mapping.encoding, mapping.sheet, 0 if mapping.header_line == 0 else None,
                   mapping.first_line if mapping.header_line == 0 else None, names)
     try:
-        return _laid_on(mapping, _propose(source, told).mapping, source.name)
+        return _laid_on(mapping, _propose(source, told), source.name)
     except InputError:
-        found = _propose(source, Layout(header_line=told.header_line, first_line=told.first_line, names=names)).mapping
+        found = _propose(source, Layout(header_line=told.header_line, first_line=told.first_line, names=names))
         return _laid_on(mapping, found, source.name)
 
 
-def _laid_on(mapping: Mapping, found: Mapping, name: str) -> Mapping:
+def _laid_on(mapping: Mapping, proposal: Proposal, name: str) -> Proposal:
+    found = proposal.mapping
     here = {c.name: c.position for c in reversed(found.columns) if c.name}
     faults, columns = [], [replace(c, channel="", unit="", basis="") for c in found.columns]
     for column in mapping.used.values():
@@ -200,8 +198,8 @@ def _laid_on(mapping: Mapping, found: Mapping, name: str) -> Mapping:
             columns[at] = replace(columns[at], channel=column.channel, unit=column.unit, basis=column.basis)
     if faults:
         raise InputError(*faults)
-    return replace(found, columns=tuple(columns), decimal=mapping.decimal, thousands=mapping.thousands,
-                   date_order=mapping.date_order)
+    return proposal._replace(mapping=replace(found, columns=tuple(columns), decimal=mapping.decimal,
+                                             thousands=mapping.thousands, date_order=mapping.date_order))
 
 
 def _propose(source: Source, layout: Layout) -> Proposal:
@@ -221,11 +219,11 @@ def _propose(source: Source, layout: Layout) -> Proposal:
     return propose(rows, spots, source.name, layout._replace(delimiter=delimiter, encoding=encoding))
 
 
-def _worked(source: Source, mapping: Mapping) -> Iterator[Worked]:
+def _worked(source: Source, mapping: Mapping, words: Words) -> Iterator[Worked]:
     """The blocks of a log, parsed and worked at, in their order."""
     if mapping.delimiter:
         blocks = text_blocks(source, mapping.encoding, mapping.delimiter, mapping.first_line)
-        return in_order(lambda block: work(parse(block, mapping), mapping), blocks)
+        return in_order(lambda block: work(parse(block, mapping, words), mapping, words), blocks)
     return (work(block, mapping) for block in sheet_table(source, mapping))
 
 

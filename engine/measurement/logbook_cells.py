@@ -17,10 +17,11 @@ from engine.measurement.logbook_numbers import (
     NO_VALUE_CODES,
     NOT_A_NUMBER,
     NOT_FINITE,
+    plain_numbers,
     read_number,
 )
 from engine.measurement.logbook_sheet import UncomputedFormula
-from engine.measurement.logbook_table import Block
+from engine.measurement.logbook_table import Block, Words
 from engine.measurement.logbook_time import (
     COUNTS,
     EMPTY_TIME,
@@ -38,7 +39,6 @@ HEADING_AGAIN = "the heading again"
 COMMENT = "a comment line"
 NO_READING = "no reading in this row"
 _APOSTROPHE = re.compile(r"^'(?=[=+\-@])")  # written in front of text that must not become a formula
-MOST_KNOWN = 10_000  # cell texts remembered within one column of one block
 
 
 @dataclass(eq=False)
@@ -50,16 +50,20 @@ class Worked:
     alive: np.ndarray
     blank: np.ndarray
     remarks: dict[int, str]
+    words: Words | None = None
     times: np.ndarray | None = None
     zoned: np.ndarray | None = None
     values: dict[str, np.ndarray] = field(default_factory=dict)
     faults: list[tuple[int, Column | None, str, str | None]] = field(default_factory=list)
 
 
-def work(block: Block, mapping: Mapping) -> Worked:
-    """SI values (gauge stays gauge) and times of a block; rows without time or reading are not alive."""
+def work(block: Block, mapping: Mapping, words: Words | None = None) -> Worked:
+    """SI values (gauge stays gauge) and times of a block; rows without time or reading are not alive.
+
+    ``words`` learns what stands in this block in place of numbers.
+    """
     used = mapping.used
-    done = Worked(block, np.ones(block.rows.size, dtype=bool), _blank_rows(block, used), _remarks(block, used))
+    done = Worked(block, np.ones(block.rows.size, dtype=bool), _blank_rows(block, used), _remarks(block, used), words)
     done.blank[list(done.remarks)] = False
     for i, content, reason in block.spoiled:
         done.alive[i] = done.blank[i] = False
@@ -173,6 +177,13 @@ def _numbers(done: Worked, column: Column, mapping: Mapping) -> np.ndarray:
     cells = done.block.cells[column.position]
     if cells.dtype.kind != "f":
         return _careful_numbers(done, column, mapping, cells)
+    unread = done.block.unread.get(column.position)
+    if unread is not None and unread.size:
+        cells = cells.copy()
+        for i in map(int, unread[done.alive[unread]]):
+            cells[i], reason = _read(done.block.content(i, column.position), column, mapping)
+            if reason:
+                done.faults.append((i, column, reason, None))
     if not cells.size or (np.fmin.reduce(cells) > max(NO_VALUE_CODES) and np.fmax.reduce(cells) < np.inf):
         return cells
     strange = np.isinf(cells) | np.isin(cells, NO_VALUE_CODES)
@@ -182,33 +193,31 @@ def _numbers(done: Worked, column: Column, mapping: Mapping) -> np.ndarray:
 
 
 def _careful_numbers(done: Worked, column: Column, mapping: Mapping, cells: np.ndarray) -> np.ndarray:
-    """Cell by cell, remembering what was read: a logger repeats its words."""
-    kind = CHANNELS[column.channel].kind
-
-    def own_unit(text: str) -> bool:
-        return unit_of(text, kind)[1] == column.unit
-
-    numbers = np.full(cells.size, np.nan)
-    known: dict[str, tuple[float, str]] = {}
-    for i in map(int, np.flatnonzero(done.alive)):
-        cell = cells[i]
-        if cell is None or cell == "":
+    """Together where no doubt is possible, the rest cell by cell."""
+    plain = plain_numbers(cells.tolist(), mapping.decimal) if mapping.delimiter else None
+    numbers = np.full(cells.size, np.nan) if plain is None else np.array(plain, dtype=float)
+    numbers[np.isin(numbers, NO_VALUE_CODES)] = np.nan
+    for i in map(int, np.flatnonzero(np.isnan(numbers) & done.alive)):
+        if cells[i] is None or cells[i] == "":
             continue
-        if isinstance(cell, UncomputedFormula):
-            value, reason = np.nan, FORMULA
-        elif isinstance(cell, str):
-            if cell not in known:
-                if len(known) > MOST_KNOWN:
-                    known.clear()
-                known[cell] = read_number(cell, mapping.decimal, mapping.thousands, own_unit)
-            value, reason = known[cell]
-        elif isinstance(cell, (int, float)) and not isinstance(cell, bool):
-            value, reason = float(cell), ""
-        else:
-            value, reason = np.nan, NOT_A_NUMBER
-        if not reason and value in NO_VALUE_CODES:
-            value, reason = np.nan, NO_VALUE
+        numbers[i], reason = _read(cells[i], column, mapping)
         if reason:
             done.faults.append((i, column, reason, None))
-        numbers[i] = value
+            if done.words is not None and isinstance(cells[i], str):
+                done.words.learn([cells[i]])
     return numbers
+
+
+def _read(cell: object, column: Column, mapping: Mapping) -> tuple[float, str]:
+    """One cell, of a text file or of a workbook: its number, or NaN and the reason."""
+    kind = CHANNELS[column.channel].kind
+    if isinstance(cell, UncomputedFormula):
+        return np.nan, FORMULA
+    if isinstance(cell, str):
+        value, reason = read_number(cell, mapping.decimal, mapping.thousands,
+                                    lambda text: unit_of(text, kind)[1] == column.unit)
+    elif isinstance(cell, (int, float)) and not isinstance(cell, bool):
+        value, reason = float(cell), ""
+    else:
+        return np.nan, NOT_A_NUMBER
+    return (np.nan, NO_VALUE) if value in NO_VALUE_CODES else (value, reason)

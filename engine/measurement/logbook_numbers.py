@@ -138,6 +138,28 @@ def read_number(cell: str, decimal: str = ".", thousands: str = "",
     return (value, "") if math.isfinite(value) else (math.nan, NOT_FINITE)
 
 
+def plain_numbers(cells: list[str], decimal: str = ".") -> list[float] | None:
+    """Many cells at once where no doubt is possible: NaN for those that must be looked at singly.
+
+    None where Python's own reading of numbers could differ from ``read_number``'s, which looks at
+    cells one by one and says why one is refused.
+
+    >>> plain_numbers(["9,01", "---", ""], ",")
+    [9.01, nan, nan]
+    """
+    text = "\n".join(cells)
+    if not text.isascii() or "_" in text or (decimal != "." and "." in text) or text.count("\n") >= max(len(cells), 1):
+        return None
+    numbers = []
+    for cell in text.replace(decimal, ".").split("\n"):
+        try:
+            number = float(cell)
+        except ValueError:
+            number = math.nan
+        numbers.append(number if math.isfinite(number) else math.nan)
+    return numbers
+
+
 def _why_not(text: str, decimal: str, thousands: str) -> str:
     """The most telling reason why a text is no number."""
     low = text.casefold()

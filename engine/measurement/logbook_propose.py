@@ -15,10 +15,10 @@ from typing import NamedTuple
 import numpy as np
 
 from engine.measurement.logbook_mapping import Column, Mapping
-from engine.measurement.logbook_numbers import number_signs, read_number
+from engine.measurement.logbook_numbers import Signs, number_signs, plain_numbers, read_number
 from engine.measurement.logbook_text import refuse
 from engine.measurement.logbook_time import STAMPS, count_unit, date_order, text_unit
-from engine.measurement.logbook_words import CHANNELS, Found, recognise, unit_of
+from engine.measurement.logbook_words import CHANNELS, MEASURED, Found, recognise, unit_of
 
 HEADER_ROWS = 200  # how far down a heading is looked for
 LONGEST_HEADING = 80
@@ -29,11 +29,15 @@ Row = tuple[int, list[str]]  # line number from 1, cells
 
 
 class Proposal(NamedTuple):
-    """``notes`` say what was decided from the data and what was left out; ``preview`` the first data rows."""
+    """``notes`` say what was decided from the data and what was left out; ``preview`` the first data rows.
+
+    ``words`` are texts seen where numbers are expected ("---").
+    """
 
     mapping: Mapping
     notes: tuple[str, ...]
     preview: tuple[Row, ...]
+    words: frozenset[str] = frozenset()
 
 
 def is_value(cell: str) -> bool:
@@ -87,7 +91,15 @@ def propose(rows: list[Row], spots: list[list[str]], source: str, layout: Layout
     left_out = [c.label for c in columns if not c.channel and any(v.strip() for v in cells[c.position])]
     if left_out:
         notes.append("not recognised and left out: " + ", ".join(left_out))
-    return Proposal(mapping, tuple(notes), tuple(data[:20]))
+    words = {cell for c in columns if c.channel in MEASURED for cell in _words(cells[c.position], signs)}
+    return Proposal(mapping, tuple(notes), tuple(data[:20]), frozenset(words))
+
+
+def _words(cells: list[str], signs: Signs) -> set[str]:
+    """Cells that are no numbers, whatever the unit."""
+    numbers = plain_numbers(cells, signs.decimal) or [math.nan] * len(cells)
+    doubtful = {cell for cell, number in zip(cells, numbers, strict=True) if math.isnan(number) and cell.strip()}
+    return {c for c in doubtful if math.isnan(read_number(c, signs.decimal, signs.thousands, lambda unit: True)[0])}
 
 
 def _told_heading(rows: list[Row], layout: Layout, source: str) -> tuple[int | None, int]:

@@ -12,6 +12,7 @@ import datetime as dt
 import itertools
 import zipfile
 from collections.abc import Iterator
+from contextlib import contextmanager
 
 import numpy as np
 import openpyxl
@@ -43,38 +44,48 @@ def is_workbook(source: Source) -> bool:
     return source.read(0, 4) == ZIP_MAGIC
 
 
+@contextmanager
+def _guarded(source: Source, what: str) -> Iterator[None]:
+    """Whatever the unpacking and the parsing of a hostile file raise becomes one refusal."""
+    try:
+        yield
+    except InputError:
+        raise
+    except Exception as error:
+        raise refuse(source.name, f"{what} ({type(error).__name__}: {error})",
+                     hint="open it in the spreadsheet program and save it again, unlocked, or as CSV") from None
+
+
 def check_archive(source: Source) -> None:
     """Refuse archives that are no workbook or unpack to more than a log can be."""
-    try:
-        with source.open() as file, zipfile.ZipFile(file) as archive:
-            parts = archive.infolist()
-            names = {p.filename for p in parts}
-            if "xl/workbook.xml" not in names:
-                what = "a text document or another workbook format" if "mimetype" in names else "a ZIP archive"
-                raise refuse(source.name, what, "there is no XLSX workbook in it", "unpack it, or save as XLSX or CSV")
-            total = sum(p.file_size for p in parts)
-            worst = max(parts, key=lambda p: p.file_size / max(p.compress_size, 1))
-            ratio = worst.file_size / max(worst.compress_size, 1)
-            strings = sum(p.file_size for p in parts if p.filename.lower().endswith("sharedstrings.xml"))
-            if total > MOST_UNPACKED or (ratio > MOST_RATIO and worst.file_size > 10 << 20) or strings > MOST_STRINGS:
-                got = f"a workbook that unpacks to {total / 2**20:.0f} MiB, one part {ratio:.0f}-fold"
-                raise refuse(source.name, got, "it would fill the memory", "save the readings alone, or as CSV",
-                             f"at most {MOST_UNPACKED >> 20} MiB unpacked, {MOST_STRINGS >> 20} MiB of it texts, "
-                             f"no part more than {MOST_RATIO}-fold")
-            if len(parts) > MOST_PARTS:
-                raise refuse(source.name, f"a workbook of {len(parts)} parts", hint="save the readings as CSV",
-                             needs=f"at most {MOST_PARTS} parts")
-            for part in parts:
-                if part.filename.lower().endswith((".xml", ".rels")):
-                    with archive.open(part) as content:
-                        if b"<!DOCTYPE" in content.read(HEAD_BYTES).replace(b"\0", b"").upper():
-                            raise refuse(source.name, f"a document type declaration in {part.filename}",
-                                         "no spreadsheet program writes one", "save the readings again as XLSX or CSV")
-    except (zipfile.BadZipFile, OSError, RuntimeError, NotImplementedError, EOFError, ValueError) as error:
-        if isinstance(error, InputError):
-            raise
-        raise refuse(source.name, f"a damaged or locked archive ({error})",
-                     hint="open it in the spreadsheet program and save it again, without a password") from None
+    with _guarded(source, "a damaged or locked archive"), source.open() as file, zipfile.ZipFile(file) as archive:
+        parts = archive.infolist()
+        _check_sizes(source, parts)
+        for part in parts:
+            if part.filename.lower().endswith((".xml", ".rels")):
+                with archive.open(part) as content:
+                    if b"<!DOCTYPE" in content.read(HEAD_BYTES).replace(b"\0", b"").upper():
+                        raise refuse(source.name, f"a document type declaration in {part.filename}",
+                                     "no spreadsheet program writes one", "save the readings again as XLSX or CSV")
+
+
+def _check_sizes(source: Source, parts: list[zipfile.ZipInfo]) -> None:
+    names = {p.filename for p in parts}
+    if "xl/workbook.xml" not in names:
+        what = "a text document or another workbook format" if "mimetype" in names else "a ZIP archive"
+        raise refuse(source.name, what, "there is no XLSX workbook in it", "unpack it, or save as XLSX or CSV")
+    if len(parts) > MOST_PARTS:
+        raise refuse(source.name, f"a workbook of {len(parts)} parts", hint="save the readings as CSV",
+                     needs=f"at most {MOST_PARTS} parts")
+    total = sum(p.file_size for p in parts)
+    worst = max(parts, key=lambda p: p.file_size / max(p.compress_size, 1))
+    ratio = worst.file_size / max(worst.compress_size, 1)
+    strings = sum(p.file_size for p in parts if p.filename.lower().endswith("sharedstrings.xml"))
+    if total > MOST_UNPACKED or (ratio > MOST_RATIO and worst.file_size > 10 << 20) or strings > MOST_STRINGS:
+        got = f"a workbook that unpacks to {total / 2**20:.0f} MiB, one part {ratio:.0f}-fold"
+        raise refuse(source.name, got, "it would fill the memory", "save the readings alone, or as CSV",
+                     f"at most {MOST_UNPACKED >> 20} MiB unpacked, {MOST_STRINGS >> 20} MiB of it texts, "
+                     f"no part more than {MOST_RATIO}-fold")
 
 
 class Workbook:
@@ -86,11 +97,12 @@ class Workbook:
     def __enter__(self):
         self._file = self._source.open()
         try:
-            self._book = openpyxl.load_workbook(self._file, read_only=True, data_only=self._values, keep_links=False)
-        except Exception as error:  # openpyxl raises whatever its XML parser meets
+            with _guarded(self._source, "a workbook that cannot be opened"):
+                self._book = openpyxl.load_workbook(self._file, read_only=True, data_only=self._values,
+                                                    keep_links=False)
+        except InputError:
             self._file.close()
-            raise refuse(self._source.name, f"a workbook that cannot be opened ({type(error).__name__}: {error})",
-                         hint="open it in the spreadsheet program and save it again, or as CSV") from None
+            raise
         return self
 
     def __exit__(self, *_):
@@ -107,17 +119,13 @@ class Workbook:
 
     def rows(self, sheet: str, first: int = 1) -> Iterator[tuple[int, tuple]]:
         """(row number, values) of a sheet's rows."""
-        try:
+        if sheet not in self.sheets:
+            raise refuse(self._source.name, f"no sheet {sheet!r}", hint="choose one of the workbook's sheets",
+                         needs="one of: " + ", ".join(self.sheets))
+        with _guarded(self._source, f"a damaged sheet {sheet!r}"):
             table = self._book[sheet]
             table.reset_dimensions()  # the stated size of a sheet is not to be believed
             yield from enumerate(table.iter_rows(first, None, 1, MOST_COLUMNS, values_only=True), first)
-        except KeyError:
-            raise refuse(self._source.name, f"no sheet {sheet!r}", hint="choose one of the workbook's sheets",
-                         needs="one of: " + ", ".join(self.sheets)) from None
-        except (ValueError, TypeError, AttributeError, SyntaxError, ArithmeticError, OSError, EOFError,
-                zipfile.BadZipFile) as error:
-            raise refuse(self._source.name, f"a damaged sheet {sheet!r} ({error})",
-                         hint="open it in the spreadsheet program and save it again") from None
 
 
 def cell_text(value: object) -> str:

@@ -1,15 +1,16 @@
 """The cells of a log, block by block: a fast path for clean blocks, a careful one for the rest.
 
 A clean block is parsed by the C reader of pandas, all columns at once. A column of a block in which
-a single cell is no plain number comes back as text and is read cell by cell; a block whose lines and
-rows do not agree (line ends within quotes, null characters) is split row by row. So a stray word
-costs the reading of one column of one block, and a clean million rows cost what parsing costs.
+a cell is no plain number comes back as text and is read cell by cell; what stands there instead of
+numbers is learnt, and from then on the C reader knows it as missing. A block whose lines and rows do
+not agree (line ends within quotes, null characters) is split row by row. So a million rows, clean or
+with a logger's usual words in them, cost what parsing costs.
 """
 
 from __future__ import annotations
 
 import io
-from collections.abc import Callable
+from collections.abc import Callable, Iterable
 from typing import NamedTuple
 
 import numpy as np
@@ -18,6 +19,8 @@ import pandas as pd
 from engine.measurement.logbook_mapping import Mapping, is_text
 from engine.measurement.logbook_text import TextBlock, split_rows
 
+MOST_WORDS = 200
+FEW_HOLES = 0.05  # missing cells per row, below which it is quicker to look at each
 LONGEST_STAMP = 40  # bytes; a longer time cell is read, and refused, cell by cell
 
 TOO_MANY_CELLS = "more cells than the heading has columns"
@@ -40,14 +43,38 @@ class Block(NamedTuple):
     content: Callable[[int, int | None], str]
     fraction: float
     undecoded: int = 0
+    unread: dict[int, np.ndarray] = {}  # by position, the rows where a known word stands for a number
 
 
-def parse(block: TextBlock, mapping: Mapping) -> Block:
+class Words:
+    """What this log writes where a number is missing ("---"): learnt as it comes up, so that blocks stay fast.
+
+    Threads share it; ``known`` is never changed, only replaced.
+    """
+
+    def __init__(self, known: Iterable[str] = ()):
+        self.known: frozenset[str] = frozenset()
+        self.learn(known)
+
+    def learn(self, cells: Iterable[str]) -> None:
+        """Take up cells that are no numbers; those that Python could take for one are never words."""
+        new = [c for c in cells if c.strip() and c not in self.known and not _like_a_number(c)]
+        self.known |= frozenset(new[:max(MOST_WORDS - len(self.known), 0)])
+
+
+def _like_a_number(cell: str) -> bool:
+    try:
+        return not np.isnan(float(cell))
+    except ValueError:
+        return False
+
+
+def parse(block: TextBlock, mapping: Mapping, words: Words) -> Block:
     """The rows and cells of one block of text."""
-    return _fast(block, mapping) or _careful(block, mapping)
+    return _fast(block, mapping, words.known) or _careful(block, mapping)
 
 
-def _fast(block: TextBlock, mapping: Mapping) -> Block | None:
+def _fast(block: TextBlock, mapping: Mapping, words: frozenset[str] = frozenset()) -> Block | None:
     """One pass of the C reader; None when its rows are not the lines of the block."""
     # Null characters, and carriage returns within a line, are matters for the careful way.
     if b"\0" in block.data or (b"\r" in block.data and block.data.count(b"\r") != block.data.count(b"\r\n")):
@@ -60,7 +87,7 @@ def _fast(block: TextBlock, mapping: Mapping) -> Block | None:
     usual = max((len(first[k].encode()) for k in stamps if k < len(first)), default=0) + 2
     for stamp_width in (min(usual, LONGEST_STAMP), LONGEST_STAMP):
         kinds = {**dict.fromkeys(texts, str), **dict.fromkeys(stamps, f"S{stamp_width}")}
-        frame = _parse(block.data, mapping, len(first), numbers, kinds)
+        frame = _parse(block.data, mapping, len(first), numbers, kinds, words)
         if frame is None or len(frame) != lines:
             return None
         cells = {k: np.ascontiguousarray(frame[k].to_numpy()) for k in stamps}
@@ -75,18 +102,30 @@ def _fast(block: TextBlock, mapping: Mapping) -> Block | None:
     cells.update({k: _texts(frame[k]) for k in texts})
     content = _content(block.data, mapping.delimiter)
     spoiled = _over_wide(frame, mapping, content) + _cut_off(block, lines - 1, content, mapping)
-    return Block(np.arange(lines, dtype=np.int64), lines, cells, spoiled, content, block.fraction, block.spoiled)
+    holes = {k: np.flatnonzero(np.isnan(cells[k])) for k in numbers - dirty} if words else {}
+    if sum(map(len, holes.values())) < lines * FEW_HOLES:
+        unread = {k: np.array([i for i in rows.tolist() if content(i, k)], dtype=int) for k, rows in holes.items()}
+    else:
+        marks = _parse(block.data, mapping, len(first), set(), {})
+        unread = {k: rows[_bytes(marks[k])[rows] != 0] for k, rows in holes.items()}
+    return Block(np.arange(lines, dtype=np.int64), lines, cells, spoiled, content, block.fraction, block.spoiled,
+                 unread)
 
 
 def _last_bytes(stamps: np.ndarray) -> np.ndarray:
     return stamps.view(np.uint8).reshape(stamps.size, -1)[:, -1]
 
 
+def _bytes(column: pd.Series) -> np.ndarray:
+    """A column of first bytes: 0 where the cell is empty."""
+    return np.ascontiguousarray(column.to_numpy()).view(np.uint8)
+
+
 def _over_wide(frame: pd.DataFrame, mapping: Mapping, content) -> list[tuple[int, str, str]]:
     width = len(mapping.columns)
     if width not in frame:
         return []
-    over = np.flatnonzero(np.ascontiguousarray(frame[width].to_numpy()).view(np.uint8))
+    over = np.flatnonzero(_bytes(frame[width]))
     return [(int(i), content(i, None), TOO_MANY_CELLS) for i in over]
 
 
@@ -97,13 +136,14 @@ def _first_row(data: bytes, delimiter: str) -> list[str]:
 
 
 def _parse(data: bytes, mapping: Mapping, first_width: int, numbers: set[int],
-           kinds: dict[int, str | type]) -> pd.DataFrame | None:
-    """The table, of columns neither in ``numbers`` nor in ``kinds`` the first byte only.
+           kinds: dict[int, str | type], words: frozenset[str] = frozenset()) -> pd.DataFrame | None:
+    """The table, of columns neither in ``numbers`` nor in ``kinds`` the first byte only; ``words`` are no numbers.
 
     Where rows are wider than the heading, one column more is read to find them. None where that is
     too narrow as well (a first row that is wider would be cut without an error), or a quote stays open.
     """
     spaced = mapping.delimiter.encode() + b" " in data  # the reader is slower when it must look for them
+    missing = ["", *words]
     for width in (len(mapping.columns), len(mapping.columns) + 1):
         if first_width > width:
             continue
@@ -111,8 +151,8 @@ def _parse(data: bytes, mapping: Mapping, first_width: int, numbers: set[int],
             return pd.read_csv(
                 io.BytesIO(data), sep=mapping.delimiter, decimal=mapping.decimal, header=None, engine="c",
                 names=list(range(width)), dtype={k: kinds.get(k, "S1") for k in range(width) if k not in numbers},
-                index_col=False, low_memory=False, keep_default_na=False, na_values=[""], skip_blank_lines=False,
-                skipinitialspace=spaced)
+                index_col=False, low_memory=False, keep_default_na=False, na_values=dict.fromkeys(numbers, missing),
+                skip_blank_lines=False, skipinitialspace=spaced)
         except (pd.errors.ParserError, pd.errors.EmptyDataError, ValueError, OverflowError):
             continue
     return None

@@ -88,12 +88,15 @@ def test_the_fast_way_and_the_careful_way_agree(cells):
     block = TextBlock(lines.encode(), 1.0, 0, True)
     if not lines:
         return
-    fast, careful = logbook_table._fast(block, MAPPING), logbook_table._careful(block, MAPPING)
-    assert fast is not None
-    one, other = work(fast, MAPPING), work(careful, MAPPING)
-    np.testing.assert_array_equal(one.values["p_line"], other.values["p_line"])
-    np.testing.assert_array_equal(one.alive, other.alive)
-    assert [f[:3] for f in one.faults] == [f[:3] for f in other.faults]
+    words = logbook_table.Words()
+    careful = work(logbook_table._careful(block, MAPPING), MAPPING, words)
+    for known in (frozenset(), words.known):  # the second time the words of this log are known
+        fast = logbook_table._fast(block, MAPPING, known)
+        assert fast is not None
+        done = work(fast, MAPPING)
+        np.testing.assert_array_equal(done.values["p_line"], careful.values["p_line"])
+        np.testing.assert_array_equal(done.alive, careful.alive)
+        assert sorted(f[:3:2] for f in done.faults) == sorted(f[:3:2] for f in careful.faults)
 
 
 @settings(max_examples=150, deadline=None)
