@@ -165,28 +165,46 @@ def _refuse(a, own, basis):
            lambda: quality(a["p_separator"], **{name: value for name, value in a.items() if name not in own}))
 
 
+def arriving_quality(x_throttled, *, drain_fraction=None, water_share=None):
+    """Quality of what enters a separator [1], from that left to the throttle and what was drained.
+
+    Give either ``drain_fraction``, the part of all that enters, or ``water_share``, the part of the water in
+    it. ``x_throttled`` may be above 1, as a reach may. All broadcast together. Raises InputError.
+
+    >>> round(arriving_quality(0.967, drain_fraction=0.09), 3), round(arriving_quality(0.967, water_share=0.75), 3)
+    (0.88, 0.88)
+    """
+    drained = _one_of(drain_fraction, water_share)
+    (x_t, part), scalar = admit(x_throttled=x_throttled, **drained)
+    # a part of the water grows with the wetness, and of dry steam there is nothing to take a share of
+    x = x_t * (1 - part) if water_share is None else np.where(
+        x_t < 1, x_t * (1 - part) / (1 - part * np.minimum(x_t, 1.0)), x_t)
+    return give_back(np.asarray(x), scalar)
+
+
+def _one_of(drain_fraction, water_share) -> dict:
+    if (drain_fraction is None) == (water_share is None):
+        raise InputError(Fault("drained water", "both a part of the sample and of the water" if water_share is not None
+                               else "nothing", "", "one of drain_fraction and water_share"))
+    return {"drain_fraction": drain_fraction} if water_share is None else {"water_share": water_share}
+
+
 def combined_quality(p_line, x_throttled, *, drain_fraction=None, water_share=None, p_separator=None,
                      vessel_loss=0.0):
     """Quality in the line [1] from that left to the throttle and what was drained.
 
-    Give either ``drain_fraction``, the part of the whole sample, or ``water_share``, the part of the
-    water that reaches the separator. ``x_throttled`` may be above 1, as a reach may. Pressures
-    [Pa], ``vessel_loss`` [J/kg of the whole sample]; all broadcast together. Raises InputError.
+    ``drain_fraction`` or ``water_share`` as for ``arriving_quality``, the first of them of the whole sample.
+    Pressures [Pa], ``vessel_loss`` [J/kg of the whole sample]; all broadcast together. Raises InputError.
 
     >>> round(combined_quality(8e5, 0.967, drain_fraction=0.09), 3)
     0.88
     """
-    if (drain_fraction is None) == (water_share is None):
-        raise InputError(Fault("drained water", "both a part of the sample and of the water" if water_share is not None
-                               else "nothing", "", "one of drain_fraction and water_share"))
-    drained = {"drain_fraction": drain_fraction} if water_share is None else {"water_share": water_share}
+    drained = _one_of(drain_fraction, water_share)
     (p, x_t, p_s, q_s, part), scalar = admit(
         p_line=p_line, x_throttled=x_throttled, p_separator=p_line if p_separator is None else p_separator,
         vessel_loss=vessel_loss, **drained)
     require("p_separator", p_s, p_s <= p, "at most the line pressure")
-    # what arrived in the separator: of dry steam there is nothing to take a share of
-    arriving = x_t * (1 - part) if water_share is None else np.where(
-        x_t < 1, x_t * (1 - part) / (1 - part * np.minimum(x_t, 1.0)), x_t)
+    arriving = np.asarray(arriving_quality(x_t, **dict.fromkeys(drained, part)))
     line, sep = saturated(p), saturated(p_s)
     x = (np.asarray(sep.h_f + arriving * (sep.h_g - sep.h_f)) + q_s - line.h_f) / (line.h_g - line.h_f)
     return give_back(np.asarray(x), scalar)

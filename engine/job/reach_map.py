@@ -8,6 +8,7 @@ import numpy as np
 
 from engine.calorimeter import (
     Status,
+    arriving_quality,
     combined_quality,
     exhaust_pressure_for,
     least_electric_quality,
@@ -98,9 +99,11 @@ def _throttled(key: MapKey, p_line, p_exhaust, superheat: float) -> np.ndarray:
     if key.mode != SEPARATING:
         return wetness
     reads = np.isfinite(wetness)
-    x = combined_quality(np.broadcast_to(found.p_line, wetness.shape), np.where(reads, 1.0 - wetness, 1.0),
-                         water_share=key.water_share, vessel_loss=key.vessel_loss)
-    return np.where(reads, 1.0 - x, np.nan)
+    arriving = arriving_quality(np.where(reads, 1.0 - wetness, 1.0), water_share=key.water_share)
+    # at each line pressure the quality of the line is a straight function of that which arrives
+    water, steam = (combined_quality(found.p_line, x, water_share=key.water_share, vessel_loss=key.vessel_loss)
+                    for x in (0.0, 1.0))
+    return np.where(reads, 1.0 - (water + arriving * (steam - water)), np.nan)
 
 
 def _power_map(key: MapKey, p_line: np.ndarray, size: int) -> WetnessMap:
@@ -111,7 +114,11 @@ def _power_map(key: MapKey, p_line: np.ndarray, size: int) -> WetnessMap:
 
 
 def _heated(key: MapKey, p_line, p_heater, power, superheat: float) -> np.ndarray:
-    x = least_electric_quality(p_line, p_heater, power, key.sample_flow, superheat, power_loss=key.power_loss)
+    """At each line pressure the least quality is a straight function of the power: two powers give all of them."""
+    ends = key.power_loss + key.sample_flow * np.array([0.1 * POWER, POWER])
+    first, last = (least_electric_quality(p_line, p_heater, end, key.sample_flow, superheat,
+                                          power_loss=key.power_loss) for end in ends)
+    x = first + (power - ends[0]) / (ends[1] - ends[0]) * (last - first)
     return np.where(x <= 1.0, np.minimum(1.0 - x, 1.0), np.nan)
 
 

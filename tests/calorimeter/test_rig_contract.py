@@ -70,6 +70,7 @@ CALLS = {
     rig.flash_fraction: {"p_separator": 1e6, "p_drain": 1e5},
     rig.separated_reading: {"p_line": 8e5, "x": 0.9, "p_exhaust": 1e5, "drain_fraction": 0.08},
     rig.drain_needed: {"p_line": 8e5, "x": 0.88, "p_exhaust": 1e5},
+    rig.arriving_quality: {"x_throttled": 0.967, "drain_fraction": 0.09},
     rig.combined_quality: {"p_line": 8e5, "x_throttled": 0.967, "drain_fraction": 0.09},
     rig.drained_fraction: {"p_line": 8e5, "x": 0.88, "water_share": 0.75},
     rig.least_electric_quality: {"p_line": 6e5, "p_heater": 6e5, "power": 850.0, "sample_flow": 0.0033},
