@@ -71,7 +71,8 @@ def orifice_seen(course: Course, time: float) -> Said:
     left = float(flowing[flowing > 0][-1] / course.rig.flow(np.array([course.rig.p_line]), 1.0)[0])
     if left > 0.9:
         return Said("There is a little scale at the orifice; it is still open.")
-    return Said("Scale has grown into the orifice: about {0} of its area is left.", ((left, "percent"),))
+    return Said("Scale has grown into the orifice: about {0} of its area is left.",
+                ((round(left, 2), "percent"),))
 
 
 def planned_immersion(rig: Rig) -> float:

@@ -116,7 +116,7 @@ def _pieces(rig: Rig, deeds: Iterable[tuple[int, Deed]], time: np.ndarray) -> It
     for at, deed in deeds:
         valves = valves.after(at, deed)
         if valves.stop != stops[-1][1]:
-            stops.append((int(np.searchsorted(time, at)), valves.stop))
+            stops.append((int(np.searchsorted(time, at, side="right")), valves.stop))  # felt from the next step on
     began = None
     for (first, opening), (stop, _) in zip(stops, [*stops[1:], (n, 0.0)], strict=True):
         if not opening or first >= stop:
