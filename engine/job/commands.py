@@ -22,6 +22,7 @@ from engine.job.commands_reduce import reduce_arguments, reduce_command
 from engine.job.console import ANSWERED, UNUSABLE, Console, as_text
 from engine.job.console import OPEN as NO_ANSWER
 from engine.job.forecast_words import forecast_advice, forecast_headline
+from engine.job.rehearse_command import rehearse_arguments, rehearse_command
 from engine.job.uncertainty import forecast
 from engine.job.verdict import Verdict
 from engine.steam.errors import Fault, InputError
@@ -77,6 +78,8 @@ COMMANDS = (
     Command("reduce", "reduce logs of readings, or the readings typed into the case, to one quality",
             reduce_arguments, lambda options, console: reduce_command(read_case(options.case), options, console)),
     Command("quality", "what one reading, or an expected wetness, says (also: assess)", _quality_arguments, _quality),
+    Command("rehearse", "play a test on a simulated rig with hidden faults; write its log, or a link to practise with",
+            rehearse_arguments, lambda options, console: rehearse_command(read_case(options.case), options, console)),
 )
 _ALIASES = {"quality": ["assess"]}
 
@@ -90,6 +93,7 @@ examples:
   python -m engine reduce run1.csv run2.csv --case case.json --json result.json
   python -m engine reduce logs/ --case case.json --csv runs.csv --rows rows.csv
   python -m engine reduce run1.csv --case case.json --window 20 50 --reason "load steady, by the control room"
+  python -m engine rehearse case.json --fault "wet lagging" --seed 7 --log practice.csv
 
 A result says that a number could be measured. It is never permission to open a valve."""
 
