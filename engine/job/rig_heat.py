@@ -91,7 +91,7 @@ class Thermometer:
 
 @dataclass(frozen=True)
 class WarmingUp:
-    """The warm-up, SI: ``ready`` when the reading stays within the error allowed; the course over ``time``.
+    """The warm-up, SI: ``ready`` when the reading stays within the error allowed; its temperatures over ``time``.
 
     ``reading`` is what the thermometer shows; ``used`` the steam drawn until the test ends; ``early`` what a
     reading too soon is wrong by: (time, kelvin, part of the quality, None while the exhaust is wet).

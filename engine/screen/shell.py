@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import gc
+import sys
 import textwrap
 from collections.abc import Sequence
 from functools import lru_cache
@@ -20,9 +21,9 @@ from engine.steam.errors import InputError
 from engine.steam.units import SYSTEMS
 
 
-@lru_cache(maxsize=1)
-def _settle() -> None:
-    """Leave what the imports brought out of every later garbage collection; once per process."""
+@lru_cache(maxsize=32)
+def _settle(modules: int) -> None:
+    """Leave what the imports brought out of every later garbage collection: again when a page brought more."""
     gc.collect()
     gc.freeze()
 
@@ -35,14 +36,16 @@ def assessed(case: Case) -> Assessment:
 
 def run(pages: Sequence) -> None:
     """Draw the bar, then the chosen page."""
-    _settle()
     session.start()
+    session.hear()
     style.apply()
     page = st.navigation(list(pages), position="top")
     _bar()
-    _notice()
+    with st.container(key="notices"):  # always there, so that nothing below moves when a notice goes
+        _notice()
     page.run()
     address.keep(page.url_path, case=session.link())
+    _settle(len(sys.modules))
 
 
 def _bar() -> None:
@@ -65,6 +68,7 @@ def _units() -> None:
     session.mirror("units choice", st.session_state["units"])
 
     def changed() -> None:
+        session.hear(acted=True)
         st.session_state["units"] = st.session_state["units choice"] or "SI"
 
     st.segmented_control("Units", list(SYSTEMS), key="units choice", required=True, label_visibility="collapsed",
