@@ -33,6 +33,12 @@ from engine.measurement.instruments import (
     scale_reading,
     stability,
 )
+from engine.measurement.logbook import Log, absolute, fit_mapping, propose_mapping, read_log
+from engine.measurement.logbook_mapping import Column, Mapping, Question
+from engine.measurement.logbook_propose import Proposal
+from engine.measurement.logbook_rows import Rejected, Remark
+from engine.measurement.logbook_suspicion import Suspicion
+from engine.measurement.logbook_write import write_log
 from engine.measurement.montecarlo import Comparison, Difference, MonteCarlo, compare, monte_carlo
 from engine.measurement.outliers import Outliers, flag_outliers, grubbs_critical, thompson_tau
 from engine.measurement.sources import correlations_from_matrix
@@ -40,13 +46,14 @@ from engine.measurement.steadiness import Reason, SteadyLimits, Trend, Unsettled
 from engine.measurement.tolerances import pt100_resistance, pt100_tolerance, thermocouple_tolerance
 from engine.measurement.windows import Interval, Judgement, SettledWindows, judge_window, settled_windows
 
-__all__ = ["KINDS", "RULES", "SAMPLING", "Budget", "BudgetRow", "Comparison", "Component", "Difference",
-           "Improvement", "Independence", "Input", "Instrument", "Interval", "Judgement", "Limits", "MonteCarlo",
-           "Outcome", "Outliers", "Reason", "Rule", "SettledWindows", "SteadyLimits", "Trend", "Unsettled",
-           "Verdict", "Verdicts", "certificate", "cold_junction", "compare", "conformance_probability",
-           "correlations_from_matrix", "coverage_factor", "decide", "decide_both", "decimals_of",
-           "effective_number", "expanded", "flag_outliers", "gauge_temperature", "grubbs_critical",
-           "judge_window", "monte_carlo", "normal", "numerical_tolerance", "pt100_resistance",
-           "pt100_tolerance", "rectangular", "resolution", "result_correlation", "scale_reading",
-           "settled_windows", "stability", "thermocouple_tolerance", "thompson_tau", "trend", "triangular",
-           "type_a", "uncertainty_budget"]
+__all__ = ["KINDS", "RULES", "SAMPLING", "Budget", "BudgetRow", "Column", "Comparison", "Component", "Difference",
+           "Improvement", "Independence", "Input", "Instrument", "Interval", "Judgement", "Limits", "Log", "Mapping",
+           "MonteCarlo", "Outcome", "Outliers", "Proposal", "Question", "Reason", "Rejected", "Remark", "Rule",
+           "SettledWindows", "SteadyLimits", "Suspicion", "Trend", "Unsettled", "Verdict", "Verdicts", "absolute",
+           "certificate", "cold_junction", "compare", "conformance_probability", "correlations_from_matrix",
+           "coverage_factor", "decide", "decide_both", "decimals_of", "effective_number", "expanded", "fit_mapping",
+           "flag_outliers", "gauge_temperature", "grubbs_critical", "judge_window", "monte_carlo", "normal",
+           "numerical_tolerance", "propose_mapping", "pt100_resistance", "pt100_tolerance", "read_log", "rectangular",
+           "resolution", "result_correlation", "scale_reading", "settled_windows", "stability",
+           "thermocouple_tolerance", "thompson_tau", "trend", "triangular", "type_a", "uncertainty_budget",
+           "write_log"]

@@ -123,7 +123,7 @@ def read_log(path_or_bytes, mapping: Mapping | None = None, *,
     (Rejected(row=3, column='p1 [bar g]', content='n/a', reason='the instrument says that it has no value'),)
     """
     source = source_of(path_or_bytes)
-    proposal = _propose(source, Layout()) if mapping is None else fit_mapping(mapping, source)
+    proposal = _propose(source, Layout()) if mapping is None else _fitted(mapping, source)
     refuse_open(proposal.mapping, source.name)
     collector = Collector(proposal.mapping)
     for done in _worked(source, proposal.mapping, Words(proposal.words)):
@@ -165,13 +165,17 @@ def absolute(log: Log, p_barometer=None) -> Log:
     return replace(log, channels=channels, basis={**log.basis, **dict.fromkeys(gauge, "absolute")})
 
 
-def fit_mapping(mapping: Mapping, source: Source) -> Proposal:
+def fit_mapping(mapping: Mapping, source: Source) -> Mapping:
     """A remembered mapping laid on a file: columns by their headings, lines where this file has them.
 
     What was decided (channels, units, bases, decimal sign, date order) stays as decided. The layout
     remembered is tried first, then the one this file shows. Raises InputError for a column that is
     in neither.
     """
+    return _fitted(mapping, source).mapping
+
+
+def _fitted(mapping: Mapping, source: Source) -> Proposal:
     names = tuple((c.position, c.name.strip()) for c in mapping.used.values())
     told = Layout(mapping.delimiter, mapping.encoding, mapping.sheet, 0 if mapping.header_line == 0 else None,
                   mapping.first_line if mapping.header_line == 0 else None, names)
