@@ -13,6 +13,7 @@ from engine.job.rows import Entry
 from engine.screen import session
 
 BASES = ("gauge", "absolute")
+WIDGETS = ("slide ", "exact ", "basis ", "choice ", "words ")  # how the keys of the widgets here begin
 
 
 class Range(NamedTuple):

@@ -40,12 +40,22 @@ def run(pages: Sequence) -> None:
     session.hear()
     style.apply()
     page = st.navigation(list(pages), position="top")
+    _turn_to(page.url_path)
     _bar()
     with st.container(key="notices"):  # always there, so that nothing below moves when a notice goes
         _notice()
     page.run()
     address.keep(page.url_path, case=session.link())
     _settle(len(sys.modules))
+
+
+def _turn_to(page: str) -> None:
+    """On a page just opened no widget shows anything yet, not even one that it shares with the page before."""
+    state = st.session_state
+    if state.get("page") != page:
+        state["page"] = page
+        for key in [key for key in state if isinstance(key, str) and key.startswith(entries.WIDGETS)]:
+            del state[key]
 
 
 def _bar() -> None:
