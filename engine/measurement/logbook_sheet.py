@@ -15,7 +15,6 @@ from collections.abc import Iterator
 from contextlib import contextmanager
 
 import numpy as np
-import openpyxl
 
 from engine.measurement.logbook_mapping import Mapping
 from engine.measurement.logbook_propose import Layout, Proposal, Row, propose
@@ -95,6 +94,8 @@ class Workbook:
         self._source, self._values = source, values
 
     def __enter__(self):
+        import openpyxl  # only when a workbook is read: who reads none need not wait for it
+
         self._file = self._source.open()
         try:
             with _guarded(self._source, "a workbook that cannot be opened"):

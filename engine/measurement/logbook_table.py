@@ -11,13 +11,15 @@ from __future__ import annotations
 
 import io
 from collections.abc import Callable, Iterable
-from typing import NamedTuple
+from typing import TYPE_CHECKING, NamedTuple
 
 import numpy as np
-import pandas as pd
 
 from engine.measurement.logbook_mapping import Mapping, is_text
 from engine.measurement.logbook_text import TextBlock, split_rows
+
+if TYPE_CHECKING:
+    import pandas as pd
 
 MOST_WORDS = 200
 FEW_HOLES = 0.05  # missing cells per row, below which it is quicker to look at each
@@ -142,6 +144,8 @@ def _parse(data: bytes, mapping: Mapping, first_width: int, numbers: set[int],
     Where rows are wider than the heading, one column more is read to find them. None where that is
     too narrow as well (a first row that is wider would be cut without an error), or a quote stays open.
     """
+    import pandas as pd  # only when a log is read: who reads none need not wait for it
+
     spaced = mapping.delimiter.encode() + b" " in data  # the reader is slower when it must look for them
     missing = ["", *words]
     for width in (len(mapping.columns), len(mapping.columns) + 1):

@@ -1,6 +1,7 @@
 """Reading logs in every dialect, with the mapping proposed, confirmed, remembered and laid on other files."""
 
 import io
+import tracemalloc
 from functools import partial
 
 import numpy as np
@@ -10,6 +11,7 @@ from engine.measurement import logbook
 from engine.measurement.logbook import absolute, propose_mapping, read_log
 from engine.measurement.logbook_mapping import Column, Mapping
 from engine.measurement.logbook_rows import LISTED_PER_REASON
+from engine.measurement.logbook_table import MOST_WORDS, Words
 from engine.measurement.logbook_text import text_blocks
 from engine.steam import InputError
 
@@ -360,3 +362,45 @@ def test_a_byte_of_another_code_late_in_a_long_log_changes_nothing_before(monkey
     log = read_log(b"time [s],p1 [bar g],T2 [degC],remark\n" + rows.encode() * 30 + b"0,9.0,121,k\xe4lter\n")
     assert log.remarks[-1].text == "kälter"
     assert len(log) == 30_001
+
+
+def peak_over_result(data: bytes) -> float:
+    tracemalloc.start()
+    try:
+        log = read_log(data)
+        peak = tracemalloc.get_traced_memory()[1]
+    finally:
+        tracemalloc.stop()
+    return peak - sum(a.nbytes for a in (log.rows, log.time, *log.channels.values()))
+
+
+def test_memory_beyond_the_result_does_not_grow_with_the_log(monkeypatch):
+    monkeypatch.setattr(logbook, "text_blocks", partial(text_blocks, size=10_000))
+    head = b"time [s],p1 [bar g],T2 [degC]\n"
+    rows = [f"{k},9.{k % 97:02d},121.{k % 10}\n".encode() for k in range(24_000)]
+    read_log(head + rows[0])  # whatever is loaded once
+    little, much = (peak_over_result(head + b"".join(rows[:count])) for count in (6_000, 24_000))
+    # One more column while the pieces are put together, and masks of one byte a row: 30 bytes a row at most.
+    assert much - little < 18_000 * 30
+
+
+def test_a_log_s_words_are_learnt_and_never_numbers():
+    words = Words(["---", "n/a", " ", "", "9.01", "1_0", "inf", "nan", "9,01"])
+    assert words.known == {"---", "n/a", "nan", "9,01"}
+    words.learn(["OVER", "---"])
+    assert words.known == {"---", "n/a", "nan", "9,01", "OVER"}
+    words.learn(f"w{k}" for k in range(1000))
+    assert len(words.known) == MOST_WORDS
+
+
+@pytest.mark.parametrize("sparse", [False, True])
+def test_words_known_and_unknown_are_all_listed(monkeypatch, sparse):
+    monkeypatch.setattr(logbook, "text_blocks", partial(text_blocks, size=2000))
+    cells = [("---" if k % 50 == 7 else "OVER" if k > 1500 and k % 60 == 1 else "" if sparse and k % 3 else "9.01")
+             for k in range(3000)]
+    rows = "".join(f"{k},{c},121\n" for k, c in enumerate(cells))
+    log = read_log(f"time [s],p1 [bar g],T2 [degC]\n{rows}".encode())
+    refused = [(k + 2, c) for k, c in enumerate(cells) if c in ("---", "OVER")]
+    assert log.rejected_counts == {"the instrument says that it has no value": len(refused)}
+    assert [(r.row, r.content) for r in log.rejected] == refused
+    assert log.missing["p_line"] == sum(c != "9.01" for c in cells)
