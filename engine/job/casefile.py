@@ -16,7 +16,7 @@ from engine.steam.errors import Fault, InputError
 from engine.steam.units import ALIASES
 
 FORMAT, SCHEMA = "steam quality case", 1
-MAX_BYTES = 5_000_000
+MAX_BYTES, MAX_RECORD = 5_000_000, 20_000_000
 MAX_TEXT = 4_000
 LISTED = 20  # faults spelled out
 _LINK_BYTES = 200_000
@@ -54,6 +54,39 @@ def from_json(data: bytes | str) -> Case:
     except (ValueError, RecursionError) as error:
         raise _refusal("case file", _first_line(error), "a JSON file as saved by this program") from error
     return _from_document(document, "case file")
+
+
+BLOCK = '<script type="application/json" id="{}">'  # of a record; a browser neither shows nor runs it
+
+
+def from_record(data: bytes | str) -> Case:
+    """The case that a record holds. InputError with the reason where the page holds none that can be used."""
+    return from_json(block_of(data, "case"))
+
+
+def block_of(data: bytes | str, name: str) -> str:
+    """The text of a named block of data in a record. InputError where there is none."""
+    if len(data) > MAX_RECORD:
+        raise _refusal("record", f"{len(data)} bytes", f"at most {MAX_RECORD} bytes")
+    try:
+        text = data.decode() if isinstance(data, bytes) else data
+    except UnicodeDecodeError as error:
+        raise _refusal("record", "bytes that are not text", "a record in UTF-8, as saved by this program") from error
+    _, found, rest = text.partition(BLOCK.format(name))
+    block, closed, _ = rest.partition("</script>")
+    if not (found and closed):
+        raise _refusal("record", "a page of another kind", f"a record as saved by this program, with its {name} in it")
+    return block
+
+
+def as_block(name: str, text: str) -> str:
+    r"""JSON text as a block of data in a page, in which nothing can end it early or pass for markup.
+
+    >>> as_block("case", '{"title": "</script>"}')
+    '<script type="application/json" id="case">{"title": "\\u003c/script\\u003e"}</script>'
+    """
+    harmless = {letter: f"\\u{ord(letter):04x}" for letter in "<>&\u2028\u2029"}
+    return BLOCK.format(name) + "".join(harmless.get(letter, letter) for letter in text) + "</script>"
 
 
 def _first_line(error: Exception) -> str:

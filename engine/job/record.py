@@ -1,0 +1,185 @@
+"""The record of a test: one page that opens offline, can be checked line by line, reopened and recomputed."""
+
+from __future__ import annotations
+
+import hashlib
+import io
+import zipfile
+from collections.abc import Sequence
+
+import numpy as np
+
+from engine import __version__
+from engine.job import record_sections as sections
+from engine.job.answer import answer
+from engine.job.assessment import assess
+from engine.job.case import Case, resolve
+from engine.job.casefile import to_json
+from engine.job.cautions import SHORT
+from engine.job.corrections import shown_of
+from engine.job.fields_modes import ELECTRIC, NOT_STATED, SEPARATING, THROTTLING
+from engine.job.fields_path import EXPECTED, UNDECIDED
+from engine.job.paper import bullets, check_paper, document, escaped_line, one_line, paragraph
+from engine.job.record_data import Refusal, blocks, fits, logged_runs, readings_csv
+from engine.job.record_sections import READING, Facts
+from engine.job.result import Result, reduce
+from engine.job.runs import Run
+from engine.job.runsheet import run_sheet
+from engine.job.runsheet_print import signature_table, title_of
+from engine.steam.errors import Fault, InputError
+from engine.steam.units import UnitSystem
+
+FORMULATION = "IAPWS-IF97 (R7-97, 2012), regions 1, 2 and 4"
+
+_STYLE = """
+table.facts td:first-child, table.blanks td:first-child { width: 46mm; font-weight: 600; }
+table.facts, table.blanks, table.entries { overflow-wrap: anywhere; }
+table.blanks td { height: 9mm; }
+table.entries { table-layout: fixed; }
+table.entries td:nth-child(odd) { width: 31%; color: #333; }
+table.entries td { padding-top: 0.3mm; padding-bottom: 0.3mm; font-size: 8.5pt; }
+table.log td { padding-top: 0.2mm; padding-bottom: 0.2mm; font-size: 8.5pt; }
+table.log td:last-child { width: 30mm; overflow-wrap: anywhere; }
+.signed { break-inside: avoid; }
+.diagrams { display: grid; grid-template-columns: 1fr 1fr; gap: 2mm 4mm; }
+figure { margin: 0; break-inside: avoid; }
+figcaption { font-size: 9pt; font-weight: 600; }
+.stop { font-size: 13pt; }
+@media screen and (max-width: 700px) { .diagrams { grid-template-columns: 1fr; } }
+"""
+
+
+def record_html(case: Case, result: Result | None, units: UnitSystem, paper: str, *, made: str,
+                refusals: Sequence[Refusal] = ()) -> str:
+    """The record of a test as one HTML page for "A4" or "Letter".
+
+    ``result`` is what the readings say by this case; None makes the record from the single reading in
+    the case. ``made`` is date and time in words, ``refusals`` what of the logs could not be used. The
+    same arguments give the same bytes. Raises InputError, with every reason at once, where there is
+    nothing to record yet.
+    """
+    check_paper(paper)
+    facts = facts_of(case, result, units, refusals)
+    title = title_of(case)
+    runs = () if facts.result is None else tuple(run.run for run in facts.result.runs)
+    parts = (("What was asked", sections.question), ("What was found", sections.answered),
+             ("Decision", sections.conformity), ("Readings as taken", sections.readings),
+             ("Settled windows", sections.windows), ("Corrections, one by one", sections.corrections),
+             ("States and diagrams", sections.states), ("Uncertainty", sections.budget),
+             ("Deviations from the run sheet", sections.deviations), ("Noticed, and taken for granted",
+                                                                      sections.cautions),
+             ("Rig, instruments and everything entered", sections.entries))
+    body = [f"<h1>{escaped_line(title)}</h1>",
+            paragraph(f"Record of a steam quality test by calorimeter. Made {one_line(made)}."),
+            paragraph(SHORT, "small")]
+    for heading, section in parts:
+        html = section(facts)
+        body += [f"<h2>{heading}</h2>", html] if html else []
+    body += ["<h2>How it was computed</h2>", bullets(_computed(facts, runs)),
+             f'<div class="signed"><h2>Signed</h2>{signature_table(case).html()}</div>']
+    foot = f"Made {one_line(made)}. Program version {__version__}. {FORMULATION}."
+    return document(f"Record: {title}", "\n".join(body), paper, foot=foot, style=_STYLE,
+                    data=blocks(case, _brought(runs), refusals))
+
+
+def record_zip(case: Case, result: Result | None, units: UnitSystem, paper: str, *, made: str,
+               refusals: Sequence[Refusal] = ()) -> bytes:
+    """The record with its data: record.html, case.json, and readings.csv where there are readings.
+
+    The same arguments give the same bytes. Raises InputError as ``record_html`` does.
+    """
+    facts = facts_of(case, result, units, refusals)
+    files = {"record.html": record_html(case, result, units, paper, made=made, refusals=refusals).encode(),
+             "case.json": to_json(case).encode()}
+    if facts.result is not None:
+        files["readings.csv"] = readings_csv(facts.result)
+    packed = io.BytesIO()
+    with zipfile.ZipFile(packed, "w", zipfile.ZIP_DEFLATED) as archive:
+        for name, data in files.items():
+            entry = zipfile.ZipInfo(name)  # dated 1980, so that nothing but its contents decides its bytes
+            entry.compress_type, entry.external_attr = zipfile.ZIP_DEFLATED, 0o644 << 16
+            archive.writestr(entry, data)
+    return packed.getvalue()
+
+
+def reasons_against(case: Case, result: Result | None) -> tuple[Fault, ...]:
+    """Why there is nothing to record yet: what nobody has decided, or read."""
+    faults = []
+    if case["mode"] == ELECTRIC:
+        if case["power_loss"] is None:
+            faults.append(Fault("heat lost by the heater", NOT_STATED, "", "a value, 0 where it is knowingly nothing",
+                                "left out, it makes the steam look drier than it is", name="power_loss"))
+    elif case["heat_loss_method"] == UNDECIDED:
+        faults.append(Fault("heat loss", UNDECIDED, "", "one of the ways to account for it, “none” among them",
+                            "it always makes the steam look wetter than it is", "choose it on the Path page",
+                            "heat_loss_method"))
+    if case["sampling_kind"] == NOT_STATED or case["sampling"] is None:
+        faults.append(Fault("sampling representativeness", NOT_STATED, "",
+                            "a judgement of someone who knows the tapping",
+                            "it is a part of the uncertainty, often the largest",
+                            "state it with the instruments, 0 where it is knowingly nothing", "sampling"))
+    if (result is None or case["mode"] != THROTTLING) and case["question"] == EXPECTED:
+        faults.append(Fault("question", "what must be seen", "", "a reading, or readings",
+                            "an expectation is no test", "choose “I have a reading” on the Path page", "question"))
+    if result is not None and not result.runs:
+        faults.append(Fault("readings", "none", "", "one at least", name="readings"))
+    return tuple(faults)
+
+
+def facts_of(case: Case, result: Result | None, units: UnitSystem, refusals: Sequence[Refusal] = ()) -> Facts:
+    """All that a record tells. InputError, with every reason at once, where there is nothing to record yet."""
+    if faults := reasons_against(case, result):
+        raise InputError(*faults)
+    if case["mode"] != THROTTLING:  # the means of such a test are entered one by one
+        result = None
+    elif result is None:
+        result = reduce(case, (reading_as_run(case),))
+    first = next((run.assessment for run in (*result.read, *result.runs) if run.assessment), None) if result else None
+    a = first or assess(case)
+    try:
+        sheet, trouble = run_sheet(case), ""
+    except InputError as error:
+        sheet, trouble = None, str(error)
+    return Facts(case, a, answer(a, units), result, tuple(refusals), sheet, trouble, units)
+
+
+def reading_as_run(case: Case) -> Run:
+    """The single reading of a case as a run of one set. InputError where an entry cannot be used."""
+    si = resolve(case)
+    (p_line, line_basis), (p_exhaust, exhaust_basis) = shown_of(case, "p_line"), shown_of(case, "p_exhaust")
+    read = {"p_line": p_line, "p_exhaust": p_exhaust, "T_exhaust": si["T_exhaust"], "p_barometer": si.p_barometer,
+            "sample_flow": si["sample_flow"], "T_ambient": si["T_ambient"]}
+    channels = {name: np.array([value]) for name, value in read.items() if value is not None}
+    basis = {"p_line": line_basis, "p_exhaust": exhaust_basis, "p_barometer": "absolute"}
+    return Run(READING, np.array([1]), None, channels, basis, np.array([True]))
+
+
+def _brought(runs: Sequence[Run]) -> tuple[Run, ...]:
+    """Runs that the case does not hold itself."""
+    return tuple(run for run in runs if run.name != READING)
+
+
+_BALANCES = {
+    THROTTLING: "h_line + c₁²/2 = h(p₂, T₂) + (1 − r) c₂²/2 + q",
+    SEPARATING: "h + c₁²/2 = h(p₂, T₂) + (1 − r) c₂²/2 + q behind the separator, the drained water put back by mass",
+    ELECTRIC: "h_line = h(p₃, T₃) − (P − P_lost)/ṁ",
+}
+
+
+def _computed(facts: Facts, runs: Sequence[Run]) -> list[str]:
+    lines = [f"Properties of water and steam: {FORMULATION}. Program version {__version__}.",
+             f"Energy balance: {_BALANCES[facts.case['mode']]}; quality x = (h_line − h_f)/(h_g − h_f) at the line "
+             "pressure.",
+             *(["Uncertainty by JCGM 100 (GUM), decision by JCGM 106."] if facts.result is not None else []),
+             "This page holds the case file: open the page itself in the dashboard, under Case, and the same digits "
+             "come out."]
+    logged = logged_runs(facts.case, _brought(runs))
+    if logged:
+        lines.append("The readings of the logs are in this page too." if fits(logged) else
+                     "The readings of the logs are too many for this page: they are in readings.csv beside it.")
+    if facts.result is not None:
+        digest = hashlib.sha256(readings_csv(facts.result)).hexdigest()
+        lines.append(f"SHA-256 of readings.csv: {digest}")
+    return lines
+
+
