@@ -20,12 +20,13 @@ from engine.job.corrections import shown_of
 from engine.job.fields_modes import ELECTRIC, NOT_STATED, SEPARATING, THROTTLING
 from engine.job.fields_path import EXPECTED, UNDECIDED
 from engine.job.paper import bullets, check_paper, document, escaped_line, one_line, paragraph
-from engine.job.record_data import Refusal, blocks, fits, logged_runs, readings_csv
+from engine.job.record_data import blocks, fits, readings_csv
 from engine.job.record_sections import READING, Facts
 from engine.job.result import Result, reduce
 from engine.job.runs import Run
 from engine.job.runsheet import run_sheet
 from engine.job.runsheet_print import signature_table, title_of
+from engine.measurement.logbook import Log
 from engine.steam.errors import Fault, InputError
 from engine.steam.units import UnitSystem
 
@@ -50,49 +51,30 @@ figcaption { font-size: 9pt; font-weight: 600; }
 
 
 def record_html(case: Case, result: Result | None, units: UnitSystem, paper: str, *, made: str,
-                refusals: Sequence[Refusal] = ()) -> str:
+                logs: Sequence[Log] = ()) -> str:
     """The record of a test as one HTML page for "A4" or "Letter".
 
     ``result`` is what the readings say by this case; None makes the record from the single reading in
-    the case. ``made`` is date and time in words, ``refusals`` what of the logs could not be used. The
-    same arguments give the same bytes. Raises InputError, with every reason at once, where there is
-    nothing to record yet.
+    the case. ``made`` is date and time in words; ``logs`` are those that the readings came from, kept in
+    the record so that it can be recomputed. The same arguments give the same bytes. Raises InputError,
+    with every reason at once, where there is nothing to record yet.
     """
     check_paper(paper)
-    facts = facts_of(case, result, units, refusals)
-    title = title_of(case)
-    runs = () if facts.result is None else tuple(run.run for run in facts.result.runs)
-    parts = (("What was asked", sections.question), ("What was found", sections.answered),
-             ("Decision", sections.conformity), ("Readings as taken", sections.readings),
-             ("Settled windows", sections.windows), ("Corrections, one by one", sections.corrections),
-             ("States and diagrams", sections.states), ("Uncertainty", sections.budget),
-             ("Deviations from the run sheet", sections.deviations), ("Noticed, and taken for granted",
-                                                                      sections.cautions),
-             ("Rig, instruments and everything entered", sections.entries))
-    body = [f"<h1>{escaped_line(title)}</h1>",
-            paragraph(f"Record of a steam quality test by calorimeter. Made {one_line(made)}."),
-            paragraph(SHORT, "small")]
-    for heading, section in parts:
-        html = section(facts)
-        body += [f"<h2>{heading}</h2>", html] if html else []
-    body += ["<h2>How it was computed</h2>", bullets(_computed(facts, runs)),
-             f'<div class="signed"><h2>Signed</h2>{signature_table(case).html()}</div>']
-    foot = f"Made {one_line(made)}. Program version {__version__}. {FORMULATION}."
-    return document(f"Record: {title}", "\n".join(body), paper, foot=foot, style=_STYLE,
-                    data=blocks(case, _brought(runs), refusals))
+    facts = facts_of(case, result, units, logs)
+    return _page(facts, paper, made, _rows(facts))
 
 
 def record_zip(case: Case, result: Result | None, units: UnitSystem, paper: str, *, made: str,
-               refusals: Sequence[Refusal] = ()) -> bytes:
+               logs: Sequence[Log] = ()) -> bytes:
     """The record with its data: record.html, case.json, and readings.csv where there are readings.
 
     The same arguments give the same bytes. Raises InputError as ``record_html`` does.
     """
-    facts = facts_of(case, result, units, refusals)
-    files = {"record.html": record_html(case, result, units, paper, made=made, refusals=refusals).encode(),
-             "case.json": to_json(case).encode()}
-    if facts.result is not None:
-        files["readings.csv"] = readings_csv(facts.result)
+    check_paper(paper)
+    facts = facts_of(case, result, units, logs)
+    rows = _rows(facts)
+    files = {"record.html": _page(facts, paper, made, rows).encode(), "case.json": to_json(case).encode(),
+             **({} if rows is None else {"readings.csv": rows})}
     packed = io.BytesIO()
     with zipfile.ZipFile(packed, "w", zipfile.ZIP_DEFLATED) as archive:
         for name, data in files.items():
@@ -100,6 +82,32 @@ def record_zip(case: Case, result: Result | None, units: UnitSystem, paper: str,
             entry.compress_type, entry.external_attr = zipfile.ZIP_DEFLATED, 0o644 << 16
             archive.writestr(entry, data)
     return packed.getvalue()
+
+
+_PARTS = (("What was asked", sections.question), ("What was found", sections.answered),
+          ("Decision", sections.conformity), ("Readings as taken", sections.readings),
+          ("Settled windows", sections.windows), ("Corrections, one by one", sections.corrections),
+          ("States and diagrams", sections.states), ("Uncertainty", sections.budget),
+          ("Deviations from the run sheet", sections.deviations), ("Noticed, and taken for granted", sections.cautions),
+          ("Rig, instruments and everything entered", sections.entries))
+
+
+def _page(facts: Facts, paper: str, made: str, rows: bytes | None) -> str:
+    title, made = title_of(facts.case), one_line(made)
+    body = [f"<h1>{escaped_line(title)}</h1>",
+            paragraph(f"Record of a steam quality test by calorimeter. Made {made}."), paragraph(SHORT, "small")]
+    for heading, section in _PARTS:
+        html = section(facts)
+        body += [f"<h2>{heading}</h2>", html] if html else []
+    body += ["<h2>How it was computed</h2>", bullets(_computed(facts, rows)),
+             f'<div class="signed"><h2>Signed</h2>{signature_table(facts.case).html()}</div>']
+    foot = f"Made {made}. Program version {__version__}. {FORMULATION}."
+    return document(f"Record: {title}", "\n".join(body), paper, foot=foot, style=_STYLE,
+                    data=blocks(facts.case, facts.logs))
+
+
+def _rows(facts: Facts) -> bytes | None:
+    return None if facts.result is None else readings_csv(facts.result)
 
 
 def reasons_against(case: Case, result: Result | None) -> tuple[Fault, ...]:
@@ -126,7 +134,7 @@ def reasons_against(case: Case, result: Result | None) -> tuple[Fault, ...]:
     return tuple(faults)
 
 
-def facts_of(case: Case, result: Result | None, units: UnitSystem, refusals: Sequence[Refusal] = ()) -> Facts:
+def facts_of(case: Case, result: Result | None, units: UnitSystem, logs: Sequence[Log] = ()) -> Facts:
     """All that a record tells. InputError, with every reason at once, where there is nothing to record yet."""
     if faults := reasons_against(case, result):
         raise InputError(*faults)
@@ -140,7 +148,9 @@ def facts_of(case: Case, result: Result | None, units: UnitSystem, refusals: Seq
         sheet, trouble = run_sheet(case), ""
     except InputError as error:
         sheet, trouble = None, str(error)
-    return Facts(case, a, answer(a, units), result, tuple(refusals), sheet, trouble, units)
+    reduced = set() if result is None else {run.run.name for run in result.runs}
+    kept = tuple(log for log in logs if log.name in reduced)
+    return Facts(case, a, answer(a, units), result, kept, sheet, trouble, units)
 
 
 def reading_as_run(case: Case) -> Run:
@@ -154,11 +164,6 @@ def reading_as_run(case: Case) -> Run:
     return Run(READING, np.array([1]), None, channels, basis, np.array([True]))
 
 
-def _brought(runs: Sequence[Run]) -> tuple[Run, ...]:
-    """Runs that the case does not hold itself."""
-    return tuple(run for run in runs if run.name != READING)
-
-
 _BALANCES = {
     THROTTLING: "h_line + c₁²/2 = h(p₂, T₂) + (1 − r) c₂²/2 + q",
     SEPARATING: "h + c₁²/2 = h(p₂, T₂) + (1 − r) c₂²/2 + q behind the separator, the drained water put back by mass",
@@ -166,20 +171,16 @@ _BALANCES = {
 }
 
 
-def _computed(facts: Facts, runs: Sequence[Run]) -> list[str]:
+def _computed(facts: Facts, rows: bytes | None) -> list[str]:
     lines = [f"Properties of water and steam: {FORMULATION}. Program version {__version__}.",
              f"Energy balance: {_BALANCES[facts.case['mode']]}; quality x = (h_line − h_f)/(h_g − h_f) at the line "
              "pressure.",
-             *(["Uncertainty by JCGM 100 (GUM), decision by JCGM 106."] if facts.result is not None else []),
+             *(["Uncertainty by JCGM 100 (GUM), decision by JCGM 106."] if rows is not None else []),
              "This page holds the case file: open the page itself in the dashboard, under Case, and the same digits "
              "come out."]
-    logged = logged_runs(facts.case, _brought(runs))
-    if logged:
-        lines.append("The readings of the logs are in this page too." if fits(logged) else
-                     "The readings of the logs are too many for this page: they are in readings.csv beside it.")
-    if facts.result is not None:
-        digest = hashlib.sha256(readings_csv(facts.result)).hexdigest()
-        lines.append(f"SHA-256 of readings.csv: {digest}")
+    if facts.logs:
+        lines.append("The logs as read are in this page too." if fits(facts.logs) else
+                     "The logs are too long for this page: keep them with it, and bring them again to recompute.")
+    if rows is not None:
+        lines.append(f"SHA-256 of readings.csv: {hashlib.sha256(rows).hexdigest()}")
     return lines
-
-

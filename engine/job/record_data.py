@@ -1,4 +1,4 @@
-"""The data in and beside a record: readings kept to the last digit, their CSV, and the way back."""
+"""The data in and beside a record: case and logs kept to the last digit, the rows as CSV, and the way back."""
 
 from __future__ import annotations
 
@@ -14,102 +14,91 @@ from engine.job.case import Case
 from engine.job.casefile import as_block, block_of, from_record, to_json
 from engine.job.result import Result
 from engine.job.result_data import write_rows
-from engine.job.runs import CHANNELS, Run, runs_typed
+from engine.job.runs import Run, run_of_log, runs_typed
 from engine.measurement.logbook import Log
+from engine.measurement.logbook_mapping import Mapping
+from engine.measurement.logbook_rows import Rejected, Remark
+from engine.measurement.logbook_suspicion import Suspicion
 from engine.steam.errors import Fault, InputError
+from engine.steam.quantities import QUANTITIES
 
-MOST_CELLS = 200_000  # of readings kept in the record itself; more go beside it
-
-
-class Refusal(NamedTuple):
-    """What of a log could not be used: where it stood, what it was, and why."""
-
-    log: str
-    row: int
-    column: str
-    content: str
-    reason: str
+MOST_CELLS = 200_000  # of logs kept in the record itself; longer ones have to be kept beside it
 
 
 class Reopened(NamedTuple):
-    """What a record holds: its case, the runs that came from logs, and what of them could not be used."""
+    """What a record holds: its case, and the logs that its readings came from."""
 
     case: Case
-    runs: tuple[Run, ...]
-    refusals: tuple[Refusal, ...]
+    logs: tuple[Log, ...]
 
     @property
-    def all_runs(self) -> tuple[Run, ...]:
-        """The runs of the record in its own order, those typed into the case last."""
-        return (*self.runs, *runs_typed(self.case))
+    def runs(self) -> tuple[Run, ...]:
+        """The runs behind the record, those typed into the case last."""
+        return (*map(run_of_log, self.logs), *runs_typed(self.case))
 
 
-def refusals_of(logs: Sequence[Log]) -> tuple[Refusal, ...]:
-    """What of the logs could not be used, as far as they list it."""
-    return tuple(Refusal(log.name, *rejected) for log in logs for rejected in log.rejected)
+def fits(logs: Sequence[Log]) -> bool:
+    """Whether logs are short enough to be kept in the record itself."""
+    return sum(len(log) * (2 + len(log.channels)) + 2 * len(log.remarks) for log in logs) <= MOST_CELLS
 
 
-def blocks(case: Case, runs: Sequence[Run], refusals: Sequence[Refusal]) -> str:
-    """The case, and the readings that are not in it, as blocks of data for a page."""
-    logged = logged_runs(case, runs)
-    kept = logged if fits(logged) else ()
-    data = {"runs": [_as_data(run) for run in kept], "refusals": [list(r) for r in refusals[:MOST_CELLS // 5]]}
-    text = json.dumps(data, ensure_ascii=False, allow_nan=False, separators=(",", ":"))
+def blocks(case: Case, logs: Sequence[Log]) -> str:
+    """The case, and the logs as read where they fit, as blocks of data for a page."""
+    data = [_as_data(log) for log in logs] if fits(logs) else []
+    text = json.dumps({"logs": data}, ensure_ascii=False, allow_nan=False, separators=(",", ":"))
     return as_block("case", to_json(case)) + "\n" + as_block("readings", text)
 
 
-def logged_runs(case: Case, runs: Sequence[Run]) -> tuple[Run, ...]:
-    """The runs that came from logs: those not typed into the case."""
-    typed = {run.name for run in runs_typed(case)}
-    return tuple(run for run in runs if run.name not in typed)
-
-
-def fits(runs: Sequence[Run]) -> bool:
-    """Whether readings are few enough to be kept in the record itself."""
-    return sum(len(run) * (2 + len(run.channels)) for run in runs) <= MOST_CELLS
-
-
-def _as_data(run: Run) -> dict[str, Any]:
-    """A run in SI, every digit; NaN, where there is no reading, as null."""
+def _as_data(log: Log) -> dict[str, Any]:
+    """A log in SI, every digit; NaN, where there is no reading, as null."""
     def column(values: np.ndarray | None) -> list | None:
         return None if values is None else [None if v != v else v for v in values.tolist()]
 
-    return {"name": run.name, "rows": column(run.rows), "time": column(run.time), "start": run.start,
-            "channels": {name: column(values) for name, values in run.channels.items()}, "basis": run.basis,
-            "usable": column(run.usable), "notes": list(run.notes)}
+    return {"name": log.name, "mapping": log.mapping.to_dict(), "start": log.start, "time": column(log.time),
+            "channels": {name: column(values) for name, values in log.channels.items()}, "basis": log.basis,
+            "rows": column(log.rows), "remarks": log.remarks, "rejected": log.rejected,
+            "rejected_counts": log.rejected_counts, "suspicions": log.suspicions, "rows_read": log.rows_read,
+            "blank_rows": log.blank_rows, "notes": log.notes}
 
 
 def reopened(data: bytes | str) -> Reopened:
     """A record read back. InputError where it is none, or has been changed so that it cannot be used."""
     case, text = from_record(data), block_of(data, "readings")
     try:
-        found = json.loads(text)
-        runs = tuple(_as_run(raw) for raw in found["runs"])
-        refusals = tuple(Refusal(str(log), int(row), str(column), str(content), str(reason))
-                         for log, row, column, content, reason in found["refusals"])
-    except (ValueError, TypeError, KeyError, AttributeError, RecursionError) as error:
-        raise InputError(Fault("readings in the record", type(error).__name__, "", "readings as this program keeps "
-                               "them", "the record was changed after it was made",
-                               "use the readings.csv beside it")) from error
-    return Reopened(case, runs, refusals)
+        return Reopened(case, tuple(_as_log(raw) for raw in json.loads(text)["logs"]))
+    except (ValueError, TypeError, KeyError, AttributeError, IndexError, RecursionError, OverflowError) as error:
+        raise InputError(Fault("readings in the record", type(error).__name__, "",
+                               "readings as this program keeps them", "the record was changed after it was made",
+                               "use the files beside it")) from error
 
 
-def _as_run(raw: dict[str, Any]) -> Run:
-    rows = np.array([int(n) for n in raw["rows"]])
-    channels = {str(name): _floats(values, rows.size) for name, values in raw["channels"].items() if name in CHANNELS}
-    time = None if raw["time"] is None else _floats(raw["time"], rows.size)
-    usable = np.array([bool(u) for u in raw["usable"]])
-    basis = {str(name): str(b) for name, b in raw["basis"].items() if b in ("gauge", "absolute")}
-    if usable.size != rows.size or (time is not None and not np.isfinite(time).all()):
-        raise ValueError("columns of a run")
-    return Run(str(raw["name"]), rows, time, channels, basis, usable, str(raw["start"]),
-               tuple(map(str, raw["notes"])))
+def _as_log(raw: dict[str, Any]) -> Log:
+    rows = np.array([int(n) for n in raw["rows"]], dtype=np.int64)
+    channels = {name: _column(values, rows.size) for name, values in raw["channels"].items() if name in QUANTITIES}
+    time = None if raw["time"] is None else _column(raw["time"], rows.size)
+    if time is not None and not np.isfinite(time).all():
+        raise ValueError("time")
+    rows.setflags(write=False)
+    return Log(
+        str(raw["name"]), Mapping.from_dict(raw["mapping"]), str(raw["start"]), time, channels,
+        {str(n): str(b) for n, b in raw["basis"].items() if b in ("gauge", "absolute")}, rows,
+        tuple(Remark(int(row), None if at is None else float(at), str(text)) for row, at, text in raw["remarks"]),
+        tuple(Rejected(int(row), str(column), str(content), str(why)) for row, column, content, why in raw["rejected"]),
+        {str(reason): int(count) for reason, count in raw["rejected_counts"].items()},
+        tuple(_suspicion(*fields) for fields in raw["suspicions"]), int(raw["rows_read"]), int(raw["blank_rows"]),
+        tuple(map(str, raw["notes"])))
 
 
-def _floats(values: list, size: int) -> np.ndarray:
+def _suspicion(kind, channel, sentence, rows, count, remedy) -> Suspicion:
+    return Suspicion(str(kind), str(channel), str(sentence), tuple((int(a), int(b)) for a, b in rows), int(count),
+                     str(remedy))
+
+
+def _column(values: list, size: int) -> np.ndarray:
     found = np.array([math.nan if v is None else float(v) for v in values])
     if found.shape != (size,) or np.isinf(found).any():
         raise ValueError("column of readings")
+    found.setflags(write=False)
     return found
 
 

@@ -15,7 +15,6 @@ from engine.job.fields_modes import NOT_STATED
 from engine.job.forecast_words import budget_rows
 from engine.job.instruments import GROUPS
 from engine.job.paper import Table, bullets, paragraph
-from engine.job.record_data import Refusal
 from engine.job.record_figures import diagrams_svg
 from engine.job.reduction import RunResult
 from engine.job.result import Result
@@ -40,6 +39,7 @@ from engine.job.runsheet import RunSheet, ticks_of
 from engine.job.runsheet_readings import reading_unit, runs_of
 from engine.job.tables import state_rows
 from engine.measurement import Budget, Verdict
+from engine.measurement.logbook import Log
 from engine.steam.units import UnitSystem, from_si
 
 READING = "reading of the case"  # the name of a run that is the single reading in the case
@@ -54,7 +54,7 @@ class Facts(NamedTuple):
     a: Assessment
     said: Answer
     result: Result | None
-    refusals: Sequence[Refusal]
+    logs: tuple[Log, ...]
     sheet: RunSheet | None
     trouble: str
     units: UnitSystem
@@ -144,11 +144,11 @@ def readings(f: Facts) -> str:
     if f.result is None:
         return paragraph("The readings of this method are entered one by one; they stand with all entries, below.")
     parts = [part for run in f.result.runs for part in _run_readings(run, f)]
-    if f.refusals:
-        rows = [{"Log": r.log, "Row": r.row, "Column": r.column, "Content": r.content, "Why not": r.reason}
-                for r in f.refusals[:LISTED]]
-        more = len(f.refusals) - LISTED
-        parts += ["<h3>Not usable</h3>", table_of(rows, ("Row",), "words"),
+    refused = [{"Log": log.name, "Row": str(r.row), "Column": r.column, "Content": r.content, "Why not": r.reason}
+               for log in f.logs for r in log.rejected]
+    if refused:
+        more = sum(sum(log.rejected_counts.values()) for log in f.logs) - min(len(refused), LISTED)
+        parts += ["<h3>Not usable</h3>", table_of(refused[:LISTED], ("Row",), "words"),
                   paragraph(f"And {more} more like these." if more > 0 else "")]
     return "".join(parts)
 
@@ -160,7 +160,7 @@ def _run_readings(run: RunResult, f: Facts) -> Iterator[str]:
         said += f" Every {every}. of them is printed; all stand in readings.csv."
     yield f"<h3>{_title(run)}</h3>" + paragraph(said)
     columns = [(name, *_unit(run, name, f)) for name in run.run.channels]
-    timed, remarks = run.run.time is not None, _remarks(run, f.case)
+    timed, remarks = run.run.time is not None, _remarks(run, f)
     headings = ["Row", *(["Time, min"] if timed else []),
                 *(f"{upper_first(LABELS[n])}, {unit}{' ' + run.run.basis[n] if n in run.run.basis else ''}"
                   for n, unit, _ in columns), "Quality", "Remark"]
@@ -173,11 +173,11 @@ def _run_readings(run: RunResult, f: Facts) -> Iterator[str]:
     yield Table(headings, rows, frozenset(range(len(headings) - 1)), "log").html()
 
 
-def _remarks(run: RunResult, case: Case) -> dict[int, str]:
-    """What was remarked beside readings typed, by their row."""
-    if run.run.name not in {name for name, _ in _typed_names(case)}:
-        return {}
-    return {number: row["remark"] for number, row in enumerate(case["readings"], 1) if row["remark"]}
+def _remarks(run: RunResult, f: Facts) -> dict[int, str]:
+    """What was remarked beside readings, by their row."""
+    if run.run.name in {name for name, _ in _typed_names(f.case)}:
+        return {number: row["remark"] for number, row in enumerate(f.case["readings"], 1) if row["remark"]}
+    return {remark.row: remark.text for log in f.logs if log.name == run.run.name for remark in log.remarks}
 
 
 def _typed_names(case: Case) -> Iterator[tuple[str, list[Row]]]:
@@ -331,5 +331,6 @@ def _done(sheet: RunSheet, units: UnitSystem) -> list[str]:
 def cautions(f: Facts) -> str:
     """What was noticed, and what the figures take for granted."""
     noticed = [] if f.result is None else [*f.result.cautions, *(f"{run.run.name}: {line}" for run in f.result.runs
-                                                                 for line in run.cautions)]
+                                                                 for line in run.cautions),
+                                             *(f"{log.name}: {doubt}" for log in f.logs for doubt in log.suspicions)]
     return bullets([*map(upper_first, noticed), *f.said.assumed])
