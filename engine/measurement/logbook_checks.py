@@ -23,9 +23,9 @@ GAP_FACTOR = 10  # times the usual interval
 FALL_BACK = 3600.0  # s, the hour that is written twice when summer time ends
 
 
-def _middle(values: np.ndarray) -> float:
-    """The median, of a thinned sample where there are very many."""
-    return float(np.median(values[::max(1, values.size // 50_000)]))
+def _thin(values: np.ndarray) -> np.ndarray:
+    """Every so-manieth value where there are very many: enough for a median."""
+    return values[::max(1, values.size // 50_000)]
 
 
 class Checked(NamedTuple):
@@ -51,10 +51,12 @@ def _clock(log: Checked) -> list[Suspicion]:
     if log.time.size < 2:
         return []
     steps, rows = np.diff(log.time), log.rows[1:]
+    forward = _thin(steps)
+    forward = forward[forward > 0]
+    usual = float(np.median(forward)) if forward.size else 0.0
     found = []
     back = steps < 0
     if back.any():
-        usual = _middle(steps[steps > 0]) if (steps > 0).any() else 0.0
         falls = -steps[back]
         hour = log.dated and back.sum() == 1 and abs(falls[0] - FALL_BACK) <= max(2 * usual, 60.0)
         found.append(Suspicion(
@@ -69,9 +71,7 @@ def _clock(log: Checked) -> list[Suspicion]:
             "duplicated stamps", "time", f"{_times(same.sum())} {verb} the same time as the row before",
             *ranges(rows, same), "see whether rows were logged twice, or the stamps are too coarse: repeated readings "
             "are not independent ones"))
-    forward = steps[steps > 0]
     if forward.size >= 10:
-        usual = _middle(forward)
         gap = steps > GAP_FACTOR * usual
         if gap.any():
             found.append(Suspicion(
@@ -103,7 +103,7 @@ def _stuck(name: str, values: np.ndarray, rows: np.ndarray) -> list[Suspicion]:
         return [Suspicion("stuck channel", name, f"the {label} is the same in all {values.size} rows",
                           ((int(rows[0]), int(rows[-1])),), values.size,
                           "see whether it was read at all, or typed once and copied down")]
-    longest = max(LEAST_STUCK, STUCK_FACTOR * _middle(lengths))
+    longest = max(LEAST_STUCK, STUCK_FACTOR * float(np.median(_thin(lengths))))
     if name in ("p_barometer", "T_ambient"):  # slow by nature
         return []
     held = lengths >= longest
@@ -111,7 +111,7 @@ def _stuck(name: str, values: np.ndarray, rows: np.ndarray) -> list[Suspicion]:
         return []
     mask = np.repeat(held, lengths)
     return [Suspicion("stuck channel", name, f"the {label} stands still for up to {int(lengths[held].max())} rows, "
-                      f"where it usually changes after {_middle(lengths):.4g}", *ranges(rows, mask),
+                      f"where it usually changes after {float(np.median(_thin(lengths))):.4g}", *ranges(rows, mask),
                       "see whether the sensor, its cable or the logger's channel was at fault in these rows")]
 
 

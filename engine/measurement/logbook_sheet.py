@@ -27,6 +27,7 @@ MOST_STRINGS = 128 << 20  # bytes of the shared texts, which are held in memory
 MOST_RATIO = 300  # unpacked over packed; honest sheets stay below about 60
 MOST_PARTS = 5_000
 MOST_COLUMNS = 256
+SPARE_COLUMNS = 4  # beyond the heading, where cells too many are looked for
 ROWS_AT_ONCE = 20_000
 SAMPLE_ROWS = 400
 ZIP_MAGIC = b"PK\x03\x04"
@@ -118,15 +119,15 @@ class Workbook:
     def sheets(self) -> list[str]:
         return [s.title for s in self._book.worksheets]
 
-    def rows(self, sheet: str, first: int = 1) -> Iterator[tuple[int, tuple]]:
-        """(row number, values) of a sheet's rows."""
+    def rows(self, sheet: str, first: int = 1, columns: int = MOST_COLUMNS) -> Iterator[tuple[int, tuple]]:
+        """(row number, values of that many columns) of a sheet's rows."""
         if sheet not in self.sheets:
             raise refuse(self._source.name, f"no sheet {sheet!r}", hint="choose one of the workbook's sheets",
                          needs="one of: " + ", ".join(self.sheets))
         with _guarded(self._source, f"a damaged sheet {sheet!r}"):
             table = self._book[sheet]
             table.reset_dimensions()  # the stated size of a sheet is not to be believed
-            yield from enumerate(table.iter_rows(first, None, 1, MOST_COLUMNS, values_only=True), first)
+            yield from enumerate(table.iter_rows(first, None, 1, columns, values_only=True), first)
 
 
 def cell_text(value: object) -> str:
@@ -181,7 +182,7 @@ def sheet_table(source: Source, mapping: Mapping) -> Iterator[Block]:
     """The rows of a workbook's sheet below its heading."""
     with Workbook(source) as book:
         total = book.stated_rows(mapping.sheet)
-        rows = book.rows(mapping.sheet, mapping.first_line)
+        rows = book.rows(mapping.sheet, mapping.first_line, len(mapping.columns) + SPARE_COLUMNS)
         formulas = _Formulas(source, mapping)
         while chunk := list(itertools.islice(rows, ROWS_AT_ONCE)):
             yield _block(chunk, mapping, formulas, min(chunk[-1][0] / max(total, chunk[-1][0]), 1.0))
@@ -230,7 +231,7 @@ class _Formulas:
         wanted = [c.position for c in self._mapping.used.values()]
         found = {}
         with Workbook(self._source, values=False) as book:
-            for number, values in book.rows(self._mapping.sheet, self._mapping.first_line):
+            for number, values in book.rows(self._mapping.sheet, self._mapping.first_line, max(wanted) + 1):
                 for k in wanted:
                     if k < len(values) and isinstance(values[k], str) and values[k].startswith("="):
                         found[number, k] = values[k]
