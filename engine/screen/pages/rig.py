@@ -57,7 +57,7 @@ def assessed(case: Case) -> RigAssessment:
 
 def page() -> None:
     """What matters most first, then the ranking beside the entries, then each part of the rig."""
-    top = st.container(key="rig answer", border=True)
+    top = st.container(key="rig_answer", border=True)
     rig = _assessment(top)
     ranking, typed = st.columns([6, 5], gap="large")
     with typed:
@@ -104,7 +104,8 @@ def _entries(rig: RigAssessment | None) -> None:
         "orifice": ("Orifice and flow", _orifice_entries), "exhaust": ("Exhaust", _exhaust_entries),
         "nozzle": ("Nozzle and line", _nozzle_entries), "heat": ("Heat", _heat_entries),
         "thermometer": ("Thermometer", _thermometer_entries), "warm-up": ("Warm-up", _warm_up_entries)}
-    for tab, (part, (_, draw)) in zip(st.tabs([title for title, _ in parts.values()]), parts.items(), strict=True):
+    tabs = st.tabs([title for title, _ in parts.values()], key="rig parts")
+    for tab, (part, (_, draw)) in zip(tabs, parts.items(), strict=True):
         with tab:
             draw()
             _offers([o for o in offered if o.section == part])
@@ -278,7 +279,7 @@ def _forecast(rig: RigAssessment) -> None:
     units = session.units()
     st.subheader("Uncertainty to expect", anchor=False)
     try:
-        expected = forecast(rig.case)
+        expected = forecast(rig.point.case)
     except InputError as error:
         st.caption(escaped_lines(str(error)))
         expected = None
