@@ -1,14 +1,16 @@
 """What one reader's session holds: the open case, its history, pinned cases, units and notices.
 
-The case is the truth; widgets only mirror it. A widget's callback writes the case, and before a
-widget is drawn its state is set from the case where the two differ. Nothing else writes widget
-state, so fast key presses are never overwritten by an older run.
+The case is the truth; widgets only mirror it. What a widget was changed to is entered into the case
+by its callback, and before a widget is drawn its state is set from the case where the two differ.
+Nothing else writes widget state, so no key press is overwritten by an older run.
 """
 
 from __future__ import annotations
 
+from collections import deque
 from collections.abc import Callable
 from dataclasses import replace
+from typing import NamedTuple
 
 import streamlit as st
 
@@ -22,7 +24,16 @@ from engine.steam.errors import InputError
 from engine.steam.units import SYSTEMS, UnitSystem, from_si
 
 HISTORY = 200
+STEPS = 64  # of a slider, by which a browser may be late
 PINS = 4
+
+
+class Heard(NamedTuple):
+    """What a widget was changed to; ``echo`` where that is something we had put there ourselves."""
+
+    name: str
+    value: Value
+    echo: bool
 
 
 def start() -> None:
@@ -32,6 +43,7 @@ def start() -> None:
         return
     state["case"], state["past"], state["future"], state["pinned"], state["notice"] = DEMO, [], [], [], None
     state["units"] = "SI"
+    state["put"] = {}  # what we have put into each widget lately
     word = st.query_params.get("case")
     if word:
         try:
@@ -48,6 +60,12 @@ def units() -> UnitSystem:
     return SYSTEMS[st.session_state["units"]]
 
 
+def show_in(system: str) -> None:
+    """Have everything shown in "SI" or "US" units; what was entered stays as entered."""
+    _act()
+    st.session_state["units"] = system
+
+
 def pinned() -> list[tuple[str, Case]]:
     return st.session_state["pinned"]
 
@@ -59,11 +77,52 @@ def link() -> str:
 
 def change(new: Case) -> None:
     """Make ``new`` the open case; the old one can be brought back."""
+    _act()
+    _put(new)
+
+
+def _act() -> None:
+    """Something other than an entry happens: echoes that come along with it are taken back, or left out."""
+    state = st.session_state
+    if state["heard"] and all(one.echo for one in state["heard"]):
+        _as_before()
+    state["heard"], state["acted"] = [], True
+
+
+def _put(new: Case) -> None:
     state = st.session_state
     if new == state["case"]:
         return
     state["past"] = [*state["past"][-HISTORY + 1:], state["case"]]
     state["future"], state["case"], state["notice"] = [], new, None
+
+
+def listen() -> None:
+    """Be ready for the next message of the browser: call it at the start and at the end of each run."""
+    st.session_state["heard"], st.session_state["acted"] = [], False
+
+
+def _hear(one: Heard) -> None:
+    """Enter what a widget was changed to, without the echoes that come along with it.
+
+    With whatever is touched the browser sends the state of every widget. One that we have moved meanwhile,
+    like the exact entry beside a slider, may still be sent as we had put it a few steps ago, and Streamlit
+    takes it for changed. Such an echo comes along with something new, and is left out. Where nothing else is
+    new, someone has entered the old value again. Callbacks come one by one, so each looks at all so far.
+    """
+    state = st.session_state
+    if not state["heard"]:
+        state["before"] = {name: state[name] for name in ("case", "past", "future")}
+    state["heard"] = [*state["heard"], one]
+    _as_before()
+    fresh = [one for one in state["heard"] if not one.echo]
+    for one in fresh if fresh or state["acted"] else state["heard"]:
+        _put(case().with_(**{one.name: one.value}))
+
+
+def _as_before() -> None:
+    for name, value in st.session_state["before"].items():
+        st.session_state[name] = value
 
 
 def undo() -> None:
@@ -76,6 +135,7 @@ def redo() -> None:
 
 def _step(source: str, target: str) -> None:
     state = st.session_state
+    _act()
     if state[source]:
         state[target] = [*state[target], state["case"]]
         *state[source], state["case"] = state[source]
@@ -112,12 +172,14 @@ def open_file(key: str) -> None:
 
 def pin() -> None:
     """Keep the open case beside those to come, under the next free letter."""
+    _act()
     taken = {name for name, _ in pinned()}
     name = next(letter for letter in "ABCDEFGH" if letter not in taken)
     st.session_state["pinned"] = [*pinned(), (name, case())][-PINS:]
 
 
 def unpin(name: str) -> None:
+    _act()
     st.session_state["pinned"] = [(n, c) for n, c in pinned() if n != name]
 
 
@@ -127,8 +189,11 @@ def open_pinned(name: str) -> None:
 
 def mirror(key: str, wanted: object) -> str:
     """Have widget ``key`` show ``wanted``; untouched where it does already. Returns the key."""
-    if key not in st.session_state or st.session_state[key] != wanted:
-        st.session_state[key] = wanted
+    state = st.session_state
+    if key not in state or state[key] != wanted:
+        put = state["put"].setdefault(key, deque(maxlen=STEPS))
+        put.extend([state[key], wanted] if key in state else [wanted])
+        state[key] = wanted
     return key
 
 
@@ -165,6 +230,10 @@ _ENTRY_UNITS = {
     "sampling": {"SI": "%pt", "US": "%pt"},
     "coverage": {"SI": "%", "US": "%"},
     "decision_risk": {"SI": "%", "US": "%"},
+    "steady_p_line": {"SI": "%", "US": "%"},
+    "steady_p_exhaust": {"SI": "%", "US": "%"},
+    "exhaust_gauge_correction": {"SI": "kPa", "US": "psi"},
+    "barometer_correction": {"SI": "kPa", "US": "inHg"},
 }
 
 
@@ -178,14 +247,14 @@ def shown_entry(name: str) -> Entry | None:
     return Entry(from_si(entry_si(field, entry, 0.0), unit, field.kind), unit)
 
 
-def enter(name: str, value: Value) -> None:
-    change(case().with_(**{name: value}))
-
-
 def callback(name: str, key: str, read: Callable[[object], Value]) -> Callable[[], None]:
-    """A widget callback that turns the widget's value into an entry of the case."""
+    """A widget callback that has the widget's value become an entry of the case."""
     def changed() -> None:
-        enter(name, read(st.session_state[key]))
+        value, put = st.session_state[key], st.session_state["put"]
+        echo = value in put.get(key, ())
+        if not echo:  # what we had put there before cannot come back any more
+            put.pop(key, None)
+        _hear(Heard(name, read(value), echo))
     return changed
 
 

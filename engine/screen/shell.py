@@ -37,7 +37,7 @@ def assessed(case: Case) -> Assessment:
 def run(pages: Sequence) -> None:
     """Draw the bar, then the chosen page."""
     session.start()
-    session.hear()
+    session.listen()
     style.apply()
     page = st.navigation(list(pages), position="top")
     _turn_to(page.url_path)
@@ -46,6 +46,7 @@ def run(pages: Sequence) -> None:
         _notice()
     page.run()
     address.keep(page.url_path, case=session.link())
+    session.listen()
     _settle(len(sys.modules))
 
 
@@ -78,8 +79,7 @@ def _units() -> None:
     session.mirror("units choice", st.session_state["units"])
 
     def changed() -> None:
-        session.hear(acted=True)
-        st.session_state["units"] = st.session_state["units choice"] or "SI"
+        session.show_in(st.session_state["units choice"] or "SI")
 
     st.segmented_control("Units", list(SYSTEMS), key="units choice", required=True, label_visibility="collapsed",
                          on_change=changed)
