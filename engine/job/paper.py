@@ -40,7 +40,7 @@ th.n { text-align: right; }
 .stop { border: 0.6mm solid #111; padding: 1.5mm 2.5mm; margin: 2mm 0; break-inside: avoid; font-weight: 600; }
 .note { border-left: 1mm solid #111; padding: 0.3mm 2.5mm; margin: 2mm 0; break-inside: avoid; }
 .new { break-before: page; }
-.scroll { overflow-x: auto; }
+@media screen { .scroll { overflow-x: auto; } }
 svg { display: block; width: 100%%; height: auto; break-inside: avoid; }
 """
 

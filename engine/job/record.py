@@ -39,8 +39,8 @@ table.blanks td { height: 9mm; }
 table.entries { table-layout: fixed; }
 table.entries td:nth-child(odd) { width: 31%; color: #333; }
 table.entries td { padding-top: 0.3mm; padding-bottom: 0.3mm; font-size: 8.5pt; }
-table.log td { padding-top: 0.2mm; padding-bottom: 0.2mm; font-size: 8.5pt; }
-table.log td:last-child { width: 30mm; overflow-wrap: anywhere; }
+table.log td, table.log th { padding: 0.2mm 1mm; font-size: 8pt; }
+table.log td:last-child { width: 42mm; overflow-wrap: anywhere; }
 .signed { break-inside: avoid; }
 .diagrams { display: grid; grid-template-columns: 1fr 1fr; gap: 2mm 4mm; }
 figure { margin: 0; break-inside: avoid; }

@@ -40,11 +40,12 @@ from engine.job.runsheet_readings import reading_unit, runs_of
 from engine.job.tables import state_rows
 from engine.measurement import Budget, Verdict
 from engine.measurement.logbook import Log
+from engine.steam.quantities import QUANTITIES
 from engine.steam.units import UnitSystem, from_si
 
 READING = "reading of the case"  # the name of a run that is the single reading in the case
 MOST_PRINTED = 240  # rows of readings that a reader goes through on paper
-LISTED = 200  # refusals, likewise
+LISTED, FLAGS = 200, 24  # refusals and flagged readings, likewise
 
 
 class Facts(NamedTuple):
@@ -157,20 +158,24 @@ def _run_readings(run: RunResult, f: Facts) -> Iterator[str]:
     every = -(-len(run.run) // MOST_PRINTED) or 1
     said = f"{run.used.sum()} of {len(run.run)} sets count." if len(run.run) > 1 else ""
     if every > 1:
-        said += f" Every {every}. of them is printed; all stand in readings.csv."
+        said += (f" Every {every}. of them is printed, and those with a remark or left out; all stand in "
+                 "readings.csv.")
     yield f"<h3>{_title(run)}</h3>" + paragraph(said)
     columns = [(name, *_unit(run, name, f)) for name in run.run.channels]
     timed, remarks = run.run.time is not None, _remarks(run, f)
-    headings = ["Row", *(["Time, min"] if timed else []),
-                *(f"{upper_first(LABELS[n])}, {unit}{' ' + run.run.basis[n] if n in run.run.basis else ''}"
-                  for n, unit, _ in columns), "Quality", "Remark"]
+    headings = ["Row", *(["t, min"] if timed else []),
+                *(f"{QUANTITIES[n].symbol}, {unit}{' ' + run.run.basis[n] if n in run.run.basis else ''}"
+                  for n, unit, _ in columns), "x", "Remark"]
     rows = []
-    for k in range(0, len(run.run), every):
-        number = int(run.run.rows[k])
+    for k, number in enumerate(run.run.rows.tolist()):
+        if k % every and number not in remarks and number not in run.removed:
+            continue
         readings = [_number(from_si(run.run.channels[n][k], unit, kind)) for n, unit, kind in columns]
         rows.append([str(number), *([f"{run.run.time[k] / 60:.5g}"] if timed else []), *readings,
                      _number(run.x[k], ".5f"), "; ".join(filter(None, (_not_used(run, k), remarks.get(number))))])
     yield Table(headings, rows, frozenset(range(len(headings) - 1)), "log").html()
+    yield paragraph("; ".join(f"{QUANTITIES[n].symbol} {LABELS[n]}" for n, _, _ in columns) + "; x quality of the set.",
+                    "small")
 
 
 def _remarks(run: RunResult, f: Facts) -> dict[int, str]:
@@ -193,14 +198,13 @@ def _title(run: RunResult) -> str:
 def _unit(run: RunResult, name: str, f: Facts) -> tuple[str, str]:
     """The unit in which a channel was written down where it was typed, else the reader's; and its kind."""
     if name not in FIELDS:  # a channel that only logs have
-        kind = {"T_line": "temperature", "condensate": "mass"}[name]
-        return f.units.unit(kind), kind
+        return f.units.unit(QUANTITIES[name].kind), QUANTITIES[name].kind
     typed = {row[name].unit for run_name, rows in _typed_names(f.case) for row in rows
              if row[name] is not None and run.run.name == run_name}
     return typed.pop() if len(typed) == 1 else reading_unit(name, f.units), FIELDS[name].kind
 
 
-def _number(value: float, form: str = ".7g") -> str:
+def _number(value: float, form: str = ".6g") -> str:
     return f"{value:{form}}" if np.isfinite(value) else ""
 
 
@@ -233,7 +237,10 @@ def windows(f: Facts) -> str:
         means, flags = channel_rows(run, f.units) if run.means else [], outlier_rows(run, f.units)
         parts += [f"<h3>{_title(run)}</h3>", bullets(lines), table_of(means)]
         if flags:
-            parts += [paragraph("Readings that lie apart, and what was decided:"), table_of(flags, kind="words")]
+            apart, every = [row for row in flags if row["Decided"] != "kept"], len(flags)
+            shown = [*apart, *(row for row in flags if row not in apart)][:FLAGS]
+            parts += [paragraph("Readings that lie apart, and what was decided:"), table_of(shown, kind="words"),
+                      paragraph(f"And {every - len(shown)} more that were kept." if every > len(shown) else "")]
         if run.scatter is not None and run.scatter.without is not None:
             parts.append(paragraph(f"The mean of the rows is {run.scatter.mean:.5f}; with the rows that were left out "
                                    f"{run.scatter.without:.5f}."))
