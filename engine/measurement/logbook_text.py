@@ -237,17 +237,22 @@ class _Recoder:
 def sample_lines(source: Source, encoding: str) -> tuple[list[str], list[str]]:
     """The head of the log, and lines from spots all over it, down to its end."""
     head = source.read(0, HEAD_BYTES)
-    lines = _recoded(head, encoding, whole=source.size <= HEAD_BYTES)[:HEAD_LINES]
+    if source.size <= HEAD_BYTES:
+        lines = _recoded(head, encoding, whole=True)
+        rest = lines[HEAD_LINES:]
+        return lines[:HEAD_LINES], rest[len(rest) - 1::-max(1, len(rest) // HEAD_LINES)][::-1]
+    lines = _recoded(head, encoding, whole=False, most=HEAD_LINES)
     spots = []
-    if source.size > HEAD_BYTES and not encoding.startswith(("utf-16", "utf-32")):
+    if not encoding.startswith(("utf-16", "utf-32")):  # there a spot could begin within a character
         for place in range(SPOTS + 1):
             start = max(0, HEAD_BYTES - SPOT_BYTES + (source.size - HEAD_BYTES) * place // SPOTS)
-            spots += _recoded(source.read(start, SPOT_BYTES), encoding.replace("-sig", ""), False)[1:-1]
+            spots += _recoded(source.read(start, SPOT_BYTES), encoding.replace("-sig", ""), whole=False)[1:-1]
     return lines, spots
 
 
-def _recoded(raw: bytes, encoding: str, whole: bool) -> list[str]:
-    lines = _Recoder(encoding).recode(raw, whole).decode("utf-8", "replace").split("\n")
+def _recoded(raw: bytes, encoding: str, *, whole: bool, most: int = -1) -> list[str]:
+    """The lines of some bytes, without the last one where it may be cut."""
+    lines = _Recoder(encoding).recode(raw, whole).decode("utf-8", "replace").split("\n", most)
     return [line.rstrip("\r") for line in (lines if whole else lines[:-1])]
 
 

@@ -364,6 +364,13 @@ def test_a_byte_of_another_code_late_in_a_long_log_changes_nothing_before(monkey
     assert len(log) == 30_001
 
 
+@pytest.mark.parametrize("count", [300, 3000, 30_000])
+def test_the_date_order_may_be_decided_far_down_a_log(count):
+    days = [f"{1 + 25 * k // count:02d}/05/2024 {k * 7 % 24:02d}:00" for k in range(count)]
+    mapping = propose_mapping(("time,p1 [bar g]\n" + "".join(f"{d},9.0\n" for d in days)).encode()).mapping
+    assert mapping.date_order == "dmy"
+
+
 def peak_over_result(data: bytes) -> float:
     tracemalloc.start()
     try:
