@@ -3,12 +3,19 @@
 from __future__ import annotations
 
 from engine.calorimeter import MassBasis
-from engine.job.rows import Entry, choice, quantity
+from engine.job.rows import Entry, Field, choice, quantity
 
 THROTTLING, SEPARATING, ELECTRIC = "throttling", "separating and throttling", "electric superheating"
 BY_MASS, BY_VOLUME = "mass", "volume"
 NOT_STATED = "not stated"
 _GAUGE_HINT = "check the unit, and whether it was meant gauge or absolute"
+
+
+def _known(name: str, label: str) -> Field:
+    return quantity(name, label, "uncertainty", 0.0, 2.0, kind="fraction",
+                    hint="in per cent of it; 30 to 50 % for a loss that is worked out, 10 % for one that was measured"
+                    if "loss" in label else "in per cent of it")
+
 
 MODE_FIELDS = (
     choice("mode", "Method", "modes", (THROTTLING, SEPARATING, ELECTRIC)),
@@ -32,4 +39,10 @@ MODE_FIELDS = (
              why="the steam equations hold there", hint="check the unit: °C or °F"),
     quantity("power", "Electric power", "modes", 1e-3, 1e6),
     quantity("power_loss", "Heat lost by the heater", "modes", 0.0, 1e6),
+    # how well each is known
+    _known("water_tolerance", "Drained water known to ±"),
+    _known("weighed_tolerance", "Mass weighed known to ±"),
+    _known("vessel_loss_tolerance", "Heat loss of the vessel known to ±"),
+    _known("power_tolerance", "Electric power known to ±"),
+    _known("power_loss_tolerance", "Heater loss known to ±"),
 )

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from engine.job.method_doubts import SHARES
 from engine.job.result import Result
 from engine.job.rig_tables import points
 from engine.job.uncertainty import HEAT_LOSS, READINGS, Forecast, Term
@@ -52,7 +53,7 @@ def largest_first(f: Forecast | Result) -> tuple[Term, ...]:
 def _u(t: Term, units: UnitSystem) -> str:
     if t.group in (SAMPLING, READINGS):
         return points(t.u)
-    if t.group == HEAT_LOSS:  # a share of the correction
+    if t.group in (HEAT_LOSS, *SHARES):  # a part of the correction, of a mass, of the power
         return f"{100 * t.u:.2g} %"
     unit = units.unit(t.kind)
     number = f"{uncertainty_from_si(t.u, unit, t.kind):.2g}"

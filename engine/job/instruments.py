@@ -72,6 +72,13 @@ def flow_doubts(case: Case, si: Resolved, flow: float) -> Doubts:
     return _instrument(case, si, "flow_meter", flow, scale=flow)
 
 
+def tolerance_doubts(tolerance: float | None, group: str, cause: str = "tolerance") -> Doubts:
+    """Doubts of what is known to ± ``tolerance`` of itself, or of a correction; named as missing where not stated."""
+    if tolerance is None:
+        return Doubts(missing=(f"the uncertainty of the {group}",))
+    return Doubts((rectangular(cause, tolerance, group=group),))
+
+
 def _instrument(case: Case, si: Resolved, stem: str, reading: float, *, scale: float = 1.0, shared: str = "",
                 read_once: bool = False) -> Doubts:
     kind, group = case[f"{stem}_kind"], GROUPS[stem]

@@ -8,7 +8,7 @@ both pressures, one thermometer in the reading and in the normal reading) are on
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import NamedTuple
 
 import numpy as np
@@ -18,7 +18,7 @@ from engine.job.assessment import Assessment, Verdict, assess
 from engine.job.balance import Balance, balance_of
 from engine.job.case import T_LEG, Case, Resolved
 from engine.job.fields_instruments import AT_LEAST, HALF_WIDTH
-from engine.job.fields_modes import NOT_STATED, THROTTLING
+from engine.job.fields_modes import NOT_STATED
 from engine.job.fields_path import BY_CONDUCTANCE, BY_NORMAL, BY_TWO_FLOWS, NONE, UNDECIDED
 from engine.job.instruments import (
     Doubts,
@@ -26,7 +26,9 @@ from engine.job.instruments import (
     pressure_doubts,
     rests_on_barometer,
     thermometer_doubts,
+    tolerance_doubts,
 )
+from engine.job.method_doubts import heated_model, separated_model
 from engine.measurement import (
     SAMPLING,
     Budget,
@@ -167,11 +169,9 @@ def forecast(case: Case, assessment: Assessment | None = None) -> Forecast:
     '0.08 %pt by instruments, 0.58 %pt with sampling'
     """
     a = assessment or assess(case)
-    if a.case["mode"] != THROTTLING:
-        return Forecast(a, "The uncertainty is worked out for throttling alone so far.")
     if a.verdict not in (Verdict.READS, Verdict.THIN):
         return Forecast(a, _UNABLE[a.verdict])
-    measurement = prepare(case, a.si, reading_of(case, a.si, a.T_exhaust))
+    measurement = measurement_of(a)
     try:
         budget = measurement.budget()
     except InputError as error:
@@ -217,17 +217,39 @@ def prepare(case: Case, si: Resolved, reading: Reading, scatter: Sequence[Compon
         doubts["sample_flow"] = flow_doubts(case, si, reading.sample_flow)
     if "recovery" in needed:
         values["recovery"] = 1.0 if si["recovery"] is None else si["recovery"]
-        doubts["recovery"] = _relative(si["recovery_tolerance"], RECOVERY, "recovery factor")
+        doubts["recovery"] = tolerance_doubts(si["recovery_tolerance"], RECOVERY, "recovery factor")
     if method == BY_NORMAL:
         values["T_normal"] = si["T_normal"]
         doubts["T_normal"] = thermometer_doubts(case, si, si["T_normal"])
     if method not in (UNDECIDED, NONE):
         values["loss"] = 1.0
-        doubts["loss"] = _relative(si["heat_loss_tolerance"], HEAT_LOSS, "heat loss correction")
-    inputs = tuple(Input(name, value, doubts[name].components) for name, value in values.items())
+        doubts["loss"] = tolerance_doubts(si["heat_loss_tolerance"], HEAT_LOSS, "heat loss correction")
+    return _measurement(case, si, balance, {name: (value, doubts[name]) for name, value in values.items()}, scatter)
+
+
+def measurement_of(a: Assessment) -> Measurement:
+    """The case's own reading with all its doubts, by whichever method it is taken."""
+    case, si = a.case, a.si
+    reading = reading_of(case, si, a.T_exhaust)
+    if a.heating is not None:
+        line = pressure_doubts(case, si, "p_line", reading.shown["p_line"], reading.on_barometer["p_line"])
+        return _measurement(case, si, *heated_model(a, line))
+    throttled = prepare(case, si, reading)
+    if a.separation is None:
+        return throttled
+    model, more = separated_model(a, throttled.model)
+    extra = _measurement(case, si, model, more)
+    return replace(throttled, model=model, inputs=throttled.inputs + extra.inputs,
+                   missing=tuple(dict.fromkeys(throttled.missing + extra.missing)))
+
+
+def _measurement(case: Case, si: Resolved, model: Callable, valued: Mapping[str, tuple[float, Doubts]],
+                 scatter: Sequence[Component] = ()) -> Measurement:
+    """A model with its inputs, and with what acts on every result."""
     sampling = _sampling(case, si)
-    everything = sum((*doubts.values(), sampling), Doubts())
-    return Measurement(balance, inputs, (*scatter, *sampling.components), si["coverage"],
+    everything = sum((*(doubts for _, doubts in valued.values()), sampling), Doubts())
+    return Measurement(model, tuple(Input(name, value, doubts.components) for name, (value, doubts) in valued.items()),
+                       (*scatter, *sampling.components), si["coverage"],
                        tuple(dict.fromkeys(everything.missing)), tuple(dict.fromkeys(everything.cautions)))
 
 
@@ -236,12 +258,6 @@ def _needed(balance: Balance, reading: Reading) -> set[str]:
     moving = bool(balance.exhaust_bore and reading.sample_flow)
     flow = moving or balance.method in (BY_CONDUCTANCE, BY_TWO_FLOWS)
     return ({"sample_flow"} if flow else set()) | ({"recovery"} if moving else set())
-
-
-def _relative(tolerance: float | None, group: str, cause: str) -> Doubts:
-    if tolerance is None:
-        return Doubts(missing=(f"the uncertainty of the {group}",))
-    return Doubts((rectangular(cause, tolerance, group=group),))
 
 
 def _sampling(case: Case, si: Resolved) -> Doubts:
@@ -261,8 +277,8 @@ def verdicts(case: Case, si: Resolved, budget: Budget) -> Verdicts | None:
     return decide_both(budget, limits, Rule(case["decision_rule"], si["decision_risk"]))
 
 
-_KINDS = {"p_line": "pressure difference", "p_exhaust": "pressure difference", "T_exhaust": "difference",
-          "T_normal": "difference", "sample_flow": "mass flow"}
+_KINDS = {"p_line": "pressure difference", "p_exhaust": "pressure difference", "p_heater": "pressure difference",
+          "T_exhaust": "difference", "T_heater": "difference", "T_normal": "difference", "sample_flow": "mass flow"}
 
 
 def terms_of(budget: Budget) -> tuple[Term, ...]:

@@ -6,7 +6,7 @@ import streamlit as st
 
 from engine.job.fields_instruments import CERTIFICATE, LIMIT
 from engine.job.fields_modes import NOT_STATED
-from engine.screen import entries, session
+from engine.screen import entries, methods, session
 
 _WORDS = {NOT_STATED: "Not stated", LIMIT: "± limit", CERTIFICATE: "Certificate"}
 
@@ -23,7 +23,7 @@ def instruments() -> None:
         _instrument("barometer")
     with columns[3]:
         _instrument("flow_meter")
-        for name in ("heat_loss_tolerance", "recovery_tolerance"):
+        for name in ("heat_loss_tolerance", "recovery_tolerance", *methods.tolerances()):
             entries.number(name)
         entries.choice("sampling_kind", _WORDS)
         if session.case()["sampling_kind"] != NOT_STATED:

@@ -29,6 +29,12 @@ def main_entries() -> tuple[str, str, str]:
     return "p_line", "p_exhaust", "wetness" if asked else "T_exhaust"
 
 
+def tolerances() -> tuple[str, ...]:
+    """What is to be stated of a separator's or a heater's readings, for their uncertainty."""
+    return {SEPARATING: ("water_tolerance", "weighed_tolerance", "vessel_loss_tolerance"),
+            ELECTRIC: ("power_tolerance", "power_loss_tolerance")}.get(session.case()["mode"], ())
+
+
 def entries_of_method(*, planning: bool = False) -> None:
     """What a separator or a heater brings; nothing for throttling alone. A plan needs no readings."""
     case = session.case()
