@@ -21,6 +21,7 @@ from engine.job.casefile import from_json
 from engine.job.commands_reduce import reduce_arguments, reduce_command
 from engine.job.console import ANSWERED, UNUSABLE, Console, as_text
 from engine.job.console import OPEN as NO_ANSWER
+from engine.job.document_commands import record_arguments, record_command, runsheet_arguments, runsheet_command
 from engine.job.forecast_words import forecast_advice, forecast_headline
 from engine.job.rehearse_command import rehearse_arguments, rehearse_command
 from engine.job.uncertainty import forecast
@@ -77,6 +78,10 @@ def read_case(path: Path) -> Case:
 COMMANDS = (
     Command("reduce", "reduce logs of readings, or the readings typed into the case, to one quality",
             reduce_arguments, lambda options, console: reduce_command(read_case(options.case), options, console)),
+    Command("runsheet", "write the run sheet of a case, to print", runsheet_arguments,
+            lambda options, console: runsheet_command(read_case(options.case), options, console)),
+    Command("record", "write the record of a test, to sign and to keep", record_arguments,
+            lambda options, console: record_command(read_case(options.case), options, console)),
     Command("quality", "what one reading, or an expected wetness, says (also: assess)", _quality_arguments, _quality),
     Command("rehearse", "play a test on a simulated rig with hidden faults; write its log, or a link to practise with",
             rehearse_arguments, lambda options, console: rehearse_command(read_case(options.case), options, console)),
@@ -94,6 +99,8 @@ examples:
   python -m engine reduce logs/ --case case.json --csv runs.csv --rows rows.csv
   python -m engine reduce run1.csv --case case.json --window 20 50 --reason "load steady, by the control room"
   python -m engine rehearse case.json --fault "wet lagging" --seed 7 --log practice.csv
+  python -m engine runsheet case.json --out run-sheet.html --paper A4
+  python -m engine record case.json run1.csv run2.csv --out record.zip
 
 A result says that a number could be measured. It is never permission to open a valve."""
 

@@ -26,6 +26,7 @@ from engine.job.result import Result, reduce
 from engine.job.runs import Run
 from engine.job.runsheet import run_sheet
 from engine.job.runsheet_print import signature_table, title_of
+from engine.job.uncertainty import forecast
 from engine.measurement.logbook import Log
 from engine.steam.errors import Fault, InputError
 from engine.steam.units import UnitSystem
@@ -150,7 +151,8 @@ def facts_of(case: Case, result: Result | None, units: UnitSystem, logs: Sequenc
         sheet, trouble = None, str(error)
     reduced = set() if result is None else {run.run.name for run in result.runs}
     kept = tuple(log for log in logs if log.name in reduced)
-    return Facts(case, a, answer(a, units), result, kept, sheet, trouble, units)
+    expected = forecast(case, a) if result is None else None
+    return Facts(case, a, answer(a, units), result, expected, kept, sheet, trouble, units)
 
 
 def reading_as_run(case: Case) -> Run:
@@ -175,7 +177,7 @@ def _computed(facts: Facts, rows: bytes | None) -> list[str]:
     lines = [f"Properties of water and steam: {FORMULATION}. Program version {__version__}.",
              f"Energy balance: {_BALANCES[facts.case['mode']]}; quality x = (h_line − h_f)/(h_g − h_f) at the line "
              "pressure.",
-             *(["Uncertainty by JCGM 100 (GUM), decision by JCGM 106."] if rows is not None else []),
+             *(["Uncertainty by JCGM 100 (GUM), decision by JCGM 106."] if facts.sure.budget is not None else []),
              "This page holds the case file: open the page itself in the dashboard, under Case, and the same digits "
              "come out."]
     if facts.logs:

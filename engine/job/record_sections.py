@@ -23,7 +23,9 @@ from engine.job.result_said import (
     chance,
     channel_rows,
     correction_rows,
+    decision_reason,
     drift_text,
+    figures,
     outlier_rows,
     reason_text,
     rule_text,
@@ -38,6 +40,7 @@ from engine.job.rows import QUANTITY, TABLE, Row
 from engine.job.runsheet import RunSheet, ticks_of
 from engine.job.runsheet_readings import reading_unit, runs_of
 from engine.job.tables import state_rows
+from engine.job.uncertainty import Forecast
 from engine.measurement import Budget, Verdict
 from engine.measurement.logbook import Log
 from engine.steam.quantities import QUANTITIES
@@ -49,16 +52,23 @@ LISTED, FLAGS = 200, 24  # refusals and flagged readings, likewise
 
 
 class Facts(NamedTuple):
-    """What a record is made from; ``result`` is None for methods whose uncertainty is not worked out."""
+    """What a record is made from: ``result`` where sets of readings were reduced, ``forecast`` for methods whose
+    means are entered one by one; the other is None."""
 
     case: Case
     a: Assessment
     said: Answer
     result: Result | None
+    forecast: Forecast | None
     logs: tuple[Log, ...]
     sheet: RunSheet | None
     trouble: str
     units: UnitSystem
+
+    @property
+    def sure(self) -> Result | Forecast:
+        """Whichever of the two brings budget and decision."""
+        return self.forecast if self.result is None else self.result
 
 
 def table_of(rows: Sequence[Mapping[str, object]], numbers: Sequence[str] = (), kind: str = "") -> str:
@@ -85,21 +95,37 @@ def question(f: Facts) -> str:
 def answered(f: Facts) -> str:
     """The result in words: the figure first, then the decision, then what stands behind and what is missing."""
     if f.result is None:
-        lines = [*f.said.reasons, "The uncertainty is not worked out for this method, so nothing is decided."]
-        return paragraph(f"{f.said.shape} {f.said.headline}", "stop") + bullets(lines)
+        return paragraph(f"{f.said.shape} {f.said.headline}", "stop") + bullets(_by_forecast(f))
     said = told(f.result)
     figure = paragraph(f"{said.shape} {said.headline} ({said.word})", "stop")
     behind = () if f.result.x is not None else f.said.reasons
     return figure + bullets((*said.verdicts, *said.reasons, *said.open_points, *behind))
 
 
+def _by_forecast(f: Facts) -> list[str]:
+    """How sure a quality is whose readings were entered one by one, and what was decided on it."""
+    found, lines = f.forecast, list(f.said.reasons)
+    if found.budget is not None:
+        (x, U), (_, alone) = figures(found.budget), figures(found.instruments)
+        lines.append(f"Quality {x} ± {U}; by the instruments alone ± {alone} (k = {found.budget.k:.2f}, coverage "
+                     f"{100 * found.budget.coverage:.4g} %).")
+    elif found.unable and f.a.x is not None:
+        lines.append(found.unable)
+    if found.verdicts is not None:
+        lines += [f"{name} {verdict_word(v)}: {decision_reason(v, f.case)}." for name, v in zip(_WAYS, found.verdicts,
+                                                                                          strict=True)]
+    return lines + ([f"Not a result yet, because not stated: {', '.join(found.missing)}."] if found.missing else [])
+
+
+_WAYS = ("With sampling", "By the instruments alone")
+
+
 def conformity(f: Facts) -> str:
     """The decision by the rule, with sampling and without."""
-    if f.result is None or f.result.verdicts is None:
+    if f.sure.verdicts is None:
         return paragraph(rule_text(f.case) if f.case["x_limit"] is None else
                          "There is no quality with an uncertainty to decide on.")
-    both = f.result.verdicts
-    rows = [_verdict("With sampling", both.with_sampling), _verdict("By the instruments alone", both.without_sampling)]
+    rows = [_verdict(name, v) for name, v in zip(_WAYS, f.sure.verdicts, strict=True)]
     return paragraph(rule_text(f.case)) + table_of(rows)
 
 
@@ -289,13 +315,13 @@ def _state(name: str, value: str | float | None) -> str:
 
 def budget(f: Facts) -> str:
     """The uncertainty line by line, its sum with sampling and without."""
-    result = f.result
-    if result is None or result.budget is None:
+    found = f.sure
+    if found.budget is None:
         return paragraph("There is no budget: without a quality there is nothing to be uncertain of."
-                         if result is not None else "The uncertainty is not worked out for this method.")
-    sums = [_sum("With sampling", result.budget), _sum("By the instruments and the scatter alone", result.instruments)]
-    missing = f"Not stated, and not in it: {', '.join(result.missing)}." if result.missing else ""
-    return table_of(budget_rows(result, f.units)) + table_of(sums) + paragraph(missing)
+                         if f.a.x is None or f.forecast is None else found.unable)
+    sums = [_sum(name, b) for name, b in zip(_WAYS, (found.budget, found.instruments), strict=True)]
+    missing = f"Not stated, and not in it: {', '.join(found.missing)}." if found.missing else ""
+    return table_of(budget_rows(found, f.units)) + table_of(sums) + paragraph(missing)
 
 
 def _sum(name: str, b: Budget) -> dict[str, str]:
@@ -337,7 +363,8 @@ def _done(sheet: RunSheet, units: UnitSystem) -> list[str]:
 
 def cautions(f: Facts) -> str:
     """What was noticed, and what the figures take for granted."""
-    noticed = [] if f.result is None else [*f.result.cautions, *(f"{run.run.name}: {line}" for run in f.result.runs
-                                                                 for line in run.cautions),
-                                             *(f"{log.name}: {doubt}" for log in f.logs for doubt in log.suspicions)]
+    noticed = list(f.sure.cautions)
+    if f.result is not None:
+        noticed += [f"{run.run.name}: {line}" for run in f.result.runs for line in run.cautions]
+    noticed += [f"{log.name}: {doubt}" for log in f.logs for doubt in log.suspicions]
     return bullets([*map(upper_first, noticed), *f.said.assumed])
