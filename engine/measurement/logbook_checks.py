@@ -54,6 +54,8 @@ def _clock(log: Checked) -> list[Suspicion]:
     forward = _thin(steps)
     forward = forward[forward > 0]
     usual = float(np.median(forward)) if forward.size else 0.0
+    if steps.min() > 0 and steps.max() <= GAP_FACTOR * usual:
+        return []
     found = []
     back = steps < 0
     if back.any():

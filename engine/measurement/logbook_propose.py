@@ -20,7 +20,7 @@ from engine.measurement.logbook_text import refuse
 from engine.measurement.logbook_time import STAMPS, count_unit, date_order, text_unit
 from engine.measurement.logbook_words import CHANNELS, MEASURED, Found, recognise, unit_of
 
-HEADER_ROWS = 200  # how far down a heading is looked for
+HEADER_ROWS = 250  # how far down a heading is looked for
 LONGEST_HEADING = 80
 _COMMENT = re.compile(r"^\s*(#|//|%|;|')+\s*")
 _NUMBER = re.compile(r"[+\-−]?[\d.,'’\s]*\d[\d.,'’\s]*([eE][+-]?\d+)?\s*[°%]?\s*[\w/²()]{0,8}", re.ASCII)
@@ -207,7 +207,7 @@ def _settle_time(found: Found, cells: list[str]) -> Found:
     filled = [c for c in cells if c.strip()]
     if found.unit in ("mm:ss", "clock"):
         return found._replace(channel="time")
-    numbers = np.array([read_number(c, "," if "," in c else ".")[0] for c in filled[:200]])
+    numbers = np.array(_numbers(filled[:200]))
     if filled and np.isfinite(numbers).mean() > 0.5:
         as_text = text_unit(filled) if not found.unit else ""  # 20240506 is a date and a number
         if as_text and all(len(re.sub(r"\D", "", c)) in (8, 14) for c in filled[:50]):
@@ -221,6 +221,12 @@ def _settle_time(found: Found, cells: list[str]) -> Found:
         return Found()
     score = found.score + (unit == "stamp")
     return found._replace(channel="date" if unit == "date" else "time", unit=unit, score=score)
+
+
+def _numbers(cells: list[str]) -> list[float]:
+    """Cells as numbers with either decimal sign, NaN for what is none."""
+    together = plain_numbers(cells, "," if any("," in c for c in cells) else ".")
+    return together if together is not None else [read_number(c, "," if "," in c else ".")[0] for c in cells]
 
 
 def _pair_date_with_clock(found: list[Found]) -> list[Found]:

@@ -123,8 +123,9 @@ class Collector:
         time = join("time") if self._kept["time"] else None
         whole = time is not None and time.dtype.kind == "i"
         counts = {reason: self._counts[reason] for reason in sorted(self._counts)}
+        channels = dict(zip(self._names, in_order(join, self._names), strict=True))
         return Rows(join("row").astype(np.int64, copy=False), time if whole else None, None if whole else time,
-                    bool(self._zoned), {n: join(n) for n in self._names}, self._remarks,
+                    bool(self._zoned), channels, self._remarks,
                     tuple(sorted(self._rejected)), counts, self._read, self._blank, self._undecoded)
 
     def _agree_on_zone(self, done: Worked) -> None:
