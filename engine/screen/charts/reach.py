@@ -159,6 +159,12 @@ def section_diagrams(plan: ReachAssessment, both: tuple[Section, Section], units
                      kind == "pressure", "top right" if kind == "pressure" else "top left"))
 
 
+def _beside(x: np.ndarray, here: float, wanted: str) -> str:
+    """The side that is free of the curve, unless the words would leave the picture there."""
+    place = float(np.searchsorted(x, here)) / x.size  # the points are as evenly spaced as the axis
+    return "top right" if place < 0.2 else "top left" if place > 0.8 else wanted
+
+
 def _section(key: str, title: str, plan: ReachAssessment, section: Section, x: np.ndarray, here: float,
              x_title: str, log: bool, beside: str) -> Diagram:
     readable, comfortable = 100 * section.readable, 100 * section.comfortable
@@ -174,7 +180,7 @@ def _section(key: str, title: str, plan: ReachAssessment, section: Section, x: n
               _line(x, comfortable, "var:blue", 2, "dash"),
               {**_line(x, readable, "var:blue", 3.5), "hoverinfo": "all", "hovertemplate": hover},
               {"type": "scatter", "mode": "markers+text", "x": [here], "y": [most], "text": [f"<b>{most:.2f} %</b>"],
-               "textposition": beside, "textfont": {"size": 14, "color": "var:text"}, "hoverinfo": "skip",
+               "textposition": _beside(x, here, beside), "textfont": {"size": 14, "color": "var:text"}, "hoverinfo": "skip",
                "marker": {"size": 13, "color": "var:vermilion", "line": {"color": "var:background", "width": 2}}}]
     axis = _log_axis(x_title, x[0], x[-1]) if log else {
         **_AXIS, "title": {"text": x_title, "standoff": 4}, "range": [float(x[0]), float(x[-1])]}

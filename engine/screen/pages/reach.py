@@ -6,6 +6,7 @@ from functools import lru_cache
 
 import streamlit as st
 
+from engine.calorimeter import Readability
 from engine.job.case import Case
 from engine.job.cautions import SHORT
 from engine.job.fields_modes import ELECTRIC
@@ -104,7 +105,8 @@ def _ways(plan: ReachAssessment, ways_out: tuple[Way, ...]) -> None:
     cannot = [way for way in ways_out if not way.feasible]
     if not ways_out:
         return
-    st.subheader("Ways out, the least effort first", anchor=False)
+    what = "Ways to more margin" if plan.verdict is Readability.THIN else "Ways out"
+    st.subheader(f"{what}, the least effort first", anchor=False)
     for number, way in enumerate(can, 1):
         _way(number, way, plan)
     if cannot:
