@@ -114,7 +114,7 @@ def test_units_written_in_the_cells():
     ("Time", ["5/16/2024 11:59:59 AM", "5/16/2024 12:00:00 PM"], "2024-05-16T11:59:59", 1),
     ("time", ["23:59:58", "00:00:03"], "23:59:58", 5), ("time", ["07:08:09.5", "07:08:11"], "07:08:09.5", 1.5),
     ("time [s]", ["0.5", "1.75"], "", 1.25), ("time [min]", ["1", "2.5"], "", 90),
-    ("time [s]", ["0,5", "1,75"], "", 1.25),
+   
     ("elapsed [h]", ["0", "0.5"], "", 1800),
     ("time (mm:ss)", ["00:10", "75:10"], "", 4500), ("time", ["45418.25", "45418.5"], "", None),
     ("time [unix]", ["1714979289", "1714979299"], "2024-05-06T07:08:09", 10),
@@ -133,6 +133,11 @@ def test_ways_to_write_time(heading, cells, start, seconds):
         log = read_log(data.encode())
     assert log.start == start
     assert log.time[1] - log.time[0] == pytest.approx(seconds, abs=1e-9)
+
+
+def test_elapsed_time_with_a_decimal_comma():
+    log = read_log(b"time [s];p1 [bar g]\n0,5;9,0\n1,75;9,1\n")
+    assert log.time.tolist() == [0.5, 1.75]
 
 
 def test_date_and_time_in_two_columns():
