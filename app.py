@@ -10,6 +10,7 @@ PAGES = (
     st.Page("engine/screen/pages/path.py", title="Path", default=True),
     st.Page("engine/screen/pages/reach.py", title="Reach"),
     st.Page("engine/screen/pages/rig.py", title="Rig"),
+    st.Page("engine/screen/pages/readings.py", title="Readings"),
     st.Page("engine/screen/pages/runsheet.py", title="Run sheet"),
 )
 

@@ -208,9 +208,11 @@ def _nothing_used(run: Run, settling: Settling, window: np.ndarray, used: np.nda
 
 def _mean(values: np.ndarray) -> Mean:
     values = values[np.isfinite(values)]
-    n = values.size
-    return Mean(float(values.mean()), float(values.std(ddof=1)) if n > 1 else 0.0, n,
-                effective_number(values).n_eff if n > 2 else float(n))
+    n, mean = values.size, float(values.mean())
+    s = float(values.std(ddof=1)) if n > 1 else 0.0
+    if s <= 1e-12 * abs(mean):  # all equal but for rounding
+        s = 0.0
+    return Mean(mean, s, n, effective_number(values).n_eff if n > 2 else float(n))
 
 
 def _scatter(run: Run, x: np.ndarray, window: np.ndarray, used: np.ndarray) -> Scatter | None:

@@ -107,6 +107,14 @@ def verdict_lines(result: Result) -> tuple[str, ...]:
             f"By the instruments alone {_decision(both.without_sampling, result.case)}.")
 
 
+def decision_words(result: Result) -> tuple[tuple[str, str], ...]:
+    """The decision with sampling and without it, each as (shape and word, what it rests on)."""
+    if result.verdicts is None:
+        return ()
+    both = zip(("with sampling", "by the instruments alone"), result.verdicts, strict=True)
+    return tuple((f"{verdict_word(v)} {name}", f"{upper_first(decision_reason(v, result.case))}.") for name, v in both)
+
+
 def verdict_word(verdict: Verdict) -> str:
     """``◇ undecided``."""
     return f"{OUTCOME_SHAPES[verdict.outcome]} {verdict.outcome.value}"
@@ -200,6 +208,11 @@ def _alone(interval: Interval, settled: Sequence[Interval]) -> tuple[float, floa
     begin = max((s.end for s in settled if s.begin < interval.begin), default=interval.begin)
     end = min((s.begin for s in settled if s.begin > interval.begin), default=interval.end)
     return max(begin, interval.begin), min(end, interval.end)
+
+
+def counted(number: int, thing: str) -> str:
+    """``1 refusal``, ``12 refusals``."""
+    return f"{number} {thing}{'' if number == 1 else 's'}"
 
 
 def upper_first(sentence: str) -> str:

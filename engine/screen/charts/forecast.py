@@ -14,9 +14,9 @@ from engine.screen.charts.ranking import words_above
 SHOWN = 9  # bars; smaller causes stand in the table
 
 
-def budget_diagram(f: Forecast | Result) -> Diagram | None:
+def budget_diagram(f: Forecast | Result, *, with_sampling: bool = True) -> Diagram | None:
     """Standard uncertainty that each cause gives the quality, in %pt; sampling hatched; None without a budget."""
-    terms = largest_first(f)[:SHOWN]
+    terms = [t for t in largest_first(f) if with_sampling or t.group != SAMPLING][:SHOWN]
     said = forecast_headline(f) if isinstance(f, Forecast) else told(f).headline
     if not terms:
         return None

@@ -1,0 +1,168 @@
+"""The logs a reader brought in this session, and what the readings say: read once, reduced once.
+
+A log stays in the session; what its columns are, the window, rows left out and corrections are in
+the case. A result is worked out again only when readings or an entry that it rests on have changed.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass, replace
+from io import BytesIO
+
+import streamlit as st
+
+from engine.job.case import Case
+from engine.job.fields import FIELDS
+from engine.job.intake import Layout, layout_of
+from engine.job.result import Result, reduce
+from engine.job.runs import Run, remembered, run_of_log, runs_typed
+from engine.job.uncertainty import Check, check
+from engine.measurement.logbook import Log, read_log
+from engine.measurement.logbook_mapping import Mapping
+from engine.screen import session
+from engine.steam.errors import InputError
+
+DRAWS = 1_000_000
+_ASIDE = ("identity", "reach", "run sheet")  # groups of entries that no result rests on
+
+
+@dataclass(frozen=True, eq=False)
+class Held:
+    """A log as brought: its bytes, what its columns are taken for, and once that is confirmed what was read.
+
+    ``refused`` says why it cannot be read; "" where it can, or has not been tried.
+    """
+
+    name: str
+    data: bytes
+    layout: Layout | None
+    mapping: Mapping | None
+    confirmed: bool = False
+    log: Log | None = None
+    refused: str = ""
+
+    def file(self) -> BytesIO:
+        """The bytes as a file that knows its name."""
+        file = BytesIO(self.data)
+        file.name = self.name
+        return file
+
+
+def held() -> dict[str, Held]:
+    """The logs of this session by name, in the order in which they came."""
+    return st.session_state.setdefault("logs", {})
+
+
+def bring(name: str, data: bytes) -> None:
+    """Take a log in. What its columns are is proposed; a case that knows the log has confirmed it already."""
+    logs = held()
+    if name in logs and logs[name].data == data:
+        return
+    stem, number = name, 2
+    while name in logs:
+        name, number = f"{stem} ({number})", number + 1
+    log = Held(name, data, None, None)
+    try:
+        layout = layout_of(session.case(), log.file())
+        logs[name] = replace(log, layout=layout, mapping=layout.mapping, confirmed=layout.remembered)
+    except InputError as error:
+        logs[name] = replace(log, refused=str(error))
+
+
+def upload(key: str) -> Callable[[], None]:
+    """A callback that takes in what an uploader holds, and empties it."""
+    def take() -> None:
+        for file in st.session_state[key] or ():
+            bring(file.name, file.getvalue())
+        st.session_state["uploads"] = st.session_state.get("uploads", 0) + 1
+    return take
+
+
+def drop(name: str) -> None:
+    """Take a log out of the session; what the case says of it stays."""
+    held().pop(name, None)
+
+
+def change_mapping(name: str, mapping: Mapping) -> None:
+    """Another idea of what the columns are: to be confirmed before anything is read."""
+    held()[name] = replace(held()[name], mapping=mapping, confirmed=False, log=None, refused="")
+
+
+def confirm(name: str) -> None:
+    """Take the columns as they are now, and remember them in the case."""
+    log = held()[name]
+    held()[name] = replace(log, confirmed=True, log=None, refused="")
+    session.change(remembered(session.case(), name, log.mapping))
+
+
+def read_all() -> None:
+    """Read every log that is confirmed and not read yet, with a progress bar."""
+    for name, one in held().items():
+        if one.confirmed and one.log is None and not one.refused and not one.mapping.questions:
+            bar = st.progress(0.0, f"Reading {name}") if len(one.data) > 1_000_000 else None
+            try:
+                log = read_log(one.file(), one.mapping, progress=_now_and_then(bar.progress) if bar else None)
+                held()[name] = replace(one, log=replace(log, name=name))
+            except InputError as error:
+                held()[name] = replace(one, confirmed=False, refused=str(error))
+            if bar:
+                bar.empty()
+
+
+def runs(case: Case) -> tuple[Run, ...]:
+    """The runs of the logs that were read, then the runs typed. Raises InputError for typed runs that mix."""
+    logged = tuple(_run(one.log) for one in held().values() if one.log is not None)
+    return (*logged, *runs_typed(case))
+
+
+def _run(log: Log) -> Run:
+    """A log as a run; one log always gives the same run, so that results can be kept by it."""
+    kept = st.session_state.setdefault("runs of logs", {})
+    if kept.get(log.name, (None,))[0] is not log:
+        kept[log.name] = (log, run_of_log(log))
+    return kept[log.name][1]
+
+
+def result() -> Result:
+    """What all readings of the session say by the open case. Raises InputError."""
+    case = session.case()
+    basis = case.with_(**{name: f.blank for name, f in FIELDS.items() if f.group in _ASIDE})
+    logged = tuple(_run(one.log) for one in held().values() if one.log is not None)
+    kept = st.session_state.get("reduced")
+    if kept is None or kept[0] != basis or len(kept[1]) != len(logged) or any(
+            a is not b for a, b in zip(kept[1], logged, strict=True)):
+        rows = sum(map(len, logged))
+        bar = st.progress(0.0, "Reducing") if rows > 100_000 else None
+        found = reduce(case, runs(case), progress=_now_and_then(bar.progress) if bar else None)
+        if bar:
+            bar.empty()
+        kept = st.session_state["reduced"] = (basis, logged, found)
+        st.session_state["checked"] = None
+    return replace(kept[2], case=case)
+
+
+def checked(found: Result) -> Check | None:
+    """Monte Carlo beside the budget of a result, once per result; None where there is no budget. Raises InputError."""
+    if found.measurement is None or found.budget is None:
+        return None
+    kept = st.session_state.get("checked")
+    if kept is None or kept[0] is not found.budget:
+        # each step of the bar is also where a reader who has changed something meanwhile can break in
+        bar = st.progress(0.0, "Drawing a million times")
+        drawn = check(found.measurement, found.budget, draws=DRAWS, progress=_now_and_then(bar.progress))
+        bar.empty()
+        kept = st.session_state["checked"] = (found.budget, drawn)
+    return kept[1]
+
+
+def _now_and_then(progress: Callable[[float], object]) -> Callable[[float], None]:
+    """Progress in steps of a twentieth: the browser need not hear of each block."""
+    shown = 0.0
+
+    def step(done: float) -> None:
+        nonlocal shown
+        if done >= shown + 0.05:
+            shown = done
+            progress(min(done, 1.0))
+    return step
