@@ -180,7 +180,8 @@ def _section(key: str, title: str, plan: ReachAssessment, section: Section, x: n
               _line(x, comfortable, "var:blue", 2, "dash"),
               {**_line(x, readable, "var:blue", 3.5), "hoverinfo": "all", "hovertemplate": hover},
               {"type": "scatter", "mode": "markers+text", "x": [here], "y": [most], "text": [f"<b>{most:.2f} %</b>"],
-               "textposition": _beside(x, here, beside), "textfont": {"size": 14, "color": "var:text"}, "hoverinfo": "skip",
+               "textposition": _beside(x, here, beside), "hoverinfo": "skip",
+               "textfont": {"size": 14, "color": "var:text"},
                "marker": {"size": 13, "color": "var:vermilion", "line": {"color": "var:background", "width": 2}}}]
     axis = _log_axis(x_title, x[0], x[-1]) if log else {
         **_AXIS, "title": {"text": x_title, "standoff": 4}, "range": [float(x[0]), float(x[-1])]}
