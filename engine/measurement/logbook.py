@@ -19,7 +19,7 @@ from engine.measurement.logbook_mapping import Mapping, is_dated, refuse_open
 from engine.measurement.logbook_propose import Layout, Proposal, named_channels, propose
 from engine.measurement.logbook_rows import Collector, Rejected, Remark, Rows, in_order
 from engine.measurement.logbook_sheet import check_archive, is_workbook, propose_sheet, sheet_table
-from engine.measurement.logbook_suspicion import Suspicion
+from engine.measurement.logbook_suspicion import Suspicion, ranges
 from engine.measurement.logbook_table import Words, parse
 from engine.measurement.logbook_text import (
     DELIMITERS,
@@ -280,14 +280,11 @@ def _elapsed(mapping: Mapping, kept: Rows) -> tuple[str, np.ndarray | None, tupl
     unit = mapping.used["time"].unit
     dated = is_dated(unit) or "date" in mapping.used
     if unit == "clock" and not dated:
-        falls = np.flatnonzero(np.diff(micros) < -HALF_A_DAY)
-        if falls.size:
-            micros = micros.copy()
-            for k in falls:
-                micros[k + 1:] += A_DAY
-            at = tuple((int(kept.rows[k + 1]), int(kept.rows[k + 1])) for k in falls[:50])
-            found = (Suspicion("midnight", "time", "the time of day starts again: taken as midnight", at, falls.size,
-                               "log dates with the times if that is not so"),)
+        falls = np.diff(micros, prepend=micros[0]) < -HALF_A_DAY
+        if falls.any():
+            micros = micros + A_DAY * np.cumsum(falls)
+            found = (Suspicion("midnight", "time", "the time of day starts again: taken as midnight",
+                               *ranges(kept.rows, falls), "log dates with the times if that is not so"),)
     if unit == "mm:ss":
         return "", micros / 1e6, found
     first = micros[0].astype("M8[us]")

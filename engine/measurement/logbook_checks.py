@@ -24,7 +24,7 @@ FALL_BACK = 3600.0  # s, the hour that is written twice when summer time ends
 
 
 def _thin(values: np.ndarray) -> np.ndarray:
-    """Every so-manieth value where there are very many: enough for a median."""
+    """Some values from all over where there are very many: enough for a median."""
     return values[::max(1, values.size // 50_000)]
 
 

@@ -60,11 +60,41 @@ class Layout(NamedTuple):
 def propose(rows: list[Row], spots: list[list[str]], source: str, layout: Layout,
             text_numbers: list[str] | None = None) -> Proposal:
     """The proposed mapping. ``text_numbers`` are a workbook's numbers that were stored as text."""
+    table = _table(rows, spots, source, layout)
+    found, times, notes = _choose(list(map(recognise, table.names, table.units)), table.cells, table.names)
+    numeric = [c for f, column in zip(found, table.cells, strict=True) for c in column
+               if f.channel != "remark" and f.unit not in STAMPS]
+    signs = number_signs(numeric if text_numbers is None else text_numbers)
+    found = [_unit_from_cells(f, column, signs) for f, column in zip(found, table.cells, strict=True)]
+    if not any(f.channel for f in found):
+        _refuse_prose(table.data, source)
+    columns = tuple(Column(k, table.names[k], f.channel, f.unit, f.basis) for k, f in enumerate(found))
+    mapping = Mapping(columns, signs.decimal if signs.settled else "", signs.thousands,
+                      date_order(times) if times else "ymd", layout.delimiter, layout.encoding, table.header_line,
+                      table.data[0][0], layout.sheet)
+    left_out = [c.label for c in columns if not c.channel and any(v.strip() for v in table.cells[c.position])]
+    if left_out:
+        notes.append("not recognised and left out: " + ", ".join(left_out))
+    words = {cell for c in columns if c.channel in MEASURED for cell in _words(table.cells[c.position], signs)}
+    return Proposal(mapping, tuple(notes), tuple(table.data[:20]), frozenset(words))
+
+
+class _Table(NamedTuple):
+    """The sample cut into heading and columns: ``data`` are the first rows, ``cells`` the columns of the sample."""
+
+    header_line: int
+    names: list[str]
+    units: list[str]
+    data: list[Row]
+    cells: list[list[str]]
+
+
+def _table(rows: list[Row], spots: list[list[str]], source: str, layout: Layout) -> _Table:
     at, skip = _told_heading(rows, layout, source)
     if at is None:
         at, skip = find_heading(rows)
     heading = [_COMMENT.sub("", c) if k == 0 else c for k, c in enumerate(rows[at][1])] if at >= 0 else []
-    unit_row = rows[at + 1][1] if at >= 0 and skip > 1 else []
+    units = rows[at + 1][1] if skip > 1 else []
     start = at + skip if at >= 0 else next((k for k, r in enumerate(rows) if r[0] >= (layout.first_line or 0)), 0)
     data = [r for r in rows[start:] if any(c.strip() for c in r[1])]
     if not data:
@@ -72,27 +102,12 @@ def propose(rows: list[Row], spots: list[list[str]], source: str, layout: Layout
                      hint="check that the logger had finished writing")
     _refuse_comma_clash(heading, data, layout.delimiter, source)
     width = max(len(heading), Counter(len(r[1]) for r in data).most_common(1)[0][0])
-    names = [*(h.strip() for h in heading), *[""] * (width - len(heading))]
+    names, units = ([*(c.strip() for c in row), *[""] * (width - len(row))][:width] for row in (heading, units))
     while width > 1 and not names[width - 1] and not any(len(r[1]) >= width and r[1][width - 1].strip() for r in data):
         width -= 1  # a delimiter at the end of every line
-    cells = [[r[k] if k < len(r) else "" for r in [*(d[1] for d in data), *spots]] for k in range(width)]
-    found = [recognise(names[k], unit_row[k] if k < len(unit_row) else "") for k in range(width)]
-    found, times, notes = _choose(found, cells, names[:width])
-    order = date_order(times) if times else "ymd"
-    numeric = [c for f, column in zip(found, cells, strict=True) for c in column
-               if f.channel != "remark" and f.unit not in STAMPS]
-    signs = number_signs(numeric if text_numbers is None else text_numbers)
-    found = [_unit_from_cells(f, column, signs) for f, column in zip(found, cells, strict=True)]
-    if not any(f.channel for f in found):
-        _refuse_prose(data, source)
-    columns = tuple(Column(k, names[k], f.channel, f.unit, f.basis) for k, f in enumerate(found))
-    mapping = Mapping(columns, signs.decimal if signs.settled else "", signs.thousands, order, layout.delimiter,
-                      layout.encoding, rows[at][0] if at >= 0 else 0, data[0][0], layout.sheet)
-    left_out = [c.label for c in columns if not c.channel and any(v.strip() for v in cells[c.position])]
-    if left_out:
-        notes.append("not recognised and left out: " + ", ".join(left_out))
-    words = {cell for c in columns if c.channel in MEASURED for cell in _words(cells[c.position], signs)}
-    return Proposal(mapping, tuple(notes), tuple(data[:20]), frozenset(words))
+    sample = [*(row[1] for row in data), *spots]
+    cells = [[row[k] if k < len(row) else "" for row in sample] for k in range(width)]
+    return _Table(rows[at][0] if at >= 0 else 0, names[:width], units[:width], data, cells)
 
 
 def _words(cells: list[str], signs: Signs) -> set[str]:

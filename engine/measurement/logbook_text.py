@@ -31,7 +31,6 @@ HEAD_LINES = 300  # of the head; decisions need no more
 SPOTS, SPOT_BYTES = 16, 1 << 10
 DELIMITERS = "\t;|,"
 ENCODINGS = ("utf-8", "utf-8-sig", "utf-16", "utf-16-le", "utf-16-be", "utf-32", "cp1252")
-DELIMITER_NAMES = {"\t": "tab", ";": "semicolon", "|": "bar |", ",": "comma"}
 ALLOWED = "a table as text (CSV, TSV, semicolons or bars between the cells) or an XLSX workbook"
 
 _BOMS = ((codecs.BOM_UTF8, "utf-8-sig"), (codecs.BOM_UTF32_LE, "utf-32"), (codecs.BOM_UTF32_BE, "utf-32"),

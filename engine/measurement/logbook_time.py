@@ -26,7 +26,7 @@ OTHER_ZONE = "time zone given here but not in the first rows, or the other way r
 REASONS = ("", EMPTY_TIME, NOT_A_TIME, NO_SUCH_DATE, NO_SUCH_HOUR, OTHER_ZONE)
 
 DATE_ORDERS = {"ymd": "year, month, day", "dmy": "day, month, year", "mdy": "month, day, year"}
-# Units of a time column: how its cells become seconds. The first three are text, the rest numbers.
+# Units of a time column: how its cells become seconds. The first four are text, the rest numbers.
 STAMPS = {"stamp": "date and time", "date": "date, its time in another column", "clock": "hh:mm or hh:mm:ss",
           "mm:ss": "minutes and seconds"}
 COUNTS = {"s": 1.0, "min": 60.0, "h": 3600.0, "ms": 1e-3, "excel": 86_400.0, "unix": 1.0, "unix ms": 1e-3}
@@ -40,6 +40,7 @@ for _number, _names in enumerate(("jan ene gen", "feb fév fev", "mar mär mrz m
                                   "nov", "dec dez déc dic"), start=1):
     _MONTHS.update(dict.fromkeys(_names.split(), _number))
 _MONTHS["juil"] = 7  # French July starts like June
+
 
 def _form(pattern: str) -> re.Pattern:
     """A grammar of templates: there every digit has become a 0."""
