@@ -6,7 +6,7 @@ leaving it out makes, all others standing.
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from typing import NamedTuple
 
 import numpy as np
@@ -14,6 +14,7 @@ import numpy as np
 from engine.calorimeter import StemLiquid, stem_error
 from engine.job.balance import Balance, balance_of
 from engine.job.case import GAUGE, Case, Resolved
+from engine.job.fields_modes import SEPARATING
 from engine.job.fields_path import BY_CONDUCTANCE, BY_NORMAL, BY_TWO_FLOWS, NONE, READING, UNDECIDED
 from engine.job.fields_readings import (
     BAROMETER,
@@ -28,7 +29,9 @@ from engine.job.fields_readings import (
     THERMOMETER_CERTIFICATE,
 )
 from engine.job.fields_rig import MERCURY, ORGANIC
+from engine.job.method_doubts import SeparatedBalance
 from engine.job.rows import Entry
+from engine.job.separation import stage_of
 from engine.job.terms import two_flow_conductance
 from engine.job.uncertainty import leg_pressure
 from engine.steam.units import P_STANDARD, from_si, to_si
@@ -122,6 +125,16 @@ def balance_without(case: Case, si: Resolved, off: Mapping[str, str] | set[str])
     return balance_of(*_with_terms(case, si, off))
 
 
+def model_without(case: Case, si: Resolved, off: Mapping[str, str] | set[str]) -> Callable:
+    """The balance up to the line: that of the throttle, and behind a separator what was drained put back."""
+    throttled = balance_without(case, si, off)
+    if case["mode"] != SEPARATING:
+        return throttled
+    _, s = stage_of(case, si)
+    # a kilogram of sample, of which the drained part is known
+    return SeparatedBalance(throttled, s.p / si["p_line"], s.drain_fraction, 1.0, True, s.vessel_loss)
+
+
 def _with_terms(case: Case, si: Resolved, off) -> tuple[Case, Resolved]:
     if HEAT_LOSS in off:
         case = case.with_(heat_loss_method=NONE)
@@ -130,7 +143,7 @@ def _with_terms(case: Case, si: Resolved, off) -> tuple[Case, Resolved]:
     return case, si
 
 
-def reduced(balance: Balance, si: Resolved, true: Corrected) -> tuple[np.ndarray, np.ndarray]:
+def reduced(balance: Callable, si: Resolved, true: Corrected) -> tuple[np.ndarray, np.ndarray]:
     """Quality (not cut off at 1) and status of readings, as 1-d arrays."""
     p1, p2, T = np.broadcast_arrays(*(np.atleast_1d(np.asarray(a, float)) for a in true[:3]))
     return balance(p1, p2, T, sample_flow=true.sample_flow, recovery=recovery_of(si), T_normal=true.T_normal,
@@ -157,7 +170,7 @@ def one_by_one(case: Case, si: Resolved, shown: Shown) -> tuple[Correction, ...]
 
 
 def _x(case: Case, si: Resolved, shown: Shown, off) -> float:
-    return float(reduced(balance_without(case, si, off), si, corrected(case, si, shown, off))[0][0])
+    return float(reduced(model_without(case, si, off), si, corrected(case, si, shown, off))[0][0])
 
 
 def _present(case: Case, si: Resolved, shown: Shown, name: str) -> bool:

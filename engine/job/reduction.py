@@ -19,9 +19,9 @@ from engine.job.corrections import (
     Corrected,
     Correction,
     Shown,
-    balance_without,
     case_of,
     corrected,
+    model_without,
     one_by_one,
     reduced,
     shown_of,
@@ -130,7 +130,7 @@ def reduce_run(case: Case, si: Resolved, run: Run, *, progress: Callable[[float]
     settling = settle(case, si, run, absolute, progress=progress)
     run, notes = _with_weighed_flow(run, settling.used)
     rows = corrected(case, si, _shown(case, si, run, run.channels), off)
-    x, status = (np.broadcast_to(a, len(run)) for a in reduced(balance_without(case, si, off), si, rows))
+    x, status = (np.broadcast_to(a, len(run)) for a in reduced(model_without(case, si, off), si, rows))
     window = settling.used & _complete(run)
     removed = {int(row["row"].value): row["reason"].strip() for row in case["removed"] if row["log"] == run.name}
     used = window & ~np.isin(run.rows, [number for number, reason in removed.items() if reason])

@@ -9,10 +9,12 @@ import numpy as np
 
 from engine.job.case import GAUGE, Case, Resolved, resolve
 from engine.job.corrections import balance_without, switched_off
+from engine.job.fields_modes import ELECTRIC
+from engine.job.modes import check_mode
 from engine.job.reduction import RunResult, reduce_run
 from engine.job.repeatability import Repeatability, repeatability
 from engine.job.runs import Run
-from engine.job.uncertainty import Better, Measurement, Reading, Term, improvements, prepare, terms_of, verdicts
+from engine.job.uncertainty import Better, Measurement, Reading, Term, improvements, measurement_of, terms_of, verdicts
 from engine.measurement import SAMPLING, Budget, Verdicts
 from engine.steam.errors import InputError
 
@@ -55,6 +57,10 @@ class Result:
         return tuple(run for run in self.runs if run.quality is not None)
 
 
+WITH_A_HEATER = ("With a heater the readings are not reduced from a log: enter the means of line pressure, power, "
+                 "sample flow and temperature on the Path page.")
+
+
 def reduce(case: Case, runs: Sequence[Run], *, progress: Callable[[float], None] | None = None) -> Result:
     """Reduce runs of readings by a case.
 
@@ -73,6 +79,9 @@ def reduce(case: Case, runs: Sequence[Run], *, progress: Callable[[float], None]
     ('0.9720 ± 0.0058', True)
     """
     si = resolve(case)
+    check_mode(case, si)
+    if case["mode"] == ELECTRIC:
+        return Result(case, si, (), (WITH_A_HEATER,))
     balance_without(case, si, switched_off(case))  # refuses a heat-loss method that lacks an entry, before any work
     results = []
     for number, run in enumerate(runs):
@@ -139,9 +148,8 @@ def _measurement(case: Case, si: Resolved, read: list[RunResult], together: Repe
         reading = Reading(float(true.p_line), float(true.p_exhaust), float(true.T_exhaust), true.sample_flow,
                           true.T_ambient, {"p_line": float(shown.p_line), "p_exhaust": float(shown.p_exhaust)},
                           {name: b == GAUGE for name, b in basis.items()})
-        at = run.assessment.case
         scatter = [together.component] if together else [c for c in [run.scatter and run.scatter.component] if c]
-        parts.append(prepare(at, run.assessment.si, reading, scatter))
+        parts.append(measurement_of(run.assessment, reading, scatter))
     if len(parts) == 1:
         return parts[0]
     means = {i.name: float(np.mean([_value(p, i.name) for p in parts])) for i in parts[0].inputs}

@@ -227,14 +227,14 @@ def prepare(case: Case, si: Resolved, reading: Reading, scatter: Sequence[Compon
     return _measurement(case, si, balance, {name: (value, doubts[name]) for name, value in values.items()}, scatter)
 
 
-def measurement_of(a: Assessment) -> Measurement:
-    """The case's own reading with all its doubts, by whichever method it is taken."""
+def measurement_of(a: Assessment, reading: Reading | None = None, scatter: Sequence[Component] = ()) -> Measurement:
+    """A reading with all its doubts, by whichever method it is taken; the case's own unless another is given."""
     case, si = a.case, a.si
-    reading = reading_of(case, si, a.T_exhaust)
+    reading = reading_of(case, si, a.T_exhaust) if reading is None else reading
     if a.heating is not None:
         line = pressure_doubts(case, si, "p_line", reading.shown["p_line"], reading.on_barometer["p_line"])
-        return _measurement(case, si, *heated_model(a, line))
-    throttled = prepare(case, si, reading)
+        return _measurement(case, si, *heated_model(a, line), scatter)
+    throttled = prepare(case, si, reading, scatter)
     if a.separation is None:
         return throttled
     model, more = separated_model(a, throttled.model)

@@ -7,12 +7,12 @@ import pytest
 from scenarios import BOILER, FACTORY, GEOTHERMAL, HIGH_SITE
 from simulated import channels_of, instrument_errors, log_of, noise
 
-from engine.calorimeter import Status, exhaust_temperature
+from engine.calorimeter import MassBasis, Status, exhaust_temperature
 from engine.job.assessment import assess
 from engine.job.balance import balance_of
 from engine.job.case import resolve
 from engine.job.fields import FIELDS
-from engine.job.fields_modes import NOT_STATED
+from engine.job.fields_modes import ELECTRIC, NOT_STATED, SEPARATING
 from engine.job.fields_path import BY_CONDUCTANCE, BY_TWO_FLOWS, UNDECIDED
 from engine.job.fields_rig import MERCURY
 from engine.job.reduction import reduce_run
@@ -450,3 +450,30 @@ def test_sampling_is_the_largest_line_and_can_be_left_out():
     assert result.instruments.u < 0.2 * result.budget.u
     assert result.verdicts.with_sampling.outcome == "undecided"
     assert result.verdicts.without_sampling.outcome == "accept"
+
+
+# ---- behind a separator, and with a heater
+
+
+WET_LINE = FACTORY.with_(
+    mode=SEPARATING, p_line=Entry(8.0, "bar", "absolute"), p_exhaust=Entry(1.01325, "bar", "absolute"),
+    leg_height=Entry(0.0, "m"), water_mass=Entry(0.09, "kg"), weighed_mass=Entry(0.91, "kg"),
+    weighed_basis=MassBasis.THROTTLED, heat_loss_method="none", line_velocity=None, exhaust_bore=None,
+    water_tolerance=Entry(2.0, "%"), weighed_tolerance=Entry(2.0, "%"))
+
+
+def test_behind_a_separator_what_was_drained_is_put_back():
+    """8 bar, 9 % of the sample drained, 112.3 °C in the exhaust: 0.967 throttled, 0.880 in the line."""
+    readings = sets([112.2, 112.3, 112.4, 112.3, 112.3], p_line=Entry(8.0, "bar", "absolute"),
+                    p_exhaust=Entry(1.01325, "bar", "absolute"))
+    result = typed(WET_LINE, readings)
+    assert result.x == pytest.approx(0.880, abs=5e-4)
+    assert result.x == pytest.approx(result.runs[0].assessment.x, abs=1e-9)
+    assert np.mean(result.runs[0].x) == pytest.approx(result.x, abs=1e-5)
+    assert {"drained water", "mass weighed"} <= {t.group for t in result.terms} and result.final
+
+
+def test_with_a_heater_logs_are_not_reduced_and_it_is_said():
+    case = FACTORY.with_(mode=ELECTRIC, T_heater=Entry(190.0, "°C"), power=Entry(500.0, "W"))
+    result = reduce(case, runs_typed(case.with_(readings=sets(TEN))))
+    assert result.x is None and "With a heater" in result.unable[0]
