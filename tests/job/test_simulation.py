@@ -68,7 +68,7 @@ def test_a_wet_exhaust_sits_at_saturation_of_its_own_pressure():
     assert course.T_body[-1] == pytest.approx(course.T_exhaust[-1], abs=1e-6)
 
 
-# ---- the course
+# ---- over time
 
 
 def parameters(rig, course):
