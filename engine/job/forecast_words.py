@@ -17,7 +17,10 @@ def forecast_headline(f: Forecast) -> str:
     if f.unable:
         return f.unable
     whole, alone = f.budget, f.instruments
-    return (f"Expect U = {points(whole.U)} of quality, {points(alone.U)} by the instruments alone "
+    if f.missing and points(whole.U) == points(0.0):
+        return "Nothing can be forecast yet: say first what instruments there are and how well the nozzle samples."
+    least = "at least " if f.missing else "= "
+    return (f"Expect U {least}{points(whole.U)} of quality, {points(alone.U)} by the instruments alone "
             f"(coverage {100 * whole.coverage:.4g} %, k = {whole.k:.2f}).")
 
 

@@ -159,7 +159,7 @@ def _kinetic(point: Point, exhaust: Part[Exhaust], nozzle: Part[Nozzle]) -> Foun
     name, entered = "Velocity in the line", point.si["line_velocity"]
     known = entered if entered is not None else nozzle.value.line_velocity if nozzle else None
     if known is None:
-        yield Effect(name, None, trouble=f"Enter the line velocity. Or: {nozzle.trouble}")
+        yield Effect(name, None, trouble=nozzle.trouble.replace("Enter ", "Enter the line velocity, or ", 1))
         return
     yield _Pair(Effect(name, None, (known, "velocity"), entered is not None,
                        "The line steam brings its own kinetic energy, at {0}.", ((known, "velocity"),)),

@@ -235,6 +235,13 @@ def loss_rows(rig: RigAssessment, units: UnitSystem) -> list[dict[str, str]]:
     return rows
 
 
+def loss_words(rig: RigAssessment) -> str:
+    """Which of the methods is in the answer."""
+    if rig.case["heat_loss_method"] in _METHODS:
+        return "● marks the one in the answer."
+    return "None of them is in the answer."
+
+
 def geometry_words(rig: RigAssessment, units: UnitSystem) -> str:
     """What the conductance by dimensions and lagging is made of."""
     g = rig.geometry.value

@@ -168,7 +168,10 @@ def test_the_forecast_says_u_the_best_improvement_and_that_sampling_dominates():
 
 
 def test_the_forecast_names_what_was_not_stated_and_what_cannot_be():
+    assert forecast_headline(forecast(BLANK)).startswith("Nothing can be forecast yet")
     assert "sampling representativeness" in forecast_advice(forecast(BLANK))[-1]
+    half = forecast(DEMO.with_(sampling=None))
+    assert half.missing and forecast_headline(half).startswith("Expect U at least 0.077 %pt")
     unable = forecast(DEMO.with_(T_exhaust=Entry(95.0, "°C")))
     assert forecast_headline(unable) == unable.unable != "" and budget_rows(unable, SI) == []
 

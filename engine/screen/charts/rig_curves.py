@@ -52,8 +52,9 @@ def sampling_diagram(rig: RigAssessment, units: UnitSystem) -> Diagram | None:
     drops = from_si(n.drops, "µm", "length")
     data = []
     for ratio, errors in zip(RATIOS, n.compared, strict=True):
-        name = f"line at {ratio:g} times the port velocity"
-        data.append(_line(name, drops, _percent(errors), "var:muted", width=1.5, dash="dot", showlegend=False,
+        first = ratio == RATIOS[0]
+        data.append(_line("line velocity over port velocity", drops, _percent(errors), "var:muted", width=1.5,
+                          dash="dot", showlegend=first,
                           mode="lines+text", text=[""] * (len(drops) - 1) + [f"\u2002{ratio:g}×"],
                           textposition="middle right", textfont={"color": "var:muted", "size": 13}, cliponaxis=False))
     data.append(_line("as it stands", drops, _percent(n.errors), "var:vermilion", width=3))

@@ -26,6 +26,7 @@ from engine.job.rig_tables import (
     headline,
     left_words,
     loss_rows,
+    loss_words,
     nozzle_rows,
     nozzle_words,
     thermometer_rows,
@@ -189,13 +190,13 @@ def _warm_up_entries() -> None:
 
 def _unsized(rig: RigAssessment) -> None:
     if rig.unsized:
-        lines = (f"- ○ **{e.name}**: {escaped(e.trouble)}" for e in rig.unsized)
-        st.markdown("\n".join(["Not sized yet:", "", *lines]))
+        lines = (f"- **{e.name}**: {escaped(e.trouble)}" for e in rig.unsized)
+        st.markdown("\n".join(["○ Not sized yet", "", *lines]))
 
 
 def _every_effect(rig: RigAssessment) -> None:
     rows = effect_rows(rig, session.units())
-    with st.expander("Every effect with its cause", expanded=bool(rig.unsized) and not rig.sized):
+    with st.expander("Every effect with its cause"):
         st.table(rows)
         st.download_button("Save the effects as CSV", as_csv(rows), "effects.csv", "text/csv", key="effects csv",
                            on_click="ignore")
@@ -257,7 +258,7 @@ def _heat(rig: RigAssessment) -> None:
     units = session.units()
     st.subheader("Heat loss, every way side by side", anchor=False)
     st.table(loss_rows(rig, units))
-    st.markdown(escaped(" ".join((geometry_words(rig, units), "● marks the one in the answer.")).strip()))
+    st.markdown(escaped(" ".join(words for words in (loss_words(rig), geometry_words(rig, units)) if words)))
 
 
 def _thermometer(rig: RigAssessment) -> None:
