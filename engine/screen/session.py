@@ -81,6 +81,12 @@ def change(new: Case) -> None:
     _put(new)
 
 
+def take(**entries: Value) -> None:
+    """Write entries that a button offers into the open case, beside what was typed just before it."""
+    _act()
+    _put(case().with_(**entries))
+
+
 def _act() -> None:
     """Something other than an entry happens: echoes that come along with it are taken back, or left out."""
     state = st.session_state

@@ -7,7 +7,7 @@ from functools import lru_cache
 
 import streamlit as st
 
-from engine.job.case import Case, Value
+from engine.job.case import Case
 from engine.job.cautions import SHORT
 from engine.job.fields_path import BY_CONDUCTANCE, BY_KG, BY_NORMAL, BY_TWO_FLOWS, NONE, UNDECIDED
 from engine.job.fields_rig import BARE, COMPUTED, ELECTRIC_PROBE, MERCURY, OPEN_AIR, ORGANIC, VESSEL, WEIGHED
@@ -114,13 +114,8 @@ def _entries(rig: RigAssessment | None) -> None:
 
 def _offers(offered: Sequence[Offer]) -> None:
     for o in offered:
-        st.button(o.label, key=f"offer {o.key}", on_click=_take, args=(dict(o.changes),), width="stretch",
+        st.button(o.label, key=f"offer {o.key}", on_click=session.take, kwargs=dict(o.changes), width="stretch",
                   help="Writes it into the case. Undo brings back what stood there.")
-
-
-def _take(changes: dict[str, Value]) -> None:
-    """Write the offered entries into the case as it is now, beside whatever was just typed."""
-    session.change(session.case().with_(**changes))
 
 
 def _grid(*draw: Callable[[], None]) -> None:
