@@ -271,7 +271,8 @@ def constant_bore_path(p_line, x, p_exhaust, line_velocity, *, points: int = POI
         columns = _constant_bore(p.ravel(), np.repeat(h0, points - 1), np.repeat(G, points - 1))
     p_dry = _constant_bore_dry_out(p, columns[5].reshape(p.shape) == SteamStatus.WET, h0, G)
     extra = _extra(p_dry, p_line, p_end)
-    p, columns = _insert(p, columns, extra, _constant_bore(extra, h0, G))
+    one_more = _dry_saturated(extra) if (extra == p_dry).all() else _constant_bore(extra, h0, G)
+    p, columns = _insert(p, columns, extra, one_more)
     return _path(shape, points, scalar, p, columns, np.repeat(G, points) * columns[4], p_dry, p_choke, G)
 
 
@@ -290,6 +291,12 @@ def _constant_bore_dry_out(p: np.ndarray, wet: np.ndarray, h0: np.ndarray, G: np
         log_p = bracketed_root(excess, np.log(p[rows, first_hot]), np.log(p[rows, first_hot - 1]), 1e-8)
         p_dry[rows] = np.minimum(np.exp(log_p), p[rows, 0])
     return p_dry
+
+
+def _dry_saturated(p: np.ndarray):
+    """States of dry saturated steam over 1-d pressures."""
+    T = if97.saturation_T(p)
+    return T, np.ones(p.shape), *if97.vapour_hsv(p, T), np.full(p.shape, SteamStatus.WET)
 
 
 def _insert(p: np.ndarray, columns: tuple, extra_p: np.ndarray, extra: tuple):

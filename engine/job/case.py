@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass
-from functools import cache
+from functools import cache, lru_cache
 from types import MappingProxyType
 
 from engine.calorimeter import leg_density, standard_pressure
@@ -64,6 +64,7 @@ def barometer(case: Case) -> float:
     return to_si(entry.value, entry.unit, "pressure")
 
 
+@lru_cache(maxsize=4096)  # of the entries of a case one changes and a hundred stay
 def entry_si(field: Field, entry: Entry, p_barometer: float) -> float:
     """One entry in SI and absolute."""
     si = to_si(entry.value, entry.unit, field.kind)
@@ -82,6 +83,7 @@ def describe(entry: Entry) -> str:
     return f"{entry.value:.6g}{unit}{' ' + entry.basis if entry.basis else ''}"
 
 
+@lru_cache(maxsize=4096)
 def entry_fault(field: Field, entry: Entry, p_barometer: float) -> Fault | None:
     """What is wrong with one entry, in the words and the unit in which it was entered."""
     si = entry_si(field, entry, p_barometer)

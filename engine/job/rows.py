@@ -38,7 +38,7 @@ class Row:
         return Row(tuple((name, changes.get(name, value)) for name, value in self.cells))
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)  # a row of the table is itself, and quick to look up by
 class Field:
     """One entry: ``low`` and ``high`` are SI and absolute; ``blank`` is what a new case holds (None: nothing).
 
