@@ -33,6 +33,7 @@ from engine.job.verdict import Verdict, verdict_of
 from engine.steam import Saturated, saturated, saturation_temperature, state_ph, vapour
 from engine.steam.errors import Fault, InputError
 
+_LEAST_CP = 1800.0  # J/(kg K): no vapour heats up with less
 POINTS = 25  # along a path: the eye sees no corner, and the page stays quick
 _FAST = 300.0  # m/s: slower than sound in any dry saturated steam
 
@@ -172,7 +173,7 @@ def _throttled(case: Case, si: Resolved) -> Assessment:
             Status(result.status))
         x_exhaust = 1.0
     least, comfortable = si["least_superheat"], si["comfortable_superheat"]
-    least_readable = max(least, _superheat_of_dry_stream(terms, p2, T_sat))
+    least_readable = max(least, _superheat_of_dry_stream(terms, p2, T_sat, least))
     # at the temperature of the limit, not of the reading: how far the rig reaches does not depend on what it read
     x_least = least_quality(p1, p2, least, **terms_at(case, si, T_sat + least_readable).arguments())
     if status == Status.LINE_SUPERHEATED:
@@ -220,10 +221,12 @@ def _heated(case: Case, si: Resolved) -> Assessment:
         _states(path, None, velocities, end="After the heater"), None, heating=heating)
 
 
-def _superheat_of_dry_stream(terms: Terms, p: float, T_sat: float) -> float:
-    """What the probe shows above saturation [K] where the stream it stands in is just dry."""
+def _superheat_of_dry_stream(terms: Terms, p: float, T_sat: float, least: float) -> float:
+    """What the probe shows above saturation [K] where the stream it stands in is just dry; 0 where below ``least``."""
     stopped = 0.5 * terms.recovery * terms.exhaust_velocity**2
-    return state_ph(p, vapour(p, T_sat).h + stopped).T - T_sat if stopped else 0.0
+    if stopped < _LEAST_CP * least:
+        return 0.0
+    return state_ph(p, vapour(p, T_sat).h + stopped).T - T_sat
 
 
 def _check_normal(case: Case, si: Resolved) -> None:
