@@ -3,16 +3,14 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from functools import lru_cache
 
 import streamlit as st
 
-from engine.job.case import Case
 from engine.job.cautions import SHORT
-from engine.job.fields_path import BY_CONDUCTANCE, BY_KG, BY_NORMAL, BY_TWO_FLOWS, NONE, UNDECIDED
+from engine.job.fields_path import BY_CONDUCTANCE, BY_KG, BY_NORMAL
 from engine.job.fields_rig import BARE, COMPUTED, ELECTRIC_PROBE, MERCURY, OPEN_AIR, ORGANIC, VESSEL, WEIGHED
 from engine.job.forecast_words import budget_rows, forecast_advice, forecast_headline
-from engine.job.rig import RigAssessment, assess_rig
+from engine.job.rig import RigAssessment
 from engine.job.rig_offers import Offer, offers
 from engine.job.rig_tables import (
     comparison_rows,
@@ -34,26 +32,18 @@ from engine.job.rig_tables import (
     warming_rows,
 )
 from engine.job.tables import as_csv
-from engine.job.uncertainty import forecast
 from engine.screen import entries, live, session
 from engine.screen.charts.diagram import Diagram
 from engine.screen.charts.forecast import budget_diagram
 from engine.screen.charts.ranking import ranking_diagram
 from engine.screen.charts.rig_curves import flow_diagram, sampling_diagram, warm_up_diagram
 from engine.screen.instrument_entries import instruments
+from engine.screen.pages.path import LOSSES
+from engine.screen.rigs import expected_of, rig_of
 from engine.screen.style import escaped, escaped_lines
 from engine.steam.errors import InputError
 
-LOSSES = {UNDECIDED: "Not decided yet", NONE: "Knowingly none", BY_CONDUCTANCE: "By conductance UA",
-          BY_KG: "Known per kg of sample", BY_NORMAL: "By a normal reading on dry steam",
-          BY_TWO_FLOWS: "By two flows"}
 LAGGING = {"dry": "Dry", "wet": "Wet", BARE: "Bare"}
-
-
-@lru_cache(maxsize=64)
-def assessed(case: Case) -> RigAssessment:
-    """The rig of a case; the same case is not computed twice. Raises InputError."""
-    return assess_rig(case)
 
 
 def page() -> None:
@@ -79,7 +69,7 @@ def page() -> None:
 def _assessment(place) -> RigAssessment | None:
     """The rig of the open case; where that cannot be used at all, the refusal and the last rig that could be."""
     try:
-        rig = st.session_state["last good rig"] = assessed(session.case())
+        rig = st.session_state["last good rig"] = rig_of(session.case())
     except InputError as error:
         with place:
             st.error(escaped_lines(str(error)))
@@ -275,7 +265,7 @@ def _forecast(rig: RigAssessment) -> None:
     units = session.units()
     st.subheader("Uncertainty to expect", anchor=False)
     try:
-        expected = forecast(rig.point.case)
+        expected = expected_of(rig.point.case)
     except InputError as error:
         st.caption(escaped_lines(str(error)))
         expected = None
@@ -297,7 +287,7 @@ def _comparison(rig: RigAssessment) -> None:
     named = [("open", rig)]
     for name, case in session.pinned():
         try:
-            named.append((name, assessed(case)))
+            named.append((name, rig_of(case)))
         except InputError:
             continue
     if len(named) > 1:

@@ -1,0 +1,22 @@
+"""The rig of a case and the uncertainty to expect of it, each computed once; a page itself starts anew every run."""
+
+from __future__ import annotations
+
+from functools import lru_cache
+
+from engine.job.case import Case
+from engine.job.rig import RigAssessment, assess_rig
+from engine.job.uncertainty import Forecast, forecast
+from engine.screen.shell import assessed
+
+
+@lru_cache(maxsize=64)
+def rig_of(case: Case) -> RigAssessment:
+    """The rig of a case. Raises InputError."""
+    return assess_rig(case)
+
+
+@lru_cache(maxsize=64)
+def expected_of(case: Case) -> Forecast:
+    """The uncertainty to expect of a case. Raises InputError."""
+    return forecast(case, assessed(case))
