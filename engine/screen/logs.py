@@ -50,8 +50,18 @@ class Held:
 
 
 def held() -> dict[str, Held]:
-    """The logs of this session by name, in the order in which they came."""
-    return st.session_state.setdefault("logs", {})
+    """The logs of this session by name, in the order in which they came; a record just opened brings its own."""
+    state = st.session_state
+    reopened = state.pop("reopened", None)
+    if reopened is not None:
+        state["logs"] = {log.name: _of_record(log) for log in reopened}
+    return state.setdefault("logs", {})
+
+
+def _of_record(log: Log) -> Held:
+    """A log as a record keeps it: read already, its file elsewhere."""
+    note = "this log was kept in a record, as it was read then; to read it otherwise, bring its file"
+    return Held(log.name, b"", Layout(log.name, log.mapping, True, (note,), ()), log.mapping, True, log)
 
 
 def bring(name: str, data: bytes) -> None:

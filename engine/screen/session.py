@@ -26,6 +26,7 @@ from engine.steam.units import SYSTEMS, UnitSystem, from_si
 HISTORY = 200
 STEPS = 64  # of a slider, by which a browser may be late
 PINS = 4
+RECORDS = (".html", ".htm")
 
 
 class Heard(NamedTuple):
@@ -165,12 +166,21 @@ def open_blank() -> None:
 
 
 def open_file(key: str) -> None:
-    """Open the case file in the uploader ``key``; a file that cannot be used changes nothing but the notice."""
+    """Open the case file or the record in the uploader ``key``; one that cannot be used changes nothing but the notice.
+
+    The logs of a record wait under "reopened" for whoever keeps the logs of the session.
+    """
     upload = st.session_state.get(key)
     if upload is None:
         return
     try:
-        change(from_json(upload.getvalue()))
+        if upload.name.lower().endswith(RECORDS):
+            from engine.job.record_data import reopened  # reads logs, which few sessions do: not loaded before
+            found = reopened(upload.getvalue())
+            change(found.case)
+            st.session_state["reopened"] = found.logs
+        else:
+            change(from_json(upload.getvalue()))
         st.session_state["notice"] = ("success", f"Opened {upload.name}.")
     except InputError as error:
         st.session_state["notice"] = ("error", f"{upload.name} was not opened; the open case is unchanged.\n\n{error}")

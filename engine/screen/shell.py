@@ -117,7 +117,8 @@ def _case_tools() -> None:
                                on_click="ignore")
         else:
             st.caption("The case file can be saved once every entry can be used.")
-        st.file_uploader("Open a case file", type=["json"], key="open", on_change=session.open_file, args=("open",))
+        st.file_uploader("Open a case file, or a record", type=["json", *session.RECORDS], key="open",
+                         on_change=session.open_file, args=("open",))
         st.caption("Link to this case: the page's own address holds it; copy it, or this word behind `?case=`.")
         st.code(f"?case={session.link()}", language=None, wrap_lines=True)
         st.selectbox("Invented examples", list(EXAMPLES), index=None, placeholder="Choose one to open it",

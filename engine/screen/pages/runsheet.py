@@ -2,20 +2,15 @@
 
 from __future__ import annotations
 
-from datetime import datetime
-from functools import lru_cache
-from zoneinfo import ZoneInfo, ZoneInfoNotFoundError
-
 import streamlit as st
 
-from engine.job.case import Case, faults_of
+from engine.job.case import faults_of
 from engine.job.cautions import CAUTIONS, SHORT
 from engine.job.fields_modes import ELECTRIC
 from engine.job.fields_runsheet import GAS_NONE, GAS_NOTED
 from engine.job.paper import PAPERS, Table, usual_paper
 from engine.job.rows import Entry
-from engine.job.runsheet import RunSheet, headline, notices, run_sheet, tick, untick
-from engine.job.runsheet_plan import Plan, plan_of
+from engine.job.runsheet import RunSheet, headline, notices, tick, untick
 from engine.job.runsheet_print import (
     deviation_table,
     gauge_table,
@@ -31,7 +26,8 @@ from engine.job.runsheet_readings import (
     with_reading,
 )
 from engine.job.runsheet_steps import Section, Step
-from engine.screen import entries, session
+from engine.screen import clock, entries, session
+from engine.screen.sheets import sheet_of
 from engine.screen.style import escaped, escaped_lines
 from engine.steam.errors import Fault, InputError
 from engine.steam.units import to_si
@@ -48,17 +44,6 @@ _CSS = """
 </style>
 """
 SHEET, REHEARSAL = "Run sheet", "Rehearsal"
-
-
-@lru_cache(maxsize=32)
-def _planned(case: Case) -> Plan:
-    """The plan of a case; neither ticks nor readings change it. Raises InputError."""
-    return plan_of(case)
-
-
-def sheet_of(case: Case) -> RunSheet:
-    """The run sheet of a case; the same plan is not worked out twice. Raises InputError."""
-    return run_sheet(case, _planned(case.with_(ticks=(), readings=(), deviations="")))
 
 
 def page() -> None:
@@ -189,18 +174,9 @@ def _refused(place: str) -> None:
 
 def _tick(key: str) -> None:
     try:
-        session.change(tick(session.case(), key, _now(), st.session_state["initials"]))
+        session.take(ticks=tick(session.case(), key, clock.now(), st.session_state["initials"])["ticks"])
     except InputError as error:
         _refuse("steps", error)
-
-
-def _now() -> str:
-    """Date and time where the reader is, to the minute."""
-    try:
-        zone = ZoneInfo(st.context.timezone) if st.context.timezone else None
-    except (ZoneInfoNotFoundError, ValueError):
-        zone = None
-    return datetime.now(zone).strftime("%Y-%m-%d %H:%M")
 
 
 def _correct(step: Step, sheet: RunSheet) -> None:
@@ -216,13 +192,13 @@ def _correct(step: Step, sheet: RunSheet) -> None:
 def _corrected(key: str) -> None:
     time, initials, remark = (st.session_state[f"{name} of {key}"] for name in ("time", "initials", "remark"))
     try:
-        session.change(tick(session.case(), key, time, initials, remark))
+        session.take(ticks=tick(session.case(), key, time, initials, remark)["ticks"])
     except InputError as error:
         _refuse("steps", error)
 
 
 def _untick(key: str) -> None:
-    session.change(untick(session.case(), key))
+    session.take(ticks=untick(session.case(), key)["ticks"])
 
 
 # ---- gauges and readings
@@ -302,15 +278,15 @@ def _write(run: str, key: str, columns) -> None:
         case = with_reading(session.case(), **cells)
         if faults := faults_of(case):
             raise InputError(*faults)
-        session.change(case)
+        session.take(readings=case["readings"])
     except InputError as error:
         _refuse("readings", error)
 
 
 def _drop(run: str) -> None:
-    case = session.case()
-    last = max(k for k, row in enumerate(case["readings"]) if row["run"].strip() == run)
-    session.change(case.with_(readings=case["readings"][:last] + case["readings"][last + 1:]))
+    rows = session.case()["readings"]
+    last = max(k for k, row in enumerate(rows) if row["run"].strip() == run)
+    session.take(readings=rows[:last] + rows[last + 1:])
 
 
 def _say_outside(sheet: RunSheet) -> None:
