@@ -12,6 +12,7 @@ PAGES = (
     st.Page("engine/screen/pages/rig.py", title="Rig"),
     st.Page("engine/screen/pages/readings.py", title="Readings"),
     st.Page("engine/screen/pages/runsheet.py", title="Run sheet"),
+    st.Page("engine/screen/pages/record.py", title="Record"),
 )
 
 shell.run(PAGES)

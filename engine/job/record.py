@@ -13,7 +13,7 @@ from engine import __version__
 from engine.job import record_sections as sections
 from engine.job.answer import answer
 from engine.job.assessment import assess
-from engine.job.case import Case, resolve
+from engine.job.case import Case, describe, resolve
 from engine.job.casefile import to_json
 from engine.job.cautions import SHORT
 from engine.job.corrections import shown_of
@@ -21,10 +21,11 @@ from engine.job.fields_modes import ELECTRIC, NOT_STATED, SEPARATING, THROTTLING
 from engine.job.fields_path import EXPECTED, UNDECIDED
 from engine.job.paper import bullets, check_paper, document, escaped_line, one_line, paragraph
 from engine.job.record_data import blocks, fits, readings_csv
-from engine.job.record_sections import READING, Facts
+from engine.job.record_sections import READING, WAYS, Facts
 from engine.job.result import Result, reduce
+from engine.job.result_said import decision_reason, told, verdict_word
 from engine.job.runs import Run
-from engine.job.runsheet import run_sheet
+from engine.job.runsheet import RunSheet, run_sheet
 from engine.job.runsheet_print import signature_table, title_of
 from engine.job.uncertainty import forecast
 from engine.measurement.logbook import Log
@@ -135,8 +136,17 @@ def reasons_against(case: Case, result: Result | None) -> tuple[Fault, ...]:
     return tuple(faults)
 
 
-def facts_of(case: Case, result: Result | None, units: UnitSystem, logs: Sequence[Log] = ()) -> Facts:
-    """All that a record tells. InputError, with every reason at once, where there is nothing to record yet."""
+def facts_of(case: Case, result: Result | None, units: UnitSystem, logs: Sequence[Log] = (), *,
+             sheet: RunSheet | None = None) -> Facts:
+    """All that a record tells. InputError, with every reason at once, where there is nothing to record yet.
+
+    ``sheet`` saves making the run sheet again.
+
+    >>> from engine.job.demo import DEMO
+    >>> from engine.steam.units import SI
+    >>> [name for name, text in summary(facts_of(DEMO, None, SI))][:4]
+    ['Made from', 'With sampling', 'By the instruments alone', 'Heat loss']
+    """
     if faults := reasons_against(case, result):
         raise InputError(*faults)
     if case["mode"] != THROTTLING:  # the means of such a test are entered one by one
@@ -146,13 +156,43 @@ def facts_of(case: Case, result: Result | None, units: UnitSystem, logs: Sequenc
     first = next((run.assessment for run in (*result.read, *result.runs) if run.assessment), None) if result else None
     a = first or assess(case)
     try:
-        sheet, trouble = run_sheet(case), ""
+        sheet, trouble = sheet or run_sheet(case), ""
     except InputError as error:
         sheet, trouble = None, str(error)
     reduced = set() if result is None else {run.run.name for run in result.runs}
     kept = tuple(log for log in logs if log.name in reduced)
     expected = forecast(case, a) if result is None else None
     return Facts(case, a, answer(a, units), result, expected, kept, sheet, trouble, units)
+
+
+def headline(facts: Facts) -> tuple[str, str, str]:
+    """Shape, sentence and kind of the answer: a result, an exploration, or none."""
+    if facts.result is not None:
+        said = told(facts.result)
+        return said.shape, said.headline, said.word
+    if facts.a.x is None:
+        return facts.said.shape, facts.said.headline, "no result"
+    open_points = facts.forecast.missing or facts.forecast.unable
+    return facts.said.shape, facts.said.headline, "exploration" if open_points else "result"
+
+
+def summary(facts: Facts) -> tuple[tuple[str, str], ...]:
+    """What a record will say, in a few lines: name and text."""
+    case, runs, sheet = facts.case, () if facts.result is None else facts.result.runs, facts.sheet
+    made_from = "the single reading in the case"
+    if facts.result is not None and [run.run.name for run in runs] != [READING]:
+        made_from = "; ".join(f"{run.run.name}: {run.used.sum()} of {len(run.run)} sets" for run in runs)
+    verdicts = facts.sure.verdicts or ()
+    decided = [(name, f"{verdict_word(v)}: {decision_reason(v, case)}")
+               for name, v in zip(WAYS, verdicts, strict=False)]  # none of the two without a limit
+    ticked = ("no run sheet can be made for this case" if sheet is None else
+              f"{len(sheet.steps) - len(sheet.unticked)} of {len(sheet.steps)} steps ticked")
+    lost = sum(sum(log.rejected_counts.values()) for log in facts.logs)
+    return (("Made from", made_from), *decided, ("Heat loss", case["heat_loss_method"]),
+            ("Sampling representativeness", f"± {describe(case['sampling'])}, {case['sampling_kind']}"),
+            ("Run sheet", ticked), *([("Refused in the logs", f"{lost} cells or rows")] if lost else []),
+            *([("Not stated", ", ".join(facts.sure.missing))] if facts.sure.missing else []),
+            ("Properties", FORMULATION), ("Program version", __version__))
 
 
 def reading_as_run(case: Case) -> Run:

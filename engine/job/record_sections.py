@@ -112,12 +112,12 @@ def _by_forecast(f: Facts) -> list[str]:
     elif found.unable and f.a.x is not None:
         lines.append(found.unable)
     if found.verdicts is not None:
-        lines += [f"{name} {verdict_word(v)}: {decision_reason(v, f.case)}." for name, v in zip(_WAYS, found.verdicts,
+        lines += [f"{name} {verdict_word(v)}: {decision_reason(v, f.case)}." for name, v in zip(WAYS, found.verdicts,
                                                                                           strict=True)]
     return lines + ([f"Not a result yet, because not stated: {', '.join(found.missing)}."] if found.missing else [])
 
 
-_WAYS = ("With sampling", "By the instruments alone")
+WAYS = ("With sampling", "By the instruments alone")
 
 
 def conformity(f: Facts) -> str:
@@ -125,7 +125,7 @@ def conformity(f: Facts) -> str:
     if f.sure.verdicts is None:
         return paragraph(rule_text(f.case) if f.case["x_limit"] is None else
                          "There is no quality with an uncertainty to decide on.")
-    rows = [_verdict(name, v) for name, v in zip(_WAYS, f.sure.verdicts, strict=True)]
+    rows = [_verdict(name, v) for name, v in zip(WAYS, f.sure.verdicts, strict=True)]
     return paragraph(rule_text(f.case)) + table_of(rows)
 
 
@@ -319,7 +319,7 @@ def budget(f: Facts) -> str:
     if found.budget is None:
         return paragraph("There is no budget: without a quality there is nothing to be uncertain of."
                          if f.a.x is None or f.forecast is None else found.unable)
-    sums = [_sum(name, b) for name, b in zip(_WAYS, (found.budget, found.instruments), strict=True)]
+    sums = [_sum(name, b) for name, b in zip(WAYS, (found.budget, found.instruments), strict=True)]
     missing = f"Not stated, and not in it: {', '.join(found.missing)}." if found.missing else ""
     return table_of(budget_rows(found, f.units)) + table_of(sums) + paragraph(missing)
 
