@@ -45,6 +45,10 @@ class Gauge:
     high: float
     zero: float = 0.0
 
+    def standing(self, true: np.ndarray) -> np.ndarray:
+        """Where the pointer stands on the whole."""
+        return np.clip(true + self.error, self.low, self.high)
+
     def shown(self, true: np.ndarray, noise: np.ndarray) -> np.ndarray:
         """What a person reads where ``true`` stands before it, with ``noise`` of unit variance."""
         value = np.clip(true + self.error + self.tremble * noise, self.low, self.high)

@@ -33,9 +33,9 @@ class Look(StrEnum):
 
 LOOK_WORDS = {
     Look.LAGGING: "Look at the lagging",
-    Look.IMMERSION: "Look how deep the thermometer is",
-    Look.EXHAUST_END: "Look at the end of the exhaust, from afar",
-    Look.GAUGE_FACE: "Read the face of the line gauge",
+    Look.IMMERSION: "Look at the immersion",
+    Look.EXHAUST_END: "Look at the exhaust's end",
+    Look.GAUGE_FACE: "Read the line gauge's face",
     Look.BAROMETER: "Read the barometer",
     Look.SECOND: "Read a second thermometer",
     Look.WEIGH: "Weigh the condensate, 5 min",

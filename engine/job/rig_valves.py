@@ -32,15 +32,15 @@ class Deed(StrEnum):
 
 
 DEED_WORDS = {
-    Deed.PERMIT: "Permit in hand, control room told",
-    Deed.WALK_EXHAUST: "Walk the exhaust: blank off, free, restrained, fenced off",
+    Deed.PERMIT: "Permit in hand",
+    Deed.WALK_EXHAUST: "Walk the exhaust",
     Deed.OPEN_DRAIN: "Open the drain",
     Deed.CLOSE_DRAIN: "Close the drain",
     Deed.CRACK_STOP: "Crack the stop valve",
     Deed.OPEN_STOP: "Open the stop valve fully",
     Deed.CLOSE_STOP: "Close the stop valve",
-    Deed.BLANK_EXHAUST: "Put the blank on the exhaust",
-    Deed.OPEN_BODY: "Open the body, look at the orifice",
+    Deed.BLANK_EXHAUST: "Blank the exhaust",
+    Deed.OPEN_BODY: "Open the body",
 }
 DONE_WORDS = {
     Deed.PERMIT: "The permit is in hand and the control room knows of the test.",

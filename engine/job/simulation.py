@@ -44,7 +44,8 @@ class Course:
     T_exhaust   the exhaust steam as a perfect thermometer reads it
     T_body      of the metal
     wet         the exhaust is not superheated
-    shown       what a person reads, by the names of the gauges; pressures as the gauge shows them
+    standing    where the pointers stand on the whole, by the names of the gauges; pressures as the gauge shows them
+    shown       what a person reads: the same with its trembling, in steps of the scale
     """
 
     rig: Rig
@@ -57,6 +58,7 @@ class Course:
     T_exhaust: np.ndarray
     T_body: np.ndarray
     wet: np.ndarray
+    standing: dict[str, np.ndarray]
     shown: dict[str, np.ndarray]
 
     def at(self, time: float) -> int:
@@ -87,9 +89,12 @@ def simulate(rig: Rig, deeds: Sequence[tuple[int, Deed]] = (), until: float = 36
     pieces = list(_pieces(rig, deeds, time))
     steam = _steam(rig, pieces, p_line, x)
     T_exhaust, T_body = _heat(rig, pieces, steam, dt)
-    shown = _shown(rig, p_line, steam.p_exhaust, T_exhaust, chance, dt)
+    before = _before_the_gauges(rig, p_line, steam.p_exhaust, T_exhaust, dt)
+    standing = {name: rig.gauges[name].standing(value) for name, value in before.items()}
+    shown = {name: rig.gauges[name].shown(value, chance.white(f"{name} shown")) for name, value in before.items()}
     T_due = np.where(steam.flow > 0, steam.T_due, T_exhaust)
-    return Course(rig, time, p_line, steam.x, steam.flow, steam.p_exhaust, T_due, T_exhaust, T_body, steam.wet, shown)
+    return Course(rig, time, p_line, steam.x, steam.flow, steam.p_exhaust, T_due, T_exhaust, T_body, steam.wet,
+                  standing, shown)
 
 
 def by_the_sheet(start: int = 0) -> tuple[tuple[int, Deed], ...]:
@@ -221,14 +226,13 @@ def _heat(rig: Rig, pieces: Sequence[_Piece], steam: _Steam, dt: float) -> tuple
     return T_exhaust, T_body
 
 
-def _shown(rig: Rig, p_line, p_exhaust, T_exhaust, chance: _Chance, dt: float) -> dict[str, np.ndarray]:
-    """What a person reads off the four instruments."""
+def _before_the_gauges(rig: Rig, p_line, p_exhaust, T_exhaust, dt: float) -> dict[str, np.ndarray]:
+    """What each of the four instruments has to show."""
     leg = water_leg(rig.leg_height, T_LEG) if rig.leg_height else 0.0
     air = {name: rig.p_barometer if rig.gauges[name].on_barometer else 0.0 for name in ("line", "exhaust")}
-    true = {"line": p_line + leg - air["line"], "exhaust": p_exhaust - air["exhaust"],
+    return {"line": p_line + leg - air["line"], "exhaust": p_exhaust - air["exhaust"],
             "exhaust thermometer": at_the_probe(rig, T_exhaust, dt),
             "line thermometer": np.asarray(saturation_temperature(p_line)) + rig.line_superheat}
-    return {name: rig.gauges[name].shown(value, chance.white(f"{name} shown")) for name, value in true.items()}
 
 
 def at_the_probe(rig: Rig, T_exhaust: np.ndarray, dt: float) -> np.ndarray:

@@ -354,7 +354,7 @@ def test_the_verdict_is_told_in_the_reader_s_units():
 
 def test_the_journal_has_everything_in_order():
     rows = journal(read(), SI)
-    assert rows[0] == (clock(0), "Permit in hand, control room told",
+    assert rows[0] == (clock(0), "Permit in hand",
                        "The permit is in hand and the control room knows of the test.")
     assert any(what == "25 sets of readings" for _, what, _ in rows)
     assert len(rows) == len(IN_ORDER) + 1 + len(Look) + 2
