@@ -262,8 +262,8 @@ def drain_needed(p_line, x, p_exhaust, superheat=5.0, *, p_separator=None, vesse
     x_t = np.asarray(least_quality(p_s, p2, wanted, **terms))
     h, sep = np.asarray(wet_steam(p, x).h) - q_s, saturated(p_s)
     arriving = (h - sep.h_f) / (sep.h_g - sep.h_f)  # quality in the separator, after the vessel's loss
-    z = np.maximum(1 - arriving / x_t, 0.0)
     possible = x_t <= 1
+    z = 1 - np.divide(arriving, x_t, out=np.ones_like(x_t), where=possible & (arriving < x_t))
     share = np.divide(z, 1 - arriving, out=np.zeros_like(z), where=z > 0)
     status = np.where(possible, Status.OK, Status.NOT_SUPERHEATED).astype(np.int8)
     columns = (np.where(possible, c, np.nan) for c in (z, share, np.maximum(x_t, arriving)))

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 
 import numpy as np
@@ -68,7 +68,8 @@ def instrument_chart(plan: ReachAssessment, units: UnitSystem) -> InstrumentChar
     def reduced(T):
         return _reduced(plan, T)
 
-    T_least, T_dry = T_sat + si["least_superheat"], T_sat + plan.dry_superheat
+    T_dry = T_sat + plan.dry_superheat
+    T_least = _first_dry(reduced, T_sat + si["least_superheat"], T_dry)
     low, high = (from_si(T, unit, "temperature") for T in (T_least, T_dry))
     step = next((step for step in STEPS if high - low < step * (ROWS - 1)), STEPS[-1])
     shown = step * np.arange(math.ceil(low / step - 1e-9), math.floor(high / step + 1e-9) + 1)
@@ -79,6 +80,17 @@ def instrument_chart(plan: ReachAssessment, units: UnitSystem) -> InstrumentChar
     return InstrumentChart(T[fits], T[fits] - T_sat, x[fits], T[fits] - T_sat < si["comfortable_superheat"], step, unit,
                            T_sat, T_least, T_dry, x_least, THROTTLED if a.separation else LINE,
                            _slopes(plan, 0.5 * (T_least + T_dry)))
+
+
+def _first_dry(reduced: Callable[[np.ndarray], np.ndarray], low: float, high: float) -> float:
+    """The least temperature that says something: a fast stream may still be wet itself where it reads superheat."""
+    ends = np.array([low, high])
+    if not low < high or np.isfinite(reduced(ends)[0]):
+        return low
+    for _ in range(40):
+        middle = ends.mean()
+        ends[int(np.isfinite(reduced(np.array([middle]))[0]))] = middle
+    return float(ends[1])
 
 
 def _reduced(plan: ReachAssessment, T: np.ndarray, **scaled: float) -> np.ndarray:

@@ -5,6 +5,8 @@ from html.parser import HTMLParser
 
 import numpy as np
 import pytest
+from hypothesis import example, given, settings
+from hypothesis import strategies as st
 
 from engine.calorimeter import Readability, WayKind, exhaust_pressure_for, least_quality
 from engine.job.assessment import Verdict, assess
@@ -20,7 +22,7 @@ from engine.job.examples import (
     WET_LINE,
     WET_LINE_READ,
 )
-from engine.job.fields_modes import ELECTRIC, SEPARATING
+from engine.job.fields_modes import ELECTRIC, SEPARATING, THROTTLING
 from engine.job.fields_path import EXPECTED, NONE, READING
 from engine.job.instrument_chart import ROWS, instrument_chart
 from engine.job.printable import chart_page, chart_rows
@@ -353,11 +355,56 @@ def test_the_page_to_print_stands_alone(units, paper):
     assert page.found["td"] == 3 * chart.T.size
 
 
+def test_a_fast_stream_is_read_from_where_it_is_dry_itself():
+    case = BOILER_OUTLET.with_(sample_flow=Entry(400.0, "kg/h"))
+    chart = instrument_chart(assess_reach(case), SI)
+    assert chart.T_least > chart.T_saturation + 20 and np.isfinite(chart.x_least)
+    below = assess(case.with_(question=READING, T_exhaust=Entry(chart.T_least - 0.01, "K")))
+    above = assess(case.with_(question=READING, T_exhaust=Entry(chart.T_least + 0.01, "K")))
+    assert below.x is None and above.x == pytest.approx(chart.x_least, abs=1e-4)
+
+
 def test_saturation_is_hatched_on_the_page():
     plan = assess_reach(DEMO)
     chart = instrument_chart(plan, SI)
     assert chart.T_saturation == pytest.approx(saturation_temperature(102.1e3))
     assert "do not read: wet, or too near" in chart_page(plan, chart, SI)
+
+
+# ---- any plan at all
+
+def entries(low, high, unit, basis=""):
+    return st.floats(low, high).map(lambda value: Entry(value, unit, basis))
+
+
+PLANS = st.fixed_dictionaries({
+    "mode": st.sampled_from([THROTTLING, SEPARATING, ELECTRIC]), "p_line": entries(1.2, 160.0, "bar", "absolute"),
+    "p_exhaust": entries(0.02, 5.0, "bar", "absolute"), "wetness_low": entries(0.0, 3.0, "%"),
+    "wetness_high": entries(2.0, 100.0, "%"), "sample_flow": st.none() | entries(0.5, 400.0, "kg/h"),
+    "exhaust_bore": st.none() | entries(5.0, 100.0, "mm"), "conductance": entries(0.0, 2.0, "W/K"),
+    "water_share": entries(0.0, 99.9, "%"), "vessel_loss": st.none() | entries(0.0, 200.0, "kJ/kg"),
+    "power": st.none() | entries(1.0, 20_000.0, "W"), "power_loss": st.none() | entries(0.0, 500.0, "W"),
+    "U_thermometer": st.none() | entries(0.0, 10.0, "K"),
+})
+
+
+@settings(max_examples=40, deadline=None, derandomize=True)
+@given(PLANS)
+@example(changes={"mode": SEPARATING, "heat_loss_method": "per kg", "heat_loss": Entry(225.0, "kJ/kg")})
+def test_any_plan_is_answered_or_refused(changes):
+    try:
+        plan = assess_reach(WET_LINE.with_(**changes))
+    except InputError as error:
+        assert error.faults
+        return
+    assert (plan.verdict is Readability.NONE) == (plan.dry.verdict is Verdict.CANNOT)
+    assert plan.wetness_comfortable <= plan.wetness_most + 1e-12
+    for units in (SI, US):
+        assert said(plan, units).headline and ladder_rows(plan, units)
+        assert "<html" in chart_page(plan, instrument_chart(plan, units), units)
+    for way in ways(plan):
+        assert way_title(way, plan, SI) and (way.feasible or way.why_not)
+    assert all(section.readable.size == 40 for section in sections(plan, 40))
 
 
 # ---- examples
