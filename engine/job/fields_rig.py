@@ -86,9 +86,10 @@ HEAT_FIELDS = (
 
 THERMOMETER_FIELDS = (
     choice("thermometer", "Thermometer", "thermometer", (ELECTRIC_PROBE, MERCURY, ORGANIC)),
-    quantity("immersion", "Immersion in the flow", "thermometer", 0.0, 1.0, why="longer than the body is wide",
+    quantity("immersion", "Immersion in the flow", "thermometer", 0.0, 1.0, why="longer than any body is wide",
              hint="15 diameters and more is common practice"),
-    quantity("probe_outer_diameter", "Thermometer, outer diameter", "thermometer", 0.2e-3, 0.05, hint="of the probe or its pocket"),
+    quantity("probe_outer_diameter", "Thermometer, outer diameter", "thermometer", 0.2e-3, 0.05,
+             why="thinner is a bare wire, thicker blocks the exhaust", hint="of the probe or its pocket"),
     quantity("probe_inner_diameter", "Thermometer, inner diameter", "thermometer", 0.0, 0.05, Entry(0.0, "mm"),
              hint="of the tube it is made of; 0 for a solid rod"),
     quantity("T_head", "Temperature of its head", "thermometer", 223.15, 673.15,
