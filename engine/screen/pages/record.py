@@ -48,7 +48,8 @@ def _facts() -> tuple[Facts | None, Result | None]:
     shape, sentence, kind = headline(facts)
     st.markdown(f"### {shape} {escaped(sentence)}")
     if kind == "exploration":
-        st.markdown("**Exploration, not a result**: the record will say what is not stated.")
+        missing = escaped(", ".join(facts.sure.missing) or "the uncertainty")
+        st.markdown(f"**Exploration, not a result**, as long as it is not stated: {missing}. The record will say so.")
     return facts, result
 
 
@@ -82,7 +83,7 @@ def _by_hand() -> None:
 
 def _preview(facts: Facts) -> None:
     st.subheader("What it will say", anchor=False)
-    st.table([{"": name, " ": escaped(text)} for name, text in summary(facts)])
+    st.table([{"What": name, "In the record": escaped(text)} for name, text in summary(facts)])
     st.caption("And with it: every reading, the settled windows, each correction with its size, states and diagrams, "
                "the budget, steps of the run sheet that were not ticked, everything entered, and the case itself. The "
                "page opens offline, can be printed and signed, and opened here again under “Case”.")
