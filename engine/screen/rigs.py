@@ -1,12 +1,14 @@
-"""The rig of a case and the uncertainty to expect of it, each computed once; a page itself starts anew every run."""
+"""What pages compute once for a case: rig, uncertainty to expect, reach. A page itself starts anew every run."""
 
 from __future__ import annotations
 
 from functools import lru_cache
 
 from engine.job.case import Case
+from engine.job.reach import ReachAssessment, assess_reach
 from engine.job.rig import RigAssessment, assess_rig
 from engine.job.uncertainty import Forecast, forecast
+from engine.job.ways import Way, ways
 from engine.screen.shell import assessed
 
 
@@ -20,3 +22,10 @@ def rig_of(case: Case) -> RigAssessment:
 def expected_of(case: Case) -> Forecast:
     """The uncertainty to expect of a case. Raises InputError."""
     return forecast(case, assessed(case))
+
+
+@lru_cache(maxsize=32)
+def planned(case: Case) -> tuple[ReachAssessment, tuple[Way, ...]]:
+    """The reach of a case and the ways out. Raises InputError."""
+    plan = assess_reach(case)
+    return plan, ways(plan)

@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-from functools import lru_cache
-
 import streamlit as st
 
 from engine.calorimeter import Readability
@@ -12,13 +10,14 @@ from engine.job.cautions import SHORT
 from engine.job.fields_modes import ELECTRIC
 from engine.job.instrument_chart import InstrumentChart, instrument_chart
 from engine.job.printable import chart_page, chart_rows, conditions, slopes_said
-from engine.job.reach import ReachAssessment, assess_reach
+from engine.job.reach import ReachAssessment
 from engine.job.reach_map import sections
 from engine.job.reach_said import SHAPES, VERDICTS, ladder_rows, percent, said, way_change, way_title
 from engine.job.tables import as_csv
-from engine.job.ways import Way, ways
+from engine.job.ways import Way
 from engine.screen import entries, live, methods, session, style
 from engine.screen.charts.reach import instrument_diagram, reach_map_diagram, section_diagrams
+from engine.screen.rigs import planned
 from engine.screen.style import escaped, escaped_lines
 from engine.steam.errors import InputError
 
@@ -27,13 +26,6 @@ MAP_LEGEND = (("blue", "solid", "greatest readable wetness, darker where more is
               ("vermilion", "solid", "● this case"), ("green", "solid", "● pinned cases"))
 SECTION_LEGEND = (("blue", "solid", "readable"), ("blue", "dashed", "with a comfortable margin"),
                   ("vermilion", "solid", "the expected range, ● this case"))
-
-
-@lru_cache(maxsize=32)
-def planned(case: Case) -> tuple[ReachAssessment, tuple[Way, ...]]:
-    """The reach of a case and the ways out; the same case is not computed twice. Raises InputError."""
-    plan = assess_reach(case)
-    return plan, ways(plan)
 
 
 def page() -> None:
