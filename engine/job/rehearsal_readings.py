@@ -42,7 +42,7 @@ class Way:
 
 def channels_of(course: Course, times: np.ndarray, p_barometer: float, T_shift: float = 0.0) -> dict[str, np.ndarray]:
     """What the gauges showed at ``times`` [s], by channel, SI; pressures as shown."""
-    k = np.array([course.at(t) for t in times], dtype=int)
+    k = course.at(times)
     shown = {name: values[k] for name, values in course.shown.items()}
     return {"p_line": shown["line"], "p_exhaust": shown["exhaust"],
             "T_exhaust": shown["exhaust thermometer"] + T_shift, "T_line": shown["line thermometer"],

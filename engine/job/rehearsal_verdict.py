@@ -118,7 +118,7 @@ def _refused(r: Rehearsal) -> Iterator[Said]:
 def _valves(r: Rehearsal) -> Iterator[Said]:
     half = drained = 0
     for time in r.readings:
-        valves = valves_after(deed for deed in r.deeds if deed[0] <= time)
+        valves = valves_after(deed for deed in r.deeds if deed[0] < time)  # felt from the next step on
         half += 0.0 < valves.stop < 1.0
         drained += valves.drain
     if half:
@@ -134,16 +134,15 @@ def _readings(r: Rehearsal) -> Iterator[Said]:
         return
     if sets < FEW:
         yield Said("Only {0} sets of readings: 20 to 30 over half an hour show drift and scatter.", ((sets, "count"),))
-    rows = np.array([course.at(t) for t in r.readings], dtype=int)
-    cold = rows[course.flow[rows] == 0.0] if sets else rows
+    rows = course.at(np.array(r.readings, dtype=float))
+    cold = rows[course.flow[rows] == 0.0]
     if cold.size:
         yield Said("{0} of {1} sets were read without steam.", ((cold.size, "count"), (sets, "count")))
-    early = rows[(course.flow[rows] > 0.0) & (course.short[rows] < -EARLY)] if sets else rows
+    early = rows[(course.flow[rows] > 0.0) & (course.short[rows] < -EARLY)]
     if early.size:
-        short = float(-course.short[early].min())
-        line = saturated(r.rig.p_line)
-        k = int(early[0])
-        cp = vapour(float(course.p_exhaust[k]), float(max(course.T_due[k], course.T_exhaust[k]))).cp
+        k = int(early[np.argmin(course.short[early])])
+        short, line = float(-course.short[k]), saturated(r.rig.p_line)
+        cp = vapour(float(course.p_exhaust[k]), float(course.T_due[k])).cp
         yield Said("{0} of {1} sets were read while the body still took heat: up to {2} off the reading, {3} of "
                    "quality.", ((early.size, "count"), (sets, "count"), (short, "difference"),
                                 (-cp * short / (line.h_g - line.h_f), "signed points")))

@@ -12,6 +12,7 @@ from dataclasses import replace
 import numpy as np
 
 from engine.calorimeter import exhaust_pipe, least_quality
+from engine.job.case import resolve
 from engine.job.fields_modes import THROTTLING
 from engine.job.rig_model import FLOW, Pipe, Rig, conductance_of, sound_rig
 from engine.job.rig_point import Point, point_of
@@ -46,6 +47,7 @@ def rig_of(scenario: Scenario) -> Rig:
     if case["mode"] != THROTTLING:
         raise InputError(Fault("Method", case["mode"], "", f"{THROTTLING} alone for a rehearsal",
                                "no other rig is simulated", "choose it on the Path page", "mode"))
+    resolve(case)  # refuses every entry that cannot be used: a link could not carry them
     point = point_of(case)
     rig = sound_rig(scenario, point, _quality(scenario, point))
     for fault, change in _CHANGES.items():

@@ -61,9 +61,10 @@ class Course:
     standing: dict[str, np.ndarray]
     shown: dict[str, np.ndarray]
 
-    def at(self, time: float) -> int:
-        """The step that holds at ``time`` [s]."""
-        return int(np.clip(np.searchsorted(self.time, time, side="right") - 1, 0, self.time.size - 1))
+    def at(self, time):
+        """The step that holds at ``time`` [s], or the steps at several."""
+        steps = np.clip(np.searchsorted(self.time, time, side="right") - 1, 0, self.time.size - 1)
+        return steps if np.ndim(time) else int(steps)
 
     @property
     def short(self) -> np.ndarray:

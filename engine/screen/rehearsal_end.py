@@ -38,7 +38,7 @@ FINDINGS = {Finding.QUALITY: "A quality", Finding.CANNOT: "It cannot be read", F
 def reading_rows(r: Rehearsal, units: UnitSystem) -> list[dict[str, str]]:
     """The sets of readings as the gauges showed them."""
     course, rig = r.course, r.rig
-    k = [course.at(t) for t in r.readings]
+    k = course.at(np.array(r.readings, dtype=float))
     columns = {"Time": [clock(t) for t in r.readings]}
     for name, label, kind in (("line", "Line gauge", "pressure"), ("exhaust", "Exhaust gauge", "pressure"),
                               ("exhaust thermometer", "Exhaust thermometer", "temperature"),

@@ -359,6 +359,8 @@ def test_a_surprise_hides_at_most_one_fault_and_sometimes_none():
 def test_what_cannot_be_rehearsed_is_refused_with_the_reason():
     with pytest.raises(InputError, match="Method: got separating and throttling, needs throttling alone"):
         rig_of(Scenario(WET_LINE_READ))
+    with pytest.raises(InputError, match="Part of the water the separator drains: got 180 %"):
+        rig_of(Scenario(DEMO.with_(water_share=Entry(180.0, "%"))))
     with pytest.raises(InputError, match="seed: got -1, needs a whole number"):
         Scenario(DEMO, seed=-1)
     with pytest.raises(InputError, match="quality of the line: got 1.2, needs 0.5 to 1"):

@@ -28,7 +28,7 @@ def _rows(r: Rehearsal, back: float) -> tuple[np.ndarray, np.ndarray]:
     """Steps to draw, and those of the sets of readings, of the last ``back`` seconds."""
     course = r.course
     rows = np.flatnonzero(course.time >= r.now - back)
-    taken = np.array([course.at(t) for t in r.readings if t >= r.now - back], dtype=int)
+    taken = course.at(np.array([t for t in r.readings if t >= r.now - back], dtype=float))
     return rows[::max(1, rows.size // POINTS)], taken
 
 
