@@ -41,6 +41,8 @@ def legend(rows: tuple[tuple[str, str, str], ...]) -> None:
     st.html(f'<div class="legends">{" ".join(parts)}</div>')
 
 
+# Addresses become links even where every sign is escaped; an invisible joiner inside keeps them words
+_LINKS, _JOINER = re.compile(r"(?<=:)(?=//)|(?i:(?<=www)(?=\.))|(?=@)"), "\u2060"
 _MARKDOWN = re.compile(r"([\\`*_{}\[\]()<>#+\-.!|~$:&])")
 
 
@@ -51,7 +53,7 @@ def apply() -> None:
 
 def escaped(text: str) -> str:
     """User's words inside Markdown: shown as typed, on one line, meaning nothing."""
-    return _MARKDOWN.sub(r"\\\1", " ".join(text.split()))
+    return _MARKDOWN.sub(r"\\\1", _LINKS.sub(_JOINER, " ".join(text.split())))
 
 
 def escaped_lines(text: str) -> str:

@@ -27,7 +27,7 @@ CHROMIUM = Path("/usr/bin/chromium")
 # No sandbox: tests often run as root in a container. The rest keeps the browser itself from calling home.
 FLAGS = ["--no-sandbox", "--disable-gpu", "--disable-quic", "--no-first-run", "--disable-background-networking"]
 FLAGS += ["--disable-component-update", "--disable-sync"]
-PATIENCE = 30_000  # ms, for a busy machine; nothing waits longer than it has to
+PATIENCE = 60_000  # ms, for a busy machine; nothing waits longer than it has to
 
 
 def pytest_collection_modifyitems(items: list[pytest.Item]) -> None:
@@ -125,7 +125,7 @@ def visit(windows):
     """
     pages, complaints = [], []
 
-    def go(address, *, width=1440, height=900, dark=False, phone=False, forgive=None, prepare=None):
+    def go(address, *, width=1440, height=900, dark=False, phone=False, forgive=None, prepare=None, settled=True):
         def complain(words: str) -> None:
             if not (forgive and re.search(forgive, words)):
                 complaints.append(words)
@@ -139,7 +139,8 @@ def visit(windows):
         if prepare:
             prepare(page)
         page.goto(address)
-        settle(page)
+        if settled:  # not a page of ours from a file, which no script runs
+            settle(page)
         return page
 
     yield go
