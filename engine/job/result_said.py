@@ -74,7 +74,7 @@ def _reasons(result: Result) -> tuple[str, ...]:
         lines.append(f"By the instruments and the scatter alone {x} ± {U}; the rest is sampling.")
     runs = result.read
     if len(runs) == 1:
-        lines.append(f"{runs[0].used.sum()} sets of readings{_window(runs[0])}{_worth(runs[0])}.")
+        lines.append(f"{counted(int(runs[0].used.sum()), 'set')} of readings{_window(runs[0])}{_worth(runs[0])}.")
     else:
         together = result.repeatability
         lines.append(f"Mean of {together.runs} runs, which " +

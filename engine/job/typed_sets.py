@@ -69,7 +69,8 @@ def edited(case: Case, columns: Sequence[GridColumn], base: Sequence[Row],
            edits: Edits) -> tuple[tuple[Row, ...], list[Fault]]:
     """The rows after the edits of a grid laid out from ``base``, and what could not be taken.
 
-    A cell that is no number, or out of its limits, is refused by its place and stays empty.
+    A cell that is no number, or out of its limits, is refused by its place and stays empty. Empty rows at the
+    end are room that was not used.
     """
     table, by_name, p_air = FIELDS["readings"], {c.name: c for c in columns}, barometer(case)
     kept = [(k, row, edits.changed.get(k, {})) for k, row in enumerate(base) if k not in set(edits.deleted)]
@@ -82,10 +83,19 @@ def edited(case: Case, columns: Sequence[GridColumn], base: Sequence[Row],
                 row = row.with_(**{name: value})
                 faults += [fault] if fault else []
         rows.append(row)
+    while rows and rows[-1] == table.row():  # room that was not used
+        rows.pop()
     if len(rows) > table.most:
         faults.append(Fault(table.label, len(rows), "rows", f"at most {table.most}", hint="bring more as a log file"))
         rows = rows[:table.most]
     return tuple(rows), faults
+
+
+def with_room(rows: Sequence[Row], least: int = 10, more: int = 3) -> tuple[Row, ...]:
+    """Rows with empty ones after them: at least ``least`` in all, and ``more`` to go on with."""
+    field = FIELDS["readings"]
+    wanted = min(max(least, len(rows) + more), field.most)
+    return (*rows, *(field.row(),) * (wanted - len(rows)))
 
 
 def _field(name: str) -> Field:

@@ -103,6 +103,7 @@ def confirm(name: str) -> None:
     """Take the columns as they are now, and remember them in the case."""
     log = held()[name]
     held()[name] = replace(log, confirmed=True, log=None, refused="")
+    st.session_state["intake open"] = False  # what it was opened for is done
     session.change(remembered(session.case(), name, log.mapping))
 
 

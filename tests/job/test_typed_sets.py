@@ -5,7 +5,7 @@ from scenarios import FACTORY
 
 from engine.job.fields import FIELDS
 from engine.job.rows import Entry
-from engine.job.typed_sets import Edits, as_number, edited, grid, grid_columns
+from engine.job.typed_sets import Edits, as_number, edited, grid, grid_columns, with_room
 from engine.steam.units import SI, US
 
 ROW = FIELDS["readings"].row
@@ -44,7 +44,7 @@ def test_what_is_not_touched_stays_as_entered():
 def test_rows_are_added_changed_and_taken_out():
     rows, faults = put((SET, SET.with_(run="2")), {1: {"remark": "wind"}},
                        [{"run": "3", "p_line": "9.01", "T_exhaust": 121.2}, {}], [0])
-    assert not faults and [row["run"] for row in rows] == ["2", "3", ""]
+    assert not faults and [row["run"] for row in rows] == ["2", "3"]
     assert rows[0]["remark"] == "wind" and rows[1]["p_line"] == Entry(9.01, "bar", "gauge")
     rows, _ = put((SET,), {0: {"T_exhaust": None, "run": None}})
     assert rows[0]["T_exhaust"] is None and rows[0]["run"] == ""
@@ -61,6 +61,15 @@ def test_rows_are_added_changed_and_taken_out():
 def test_a_cell_that_cannot_be_is_refused_and_stays_empty(cells, message):
     rows, faults = put((SET,), {0: cells})
     assert message in str(faults[0]) and rows[0][next(iter(cells))] is None
+
+
+def test_there_is_room_to_type_and_what_was_not_used_is_no_row():
+    room = with_room((SET,))
+    assert len(room) == 10 and room[0] == SET and len(with_room((SET,) * 9)) == 12
+    assert len(with_room((SET,) * 400)) == 400
+    assert put(room) == ((SET,), [])
+    rows, _ = put(room, {3: {"T_exhaust": "121"}})
+    assert len(rows) == 4 and rows[1] == ROW()  # an empty row between others stays, so that numbers do not move
 
 
 def test_a_full_table_says_so():

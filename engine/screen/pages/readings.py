@@ -27,12 +27,19 @@ from engine.steam.errors import InputError
 
 LISTED = 200  # refused cells in the table; the counts are complete
 FILES = ["csv", "tsv", "txt", "dat", "log", "asc", "xlsx", "xlsm"]
+# as high with a result as without one, so that the grid stays where it is while sets are typed into it
+_CSS = """
+<style>
+.st-key-readings_answer {min-height: 19rem;}
+</style>
+"""
 EVERYTHING, ALONE = "With sampling", "By the instruments alone"
 
 
 def page() -> None:
     """The result first, then what it was made from, step by step."""
-    top = st.container(key="readings answer", border=True)
+    st.html(_CSS)
+    top = st.container(key="readings_answer", border=True)
     with top:
         logs.read_all()
     _intake()
@@ -91,8 +98,15 @@ def _take_means(found: Result) -> None:
 # ---- readings in
 
 
+def _stays_open(key: str, wanted: bool) -> bool:
+    """Open as soon as it is wanted, and then for good: nothing shuts under the reader's hands."""
+    st.session_state[key] = wanted or st.session_state.get(key, False)
+    return st.session_state[key]
+
+
 def _intake() -> None:
-    with st.expander("Readings: logs and typed sets", expanded=not logs.held() and not session.case()["readings"]):
+    nothing_yet = not session.case()["readings"] and not any(one.confirmed for one in logs.held().values())
+    with st.expander("Readings: logs and typed sets", expanded=_stays_open("intake open", nothing_yet)):
         files, by_hand = st.tabs(["Log files", "Typed sets"])
         with files:
             _upload()
@@ -200,7 +214,8 @@ def _corrections(found: Result) -> None:
         if len(found.runs) > 1:
             st.caption(f"Sizes at the means of {escaped(read[0].run.name)}; a switch holds for all runs.")
         run_view.corrections(read[0])
-    with st.expander("What the corrections rest on", expanded=any("heat loss" in line for line in found.unable)):
+    undecided = any("heat loss" in line for line in found.unable)
+    with st.expander("What the corrections rest on", expanded=_stays_open("corrections open", undecided)):
         loss, certificates, site, thermometer = st.columns(4, gap="medium")
         with loss:
             entries.choice("heat_loss_method", LOSSES)
@@ -230,7 +245,8 @@ def _corrections(found: Result) -> None:
 
 def _uncertainty(found: Result) -> None:
     st.subheader("Uncertainty, term by term", anchor=False)
-    with st.expander("Instruments, sampling, and what else is in doubt", expanded=bool(found.missing)):
+    with st.expander("Instruments, sampling, and what else is in doubt",
+                     expanded=_stays_open("instruments open", bool(found.missing))):
         instruments()
     if found.budget is None:
         st.caption("A budget needs a quality.")
