@@ -12,6 +12,7 @@ from engine.job.demo import DEMO
 from engine.job.fields_path import UNDECIDED
 from engine.measurement.logbook_write import write_log
 
+
 @pytest.fixture
 def readings(app_address, visit):
     """The page, entered by the navigation."""
