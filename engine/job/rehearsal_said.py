@@ -62,8 +62,8 @@ def judged(v: Verdict, r: Rehearsal) -> Said:
         if v.right:
             return Said(f"You stated: {stated.finding}. With water coming through time and again that stands.")
         return Said(f"You stated: {stated.finding}. So it was not.")
-    against = "of a careful test, as common practice has it" if v.U_common else "of these instruments"
-    return Said(f"You stated {{0}}: {{1}} from the truth, where the uncertainty U {against} is {{2}}.",
+    whose = "that of a careful test" if v.U_common else "that of these instruments"
+    return Said(f"You stated {{0}}: {{1}} from the truth. The uncertainty U is {{2}}, {whose}.",
                 ((stated.x, "fraction"), (v.error, "signed points"), (v.U, "points")))
 
 
@@ -82,7 +82,7 @@ def cost(c: Cost) -> Said:
         return Said(f"{name}: {{0}} where the exhaust pressure is taken as planned. Read, it costs nothing but margin: "
                     "{1} of superheat are left of {2}.",
                     ((c.size, "signed points"), (c.superheat, "difference"), (c.sound, "difference")))
-    return Said(f"{name}: {{0}} where it goes unnoticed.", ((c.size, "signed points"),))
+    return Said(f"{name}, unnoticed: {{0}}.", ((c.size, "signed points"),))
 
 
 def journal(r: Rehearsal, units: UnitSystem) -> list[tuple[str, str, str]]:

@@ -31,8 +31,8 @@ class Verdict:
     finding     what there was to be found, with ``x`` and ``line_superheat`` [K] of the line
     superheat   left at the exhaust of the warm rig [K], below 0 where it stays wet
     error       quality stated minus the truth; None where none was stated, or there is none
-    U           expanded uncertainty of the instruments, against which the error is held; ``U_common``: the case
-                does not state them, so it is a common one
+    U           expanded uncertainty of the instruments, against which the error is held; ``U_common``: readings or
+                case do not give one, so it is a common one
     right       the finding is the right one, and a quality within U of the truth
     found, missed, imagined   faults hidden and named, hidden and not named, named and not hidden
     costs       what each hidden fault does to the answer of someone who does not notice it

@@ -88,7 +88,7 @@ def test_a_rehearsal_from_cold_to_the_verdict_on_a_tablet(rehearsal):
     press(page, "State it, and see the truth")
     verdict = page.locator(".st-key-rehearsal-verdict")
     verdict.get_by_text("The answer is wrong, and every hidden fault was named.").wait_for()
-    page.get_by_text("%pt where it goes unnoticed").wait_for()
+    page.get_by_text("Wet lagging, unnoticed:").wait_for()
     page.get_by_text("The stop valve was left open.").wait_for()
     assert sideways(page) <= 1
 

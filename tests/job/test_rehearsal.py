@@ -348,7 +348,7 @@ def test_every_fault_has_its_sign():
 def test_the_verdict_is_told_in_the_reader_s_units():
     verdict, r = verdict_of(stated(read("back pressure"))), stated(read("back pressure"))
     assert " K of superheat" in truth(verdict).text(SI) and " °F of superheat" in truth(verdict).text(US)
-    assert "%pt" in judged(verdict, r).text(SI) and "U of these instruments" in judged(verdict, r).text(SI)
+    assert "%pt" in judged(verdict, r).text(SI) and "that of these instruments" in judged(verdict, r).text(SI)
     assert "costs nothing but margin" in cost(verdict.costs[0]).text(SI)
 
 

@@ -43,7 +43,7 @@ def test_the_text_says_what_was_hidden_and_what_it_cost(case_file):
     status, out, _ = run(case_file, "--fault", "Thermometer-offset", "--seed", 2, "--units", "US", "--quality", 0.98)
     assert status == 0
     assert "Hidden: thermometer offset; seed 2." in out and "The quality of the line was 0.9800" in out
-    assert "°F of superheat" in out and "%pt where it goes unnoticed" in out
+    assert "°F of superheat" in out and "Thermometer offset, unnoticed: " in out
 
 
 def test_wet_steam_gives_the_status_of_a_question_without_an_answer(case_file):
