@@ -401,7 +401,7 @@ def numbers(thing):
             yield from numbers(getattr(thing, field.name))
 
 
-@settings(max_examples=80, deadline=None)
+@settings(max_examples=50, deadline=None)
 @given(p_line=st.floats(1.05, 165.0), p_exhaust=st.floats(0.01, 40.0), T=st.floats(0.0, 500.0),
        wetness=st.floats(0.0, 100.0), question=st.sampled_from(["reading", EXPECTED]),
        method=st.sampled_from(list(LOSSES)), flow=st.none() | st.floats(0.04, 3600.0),

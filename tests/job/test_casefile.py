@@ -55,7 +55,7 @@ _VALUES = {QUANTITY: _entries, CHOICE: lambda field: st.sampled_from(field.optio
 CASES = st.fixed_dictionaries({}, optional={name: _VALUES[field.form](field) for name, field in FIELDS.items()})
 
 
-@settings(max_examples=30, deadline=None)
+@settings(max_examples=15, deadline=None)
 @given(CASES)
 def test_a_usable_case_comes_back_from_file_and_link(values):
     case = DEMO.with_(**values)
@@ -284,7 +284,7 @@ def test_a_link_of_another_kind(thing, line):
     assert refused(word_of(thing), from_link)[0] == line
 
 
-@settings(max_examples=80, deadline=None)
+@settings(max_examples=40, deadline=None)
 @given(st.integers(0, len(to_link(DEMO)) - 1), st.characters(codec="utf-8"))
 def test_a_letter_changed_on_the_way_is_refused_or_still_a_usable_case(place, letter):
     word = to_link(DEMO)
@@ -295,7 +295,7 @@ def test_a_letter_changed_on_the_way_is_refused_or_still_a_usable_case(place, le
     assert isinstance(case, Case) and not faults_of(case)
 
 
-@settings(max_examples=80, deadline=None)
+@settings(max_examples=40, deadline=None)
 @given(st.recursive(st.none() | st.booleans() | st.floats() | st.integers() | st.text(max_size=5),
                     lambda inner: st.lists(inner, max_size=3) | st.dictionaries(
                         st.sampled_from(["value", "unit", "basis"]), inner, max_size=3), max_leaves=6),
