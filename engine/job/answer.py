@@ -98,7 +98,7 @@ def _cannot(a: Assessment, units: UnitSystem):
         shown = f"The {said.thermometer(a)} shows {units.text(a.T_exhaust, 'temperature')}, "
         if a.superheat > 0:
             fast = a.least_readable > a.si["least_superheat"]
-            stream = units.text(a.terms.exhaust_velocity, "velocity")
+            stream = units.text(a.velocities.exhaust, "velocity")
             why = (f"in a stream of {stream}, which the thermometer slows down and so heats, wet steam can show that"
                    if fast else "wet steam may pass for superheated")
             reasons = (f"{shown}only {_superheat(a, units)} above saturation there, {saturation}: below "

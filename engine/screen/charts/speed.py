@@ -23,7 +23,7 @@ def velocity_diagram(a: Assessment, units: UnitSystem) -> Diagram | None:
     ticks = [d * 10.0**e for e in range(-2, 5) for d in (1, 2, 5)]
     common = {"gridcolor": "var:grid", "zeroline": False, "linecolor": "var:muted", "ticks": "outside"}
     layout = {"margin": {"l": 62, "r": 10, "t": 8, "b": 46}, "hovermode": "closest", "font": {"size": 14},
-              "showlegend": True, "legend": {"x": 0.98, "y": 0.98, "xanchor": "right", "bgcolor": "rgba(0,0,0,0)"},
+              "showlegend": True, "legend": {"x": 0.02, "y": 0.98, "xanchor": "left", "bgcolor": "rgba(0,0,0,0)"},
               "xaxis": {**common, "type": "log", "autorange": "reversed", "tickvals": ticks,
                         "ticktext": [f"{t:g}" for t in ticks],
                         "title": {"text": f"p, {units.unit('pressure')} abs (line → exhaust)", "standoff": 4}},
