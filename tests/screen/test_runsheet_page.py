@@ -215,6 +215,13 @@ def test_an_entry_that_cannot_be_used_is_refused_and_nothing_is_lost(at):
     assert keyed(at(DEMO), "tick ")
 
 
+def test_the_rehearsal_stands_beside_the_sheet(at):
+    app = ran(at().segmented_control(key="sheet or rehearsal").set_value("Rehearsal"))
+    assert "Practise the test without steam" in words(app) and not keyed(app, "tick ")
+    app = ran(app.segmented_control(key="sheet or rehearsal").set_value("Run sheet"))
+    assert keyed(app, "tick ")
+
+
 def test_what_users_write_does_nothing(at):
     bad = "<script>alert(1)</script> **bold** [a](http://x) $x$"
     case = tick(DEMO.with_(title=bad, place=bad), "hold.permit", "08:15", "AB", bad)

@@ -1,4 +1,4 @@
-"""The Run sheet page: the procedure for the open case, to tick on a tablet at the line, and to print."""
+"""The Run sheet page: the procedure for the open case, to tick on a tablet at the line, to print, to rehearse."""
 
 from __future__ import annotations
 
@@ -26,7 +26,7 @@ from engine.job.runsheet_readings import (
     with_reading,
 )
 from engine.job.runsheet_steps import Section, Step
-from engine.screen import clock, entries, session
+from engine.screen import clock, entries, rehearsal_view, session
 from engine.screen.sheets import sheet_of
 from engine.screen.style import escaped, escaped_lines
 from engine.steam.errors import Fault, InputError
@@ -47,6 +47,17 @@ SHEET, REHEARSAL = "Run sheet", "Rehearsal"
 
 
 def page() -> None:
+    """The sheet, or the rehearsal of it on a simulated rig."""
+    asked = REHEARSAL if rehearsal_view.asked() else SHEET
+    chosen = st.segmented_control("What to show", (SHEET, REHEARSAL), key="sheet or rehearsal", default=asked,
+                                  required=True, label_visibility="collapsed")
+    if chosen == REHEARSAL:
+        rehearsal_view.show()
+    else:
+        _whole_sheet()
+
+
+def _whole_sheet() -> None:
     """What it leads to, then the steps, the gauges, the readings, the paper."""
     st.html(_CSS)
     top = st.container(key="sheet answer", border=True)
