@@ -8,7 +8,7 @@ from pathlib import Path
 
 from engine.job.case import Case
 from engine.job.console import ANSWERED, OPEN, Console
-from engine.job.fields_modes import THROTTLING
+from engine.job.fields_modes import ELECTRIC
 from engine.job.intake import read
 from engine.job.paper import PAPERS, usual_paper
 from engine.job.record import reasons_against, record_html, record_zip
@@ -63,8 +63,9 @@ def record_command(case: Case, options: argparse.Namespace, console: Console) ->
 
 
 def reduced(case: Case, logs: tuple[Log, ...] = ()) -> Result | None:
-    """What the logs say, or the readings typed into the case; None where there is its single reading only."""
-    if case["mode"] != THROTTLING:
+    """What the logs say, or the readings typed into the case; None where there is its single reading only, and
+    with a heater, whose means are entered one by one."""
+    if case["mode"] == ELECTRIC:
         return None
     runs = tuple(map(run_of_log, logs)) or runs_typed(case)
     return reduce(case, runs) if runs else None

@@ -128,7 +128,7 @@ def reasons_against(case: Case, result: Result | None) -> tuple[Fault, ...]:
                             "a judgement of someone who knows the tapping",
                             "it is a part of the uncertainty, often the largest",
                             "state it with the instruments, 0 where it is knowingly nothing", "sampling"))
-    if (result is None or case["mode"] != THROTTLING) and case["question"] == EXPECTED:
+    if (result is None or case["mode"] == ELECTRIC) and case["question"] == EXPECTED:
         faults.append(Fault("question", "what must be seen", "", "a reading, or readings",
                             "an expectation is no test", "choose “I have a reading” on the Path page", "question"))
     if result is not None and not result.runs:
@@ -149,7 +149,7 @@ def facts_of(case: Case, result: Result | None, units: UnitSystem, logs: Sequenc
     """
     if faults := reasons_against(case, result):
         raise InputError(*faults)
-    if case["mode"] != THROTTLING:  # the means of such a test are entered one by one
+    if case["mode"] == ELECTRIC:  # the means of such a test are entered one by one
         result = None
     elif result is None:
         result = reduce(case, (reading_as_run(case),))

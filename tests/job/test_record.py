@@ -32,6 +32,7 @@ from engine.job.rows import Entry
 from engine.job.runs import run_of_log, runs_typed
 from engine.job.runsheet import tick
 from engine.job.runsheet_readings import with_reading
+from engine.job.uncertainty import forecast
 from engine.measurement.logbook_suspicion import Suspicion
 from engine.steam.errors import InputError
 from engine.steam.units import SI, US
@@ -230,18 +231,24 @@ def test_a_log_that_no_run_came_from_is_left_out(log):
     assert reopened(record_html(DEMO, None, SI, "A4", made=MADE, logs=[log])).logs == ()
 
 
-@pytest.mark.parametrize("case", [WET_LINE_READ, HEATED])
-def test_other_methods_have_their_own_figures(case):
-    case = case.with_(**STATED)
-    page = harmless(record_html(case, None, SI, "A4", made=MADE), TAGS)
-    assert f"Quality in the line {quality_text(assess(case).x)}" in page.text
-    balance = "drained water put back" if case is not HEATED and "separating" in case["mode"] else "P_lost"
-    assert balance in page.text
-
-
-def test_a_result_of_the_wrong_method_is_not_used(result):
-    """Sets of readings are reduced by the throttle alone; behind a separator they would say something else."""
+def test_behind_a_separator_sets_of_readings_give_the_quality_of_the_line():
     case = WET_LINE_READ.with_(**STATED)
+    for T in (112.2, 112.4, 112.3):
+        case = with_reading(case, run="1", T_exhaust=Entry(T, "°C"))
+    result = reduce(case, runs_typed(case))
+    page = harmless(record_html(case, result, SI, "A4", made=MADE), TAGS)
+    x, U = figures(result.budget)
+    assert f"Quality {x} ± {U}" in page.text and "drained water put back" in page.text
+    assert result.x == pytest.approx(assess(case).x, abs=1e-6)
+
+
+def test_with_a_heater_the_means_are_those_of_the_case(result):
+    case = HEATED.with_(**STATED)
+    page = harmless(record_html(case, None, SI, "A4", made=MADE), TAGS)
+    found = forecast(case)
+    assert f"Quality in the line {quality_text(assess(case).x)}" in page.text and "P_lost" in page.text
+    assert f"Quality {' ± '.join(figures(found.budget))}" in page.text and found.missing
+    assert "Not a result yet, because not stated" in page.text
     assert record_html(case, result, SI, "A4", made=MADE) == record_html(case, None, SI, "A4", made=MADE)
 
 

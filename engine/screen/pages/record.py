@@ -8,6 +8,7 @@ import streamlit as st
 
 from engine.job.case import Case
 from engine.job.cautions import SHORT
+from engine.job.fields_modes import ELECTRIC
 from engine.job.paper import PAPERS, usual_paper
 from engine.job.record import Facts, facts_of, headline, reasons_against, record_html, record_zip, summary
 from engine.job.result import Result
@@ -36,7 +37,8 @@ def _facts() -> tuple[Facts | None, Result | None]:
     """All that the record tells; where there is none yet, every reason in words."""
     case, units = session.case(), session.units()
     try:
-        result = logs.result() if logs.runs(case) else None
+        # the means of a test with a heater are entered one by one
+        result = logs.result() if case["mode"] != ELECTRIC and logs.runs(case) else None
         if faults := reasons_against(case, result):
             _refuse(faults)
             return None, None
