@@ -36,6 +36,12 @@ def app():
 
 
 @pytest.fixture(scope="module")
+def first():
+    """A first visit, only looked at."""
+    return opened()
+
+
+@pytest.fixture(scope="module")
 def shared():
     return opened()
 
@@ -99,43 +105,43 @@ def everything(app):
 # ---- first visit
 
 
-def test_a_first_visit_shows_an_invented_case_and_says_so(app):
-    assert "This is an invented demo case." in captions(app)
-    assert bar(app) == ("**Factory main at 10 bar** · line 9 bar gauge · exhaust 1.021 bar absolute · "
+def test_a_first_visit_shows_an_invented_case_and_says_so(first):
+    assert "This is an invented demo case." in captions(first)
+    assert bar(first) == ("**Factory main at 10 bar** · line 9 bar gauge · exhaust 1.021 bar absolute · "
                         "reading 121.1 °C · **● reads 0.9720**")
-    assert headline(app) == "● Quality in the line 0.9720, wetness 2.80 %."
-    reasons = app.markdown[2].value
+    assert headline(first) == "● Quality in the line 0.9720, wetness 2.80 %."
+    reasons = first.markdown[2].value
     assert reasons == ("The exhaust is 20.9 K superheated, 15.9 K above the least readable superheat of 5 K. "
                        "Between these pressures the least readable quality is 0.9558.")
-    assert "Heat loss 2.0 kJ/kg of sample, by conductance, +0.10 %pt." in captions(app)
+    assert "Heat loss 2.0 kJ/kg of sample, by conductance, +0.10 %pt." in captions(first)
 
 
-def test_the_states_and_velocities_are_on_screen(app):
-    states = table(app, "Line")
+def test_the_states_and_velocities_are_on_screen(first):
+    states = table(first, "Line")
     assert list(states.columns) == ["State", "p, bar abs", "T, °C", "x", "h, kJ/kg", "s, kJ/(kg K)", "v, m³/kg",
                                     "c, m/s"]
     assert list(states["State"]) == ["Line", "Dries out", "Exhaust", "Constant bore, exhaust"]
     assert list(states.loc[0])[:4] == ["Line", "9.9297", "179.58", "0.9720"]
     assert (states.at[2, "x"], states.at[1, "c, m/s"]) == ("superheated", "–")
-    velocities = dict(table(app, "Line velocity").to_numpy())
+    velocities = dict(table(first, "Line velocity").to_numpy())
     assert velocities["Exhaust velocity"] == "28.0 m/s"
     assert velocities["… in quality"] == "0.019 %pt"
 
 
-def test_three_diagrams_and_the_velocities_are_drawn(app):
-    drawn = diagrams(app)
+def test_three_diagrams_and_the_velocities_are_drawn(first):
+    drawn = diagrams(first)
     assert list(drawn) == ["Ts", "hs", "Ph", "velocity"]
     assert drawn["Ts"]["label"] == "T–s diagram. Quality in the line 0.9720, wetness 2.80 %."
     assert all(trace["x"] for trace in drawn["Ph"]["traces"] if trace["name"] in ("constant enthalpy", "states"))
 
 
-def test_cautions_have_their_place(app):
-    assert "never permission to open a valve" in captions(app)
-    assert "Live steam and its condensate scald at once" in everything(app)
+def test_cautions_have_their_place(first):
+    assert "never permission to open a valve" in captions(first)
+    assert "Live steam and its condensate scald at once" in everything(first)
 
 
-def test_nothing_on_the_page_says_nan_or_none(app):
-    assert not {"nan", "None", "none", "inf"} & set(everything(app).replace(".", " ").replace(",", " ").split())
+def test_nothing_on_the_page_says_nan_or_none(first):
+    assert not {"nan", "None", "none", "inf"} & set(everything(first).replace(".", " ").replace(",", " ").split())
 
 
 # ---- inputs
