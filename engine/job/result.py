@@ -7,8 +7,10 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
+from engine.job.assessment import assess
 from engine.job.case import GAUGE, Case, Resolved, resolve
-from engine.job.corrections import balance_without, switched_off
+from engine.job.corrections import balance_without, case_of, switched_off
+from engine.job.fields import FIELDS
 from engine.job.fields_modes import ELECTRIC
 from engine.job.modes import check_mode
 from engine.job.reduction import RunResult, reduce_run
@@ -61,11 +63,14 @@ WITH_A_HEATER = ("With a heater the readings are not reduced from a log: enter t
                  "sample flow and temperature on the Path page.")
 
 
-def reduce(case: Case, runs: Sequence[Run], *, progress: Callable[[float], None] | None = None) -> Result:
+def reduce(case: Case, runs: Sequence[Run], *, known: Result | None = None,
+           progress: Callable[[float], None] | None = None) -> Result:
     """Reduce runs of readings by a case.
 
-    ``progress`` is called with the fraction done. Raises InputError, with every fault at once, where
-    an entry of the case cannot be used, or the case and the readings do not go together.
+    ``known`` is an earlier result: a run in it is not worked out again where only the doubts, the limit
+    or words have changed since. ``progress`` is called with the fraction done. Raises InputError, with
+    every fault at once, where an entry of the case cannot be used, or the case and the readings do not
+    go together.
 
     >>> from engine.job.demo import DEMO
     >>> from engine.job.fields import FIELDS
@@ -83,13 +88,33 @@ def reduce(case: Case, runs: Sequence[Run], *, progress: Callable[[float], None]
     if case["mode"] == ELECTRIC:
         return Result(case, si, (), (WITH_A_HEATER,))
     balance_without(case, si, switched_off(case))  # refuses a heat-loss method that lacks an entry, before any work
+    earlier = known.runs if known is not None and _readings_of(known.case) == _readings_of(case) else ()
     results = []
     for number, run in enumerate(runs):
         def part(done: float, before: int = number) -> None:
             if progress:
                 progress((before + done) / len(runs))
-        results.append(reduce_run(case, si, run, progress=part))
+        same = next((r for r in earlier if r.run.rows is run.rows and r.run.name == run.name), None)
+        results.append(_with_doubts_of(case, si, same) if same else reduce_run(case, si, run, progress=part))
     return combine(case, si, tuple(results))
+
+
+# groups of entries, and entries, that no single reading rests on
+_ASIDE = ("instruments", "uncertainty", "decision", "identity", "reach", "run sheet")
+_ASIDE_TOO = ("x_limit",)
+
+
+def _readings_of(case: Case) -> Case:
+    """The case without all that changes nothing in a run: how sure it is, what is decided, words."""
+    return case.with_(**{name: field.blank for name, field in FIELDS.items()
+                         if field.group in _ASIDE or name in _ASIDE_TOO})
+
+
+def _with_doubts_of(case: Case, si: Resolved, run: RunResult) -> RunResult:
+    """A run worked out before, with its means as the reading of this case."""
+    if run.corrected is None:
+        return run
+    return replace(run, assessment=assess(case_of(case, si, run.corrected, switched_off(case))))
 
 
 class MeanOfRuns:

@@ -5,6 +5,8 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass
 
+import numpy as np
+
 from engine.job.answer import percent_points
 from engine.job.case import Case
 from engine.job.fields_instruments import AT_LEAST
@@ -273,15 +275,20 @@ class Flagged:
 
 def flagged(run: RunResult, units: UnitSystem, most: int = 50) -> tuple[tuple[Flagged, ...], int]:
     """Readings flagged by either test, the farthest first, and how many there are in all."""
+    names = list(run.outliers)
+    marked = [np.flatnonzero(tests.by_tau | tests.by_grubbs) for tests in run.outliers.values()]
+    channel = np.repeat(np.arange(len(names)), [places.size for places in marked])
+    place = np.concatenate(marked) if marked else np.array([], int)
+    distance = np.array([run.outliers[names[c]].distance[k] for c, k in zip(channel, place, strict=True)])
+    where = np.flatnonzero(run.window)
     found = []
-    for name, tests in run.outliers.items():
-        for k in (tests.by_tau | tests.by_grubbs).nonzero()[0]:
-            by = "Grubbs and tau" if tests.by_grubbs[k] and tests.by_tau[k] else (
-                "Grubbs" if tests.by_grubbs[k] else "tau")
-            value = units.text(float(run.run.channels[name][run.window][k]), _kind(name))
-            found.append(Flagged(int(run.run.rows[run.window][k]), name, value, float(tests.distance[k]), by))
-    found.sort(key=lambda f: -f.distance)
-    return tuple(found[:most]), len(found)
+    for i in np.argsort(-distance, kind="stable")[:most]:
+        name, k = names[channel[i]], place[i]
+        tests, row = run.outliers[name], where[k]
+        by = " and ".join(word for word, marks in (("Grubbs", tests.by_grubbs), ("tau", tests.by_tau)) if marks[k])
+        found.append(Flagged(int(run.run.rows[row]), name, units.text(float(run.run.channels[name][row]), _kind(name)),
+                             float(distance[i]), by))
+    return tuple(found), place.size
 
 
 def outlier_rows(run: RunResult, units: UnitSystem) -> list[dict[str, str]]:

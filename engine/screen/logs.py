@@ -145,7 +145,8 @@ def result() -> Result:
             a is not b for a, b in zip(kept[1], logged, strict=True)):
         rows = sum(map(len, logged))
         bar = st.progress(0.0, "Reducing") if rows > 100_000 else None
-        found = reduce(case, runs(case), progress=_now_and_then(bar.progress) if bar else None)
+        found = reduce(case, runs(case), known=kept[2] if kept else None,
+                       progress=_now_and_then(bar.progress) if bar else None)
         if bar:
             bar.empty()
         kept = st.session_state["reduced"] = (basis, logged, found)

@@ -2,9 +2,13 @@
 
 from engine.job.case import Case
 from engine.job.demo import FACTORY_MAIN
+from engine.job.fields import FIELDS
 from engine.job.fields_instruments import HALF_WIDTH, LIMIT, SHOWS_GAUGE
 from engine.job.fields_path import BY_CONDUCTANCE, BY_KG
+from engine.job.fields_rig import MERCURY
+from engine.job.result import reduce
 from engine.job.rows import Entry
+from engine.job.runs import runs_typed
 
 _STATED = {
     "exhaust_gauge_kind": LIMIT, "exhaust_gauge_U": Entry(0.5, "kPa"), "exhaust_gauge_shows": SHOWS_GAUGE,
@@ -46,3 +50,23 @@ HIGH_SITE = Case({
     "line_gauge_resolution": Entry(0.2, "bar"), "heat_loss_tolerance": Entry(50.0, "%"),
     "thermometer_kind": "IEC 60584-1", "thermometer_grade": "T1",
 })
+
+# every correction there is
+FULL = FACTORY.with_(
+    line_gauge_correction=Entry(-0.05, "bar"), exhaust_gauge_correction=Entry(0.2, "kPa"),
+    barometer_correction=Entry(0.3, "kPa"), thermometer_correction=Entry(-0.2, "K"), thermometer=MERCURY,
+    exposed=Entry(40.0, "K"), T_stem=Entry(40.0, "°C"))
+
+
+def sets(temperatures, run="", **cells):
+    """Typed readings, one a temperature."""
+    common = {"run": run, "p_line": Entry(9.0, "bar", "gauge"), "p_exhaust": Entry(1.3, "kPa", "gauge"), **cells}
+    return tuple(FIELDS["readings"].row(T_exhaust=Entry(T, "°C"), **common) for T in temperatures)
+
+
+def typed(case, *tables):
+    case = case.with_(readings=sum(tables, ()))
+    return reduce(case, runs_typed(case))
+
+
+TEN = (121.0, 121.3, 121.1, 120.9, 121.2, 121.1, 121.0, 121.2, 121.1, 121.1)

@@ -4,7 +4,7 @@ from dataclasses import replace
 
 import numpy as np
 import pytest
-from scenarios import BOILER, FACTORY, GEOTHERMAL, HIGH_SITE
+from scenarios import BOILER, FACTORY, FULL, GEOTHERMAL, HIGH_SITE, TEN, sets, typed
 from simulated import channels_of, instrument_errors, log_of, noise
 
 from engine.calorimeter import MassBasis, Status, exhaust_temperature
@@ -14,7 +14,6 @@ from engine.job.case import resolve
 from engine.job.fields import FIELDS
 from engine.job.fields_modes import ELECTRIC, NOT_STATED, SEPARATING
 from engine.job.fields_path import BY_CONDUCTANCE, BY_TWO_FLOWS, UNDECIDED
-from engine.job.fields_rig import MERCURY
 from engine.job.reduction import reduce_run
 from engine.job.result import reduce
 from engine.job.rows import Entry
@@ -30,20 +29,6 @@ MESSY = {"warm_up": 25.0, "lag": 20.0, "swing": 4e3, "noise_T": 0.3, "noise_p": 
 
 def row(table, **cells):
     return (FIELDS[table].row(**cells),)
-
-
-def sets(temperatures, run="", **cells):
-    """Typed readings, one a temperature."""
-    common = {"run": run, "p_line": Entry(9.0, "bar", "gauge"), "p_exhaust": Entry(1.3, "kPa", "gauge"), **cells}
-    return tuple(FIELDS["readings"].row(T_exhaust=Entry(T, "°C"), **common) for T in temperatures)
-
-
-def typed(case, *tables):
-    case = case.with_(readings=sum(tables, ()))
-    return reduce(case, runs_typed(case))
-
-
-TEN = (121.0, 121.3, 121.1, 120.9, 121.2, 121.1, 121.0, 121.2, 121.1, 121.1)
 
 
 # ---- the truth, given back
@@ -257,12 +242,6 @@ def test_leaving_everything_out_is_no_result():
 # ---- corrections
 
 
-FULL = FACTORY.with_(
-    line_gauge_correction=Entry(-0.05, "bar"), exhaust_gauge_correction=Entry(0.2, "kPa"),
-    barometer_correction=Entry(0.3, "kPa"), thermometer_correction=Entry(-0.2, "K"), thermometer=MERCURY,
-    exposed=Entry(40.0, "K"), T_stem=Entry(40.0, "°C"))
-
-
 def test_corrections_one_by_one_each_with_its_size():
     found = {c.name: c for c in typed(FULL, sets(TEN)).runs[0].corrections}
     assert list(found) == ["line gauge certificate", "exhaust gauge certificate", "barometer certificate",
@@ -450,6 +429,18 @@ def test_sampling_is_the_largest_line_and_can_be_left_out():
     assert result.instruments.u < 0.2 * result.budget.u
     assert result.verdicts.with_sampling.outcome == "undecided"
     assert result.verdicts.without_sampling.outcome == "accept"
+
+
+def test_a_run_is_not_worked_out_again_for_its_doubts():
+    run = run_of_log(log_of(FACTORY, 0.972, **MESSY))
+    first = reduce(FACTORY, [run])
+    better = FACTORY.with_(thermometer_grade="AA", sampling=Entry(0.2, "%pt"), x_limit=Entry(0.9, "1"), title="other")
+    again, anew = reduce(better, [run], known=first), reduce(better, [run])
+    assert again.runs[0].x is first.runs[0].x and anew.runs[0].x is not first.runs[0].x
+    assert (again.x, again.budget.U, again.verdicts) == (anew.x, anew.budget.U, anew.verdicts)
+    assert again.runs[0].assessment.case["thermometer_grade"] == "AA"
+    warmer = reduce(better.with_(conductance=Entry(0.3, "W/K")), [run], known=again)
+    assert warmer.x > again.x and warmer.runs[0].x is not again.runs[0].x
 
 
 # ---- behind a separator, and with a heater
