@@ -107,18 +107,26 @@ def confirm(name: str) -> None:
     session.change(remembered(session.case(), name, log.mapping))
 
 
+def read_in(name: str) -> Held:
+    """Read a log that is confirmed and not read yet, with a progress bar where it is long."""
+    one = held()[name]
+    if not one.confirmed or one.log is not None or one.refused or one.mapping.questions:
+        return one
+    bar = st.progress(0.0, f"Reading {name}") if len(one.data) > 1_000_000 else None
+    try:
+        log = read_log(one.file(), one.mapping, progress=_now_and_then(bar.progress) if bar else None)
+        held()[name] = replace(one, log=replace(log, name=name))
+    except InputError as error:
+        held()[name] = replace(one, confirmed=False, refused=str(error))
+    if bar:
+        bar.empty()
+    return held()[name]
+
+
 def read_all() -> None:
-    """Read every log that is confirmed and not read yet, with a progress bar."""
-    for name, one in held().items():
-        if one.confirmed and one.log is None and not one.refused and not one.mapping.questions:
-            bar = st.progress(0.0, f"Reading {name}") if len(one.data) > 1_000_000 else None
-            try:
-                log = read_log(one.file(), one.mapping, progress=_now_and_then(bar.progress) if bar else None)
-                held()[name] = replace(one, log=replace(log, name=name))
-            except InputError as error:
-                held()[name] = replace(one, confirmed=False, refused=str(error))
-            if bar:
-                bar.empty()
+    """The same for every log of the session."""
+    for name in list(held()):
+        read_in(name)
 
 
 def runs(case: Case) -> tuple[Run, ...]:

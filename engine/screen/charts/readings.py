@@ -14,6 +14,7 @@ from engine.steam import saturation_temperature
 from engine.steam.units import UnitSystem
 
 MOST = 1600  # points drawn of a channel; more than a screen is wide
+MARKED = 60  # readings marked in a channel
 _GAP = 0.05  # between panels, of the height
 PANELS = ("T_exhaust", "p_line", "p_exhaust")
 
@@ -154,9 +155,12 @@ def _apart(panel: Panel, axis: str, x: np.ndarray, run: RunResult) -> dict[str, 
     at, marks, words = [], [], []
     tests = run.outliers.get(panel.name)
     places = np.flatnonzero(run.window)
-    flagged = places[tests.by_grubbs | tests.by_tau] if tests is not None else np.array([], int)
+    flagged = np.array([], int)
+    if tests is not None:
+        marked = np.flatnonzero(tests.by_grubbs | tests.by_tau)
+        flagged = places[marked[np.argsort(-tests.distance[marked])[:MARKED]]]  # the farthest
     gone = [k for k in np.flatnonzero(np.isin(run.run.rows, list(run.removed))) if run.removed[int(run.run.rows[k])]]
-    for k in sorted({*flagged[:200].tolist(), *map(int, gone)}):
+    for k in sorted({*flagged.tolist(), *map(int, gone)}):
         row, out = int(run.run.rows[k]), k in gone
         at.append(k)
         marks.append("circle-open" if out else "x-thin-open")

@@ -40,8 +40,6 @@ def page() -> None:
     """The result first, then what it was made from, step by step."""
     st.html(_CSS)
     top = st.container(key="readings_answer", border=True)
-    with top:
-        logs.read_all()
     _intake()
     found = _result(top)
     if found is None:
@@ -115,8 +113,8 @@ def _intake() -> None:
                 typed.sets()
             except InputError as error:
                 st.caption(escaped_lines(str(error)))
-    for one in list(logs.held().values()):
-        _one_log(one)
+    for name in list(logs.held()):
+        _one_log(name)
 
 
 def _upload() -> None:
@@ -137,9 +135,10 @@ def _demo_log() -> None:
         st.session_state["notice"] = ("error", str(error))
 
 
-def _one_log(one: logs.Held) -> None:
+def _one_log(name: str) -> None:
     """One log: what it is, its columns until they are confirmed, then what was refused and what looks wrong."""
-    with st.container(border=True, key=f"log {one.name}"):
+    with st.container(border=True, key=f"log {name}"):
+        one = logs.read_in(name)
         words, button = st.columns([6, 1], vertical_alignment="center")
         words.markdown(f"**{escaped(one.name)}** · {_state(one)}")
         button.button("Remove", key=f"drop {one.name}", on_click=logs.drop, args=(one.name,), width="stretch",
