@@ -5,11 +5,18 @@ from __future__ import annotations
 from engine.calorimeter import MassBasis
 from engine.job.case import Case
 from engine.job.demo import DEMO
+from engine.job.fields_instruments import HALF_WIDTH, LIMIT, SHOWS_GAUGE
 from engine.job.fields_modes import ELECTRIC, SEPARATING
 from engine.job.fields_path import BY_ALTITUDE, BY_CONDUCTANCE, BY_KG, EXPECTED, NONE
 from engine.job.rows import Entry
 
 _NOTE = "An invented example."
+# how sure the rest is, where the instruments are described
+_STATED = {
+    "exhaust_gauge_kind": LIMIT, "exhaust_gauge_U": Entry(0.5, "kPa"), "exhaust_gauge_shows": SHOWS_GAUGE,
+    "barometer_kind": LIMIT, "barometer_U": Entry(0.2, "kPa"), "flow_meter_kind": LIMIT,
+    "flow_meter_U": Entry(5.0, "%"), "heat_loss_tolerance": Entry(40.0, "%"), "sampling_kind": HALF_WIDTH,
+}
 
 BOILER_OUTLET = Case({
     "title": "Boiler outlet at 40 bar", "note": f"{_NOTE} A guarantee of 0.5 % wetness at most, to be tested.",
@@ -21,6 +28,8 @@ BOILER_OUTLET = Case({
     "exhaust_bore": Entry(26.6, "mm"), "recovery": Entry(0.7, "1"),
     "heat_loss_method": BY_CONDUCTANCE, "conductance": Entry(0.20, "W/K"), "T_ambient": Entry(32.0, "°C"),
     "x_limit": Entry(0.995, "1"), "U_thermometer": Entry(0.4, "K"),
+    "line_gauge_kind": "transmitter", "line_gauge_grade": "0.1", "line_gauge_high": Entry(60.0, "bar"),
+    "thermometer_kind": "IEC 60751", "thermometer_grade": "AA", "sampling": Entry(0.2, "%pt"), **_STATED,
 })
 
 HEATING_STEAM = Case({
@@ -45,6 +54,8 @@ HIGH_SITE = Case({
     "sample_flow": Entry(24.0, "kg/h"), "line_bore": Entry(15.7, "mm"), "exhaust_bore": Entry(26.6, "mm"),
     "heat_loss_method": BY_KG, "heat_loss": Entry(2.9, "kJ/kg"), "T_ambient": Entry(15.0, "°C"),
     "x_limit": Entry(0.963, "1"), "U_thermometer": Entry(0.6, "K"),
+    "line_gauge_kind": "EN 837-1", "line_gauge_grade": "1.6", "line_gauge_high": Entry(16.0, "bar"),
+    "thermometer_kind": "IEC 60584-1", "thermometer_grade": "T1", "sampling": Entry(0.4, "%pt"), **_STATED,
 })
 
 REDUCING_VALVE = Case({
