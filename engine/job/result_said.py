@@ -199,10 +199,22 @@ def unsettled_lines(run: RunResult, units: UnitSystem, most: int = 6) -> tuple[s
     stretches = [(begin, end, interval) for interval in search.unsettled
                  for begin, end in (_alone(interval, search.settled),) if begin < end]
     for begin, end, interval in stretches[:most]:
-        why = "; ".join(reason_text(r, units) for r in search.why(interval.windows)[:3])
+        why = "; ".join(reason_text(r, units) for r in _worst(search.why(interval.windows)))
         lines.append(f"{begin / 60:.1f} to {end / 60:.1f} min: {why}.")
     left = len(stretches) - most
     return (*lines, f"{left} more stretches like these.") if left > 0 else tuple(lines)
+
+
+def _worst(reasons: Sequence[Reason]) -> list[Reason]:
+    """Of each channel the test that fails by most."""
+    def excess(reason: Reason) -> float:
+        return reason.value / reason.limit if reason.limit and reason.test not in _FAILED else np.inf
+
+    found: dict[str, Reason] = {}
+    for reason in reasons:
+        if reason.channel not in found or excess(reason) > excess(found[reason.channel]):
+            found[reason.channel] = reason
+    return list(found.values())
 
 
 def _alone(interval: Interval, settled: Sequence[Interval]) -> tuple[float, float]:
@@ -324,7 +336,7 @@ def drift_text(run: RunResult) -> str:
     told = f"Over the window the quality moves by {percent_points(d.slope * d.duration)}"
     if d.p_value < 0.05:
         return told + ", more than chance explains."
-    return told + ", no more than chance explains."
+    return told + "; the scatter does not show that this is more than chance."
 
 
 def check_lines(check: Check) -> tuple[str, ...]:

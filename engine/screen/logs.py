@@ -100,11 +100,16 @@ def change_mapping(name: str, mapping: Mapping) -> None:
 
 
 def confirm(name: str) -> None:
-    """Take the columns as they are now, and remember them in the case."""
+    """Take the columns as they are now, and remember them in the case; logs of the same layout follow."""
     log = held()[name]
     held()[name] = replace(log, confirmed=True, log=None, refused="")
     st.session_state["intake open"] = False  # what it was opened for is done
     session.change(remembered(session.case(), name, log.mapping))
+    for other, one in held().items():
+        if not one.confirmed and one.layout is not None and not one.layout.remembered and not one.refused:
+            layout = layout_of(session.case(), one.file())
+            if layout.remembered:
+                held()[other] = replace(one, layout=layout, mapping=layout.mapping, confirmed=True)
 
 
 def read_in(name: str) -> Held:

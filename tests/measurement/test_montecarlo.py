@@ -201,3 +201,17 @@ def test_coefficients_between_rectangular_causes_are_refused():
     inputs = [Input(n, 0.0, (rectangular("x", 1.0),)) for n in "ab"]
     with pytest.raises(InputError, match="correlated cause 'a: x': got rectangular, needs a normal distribution"):
         monte_carlo(lambda a, b: a + b, inputs, correlations={("a", "b"): 0.5}, draws=2000)
+
+
+def test_long_tails_are_not_taken_for_a_bend():
+    """One degree of freedom: mean and third moment of the draws are those of the farthest few."""
+    inputs = [Input("a", 1.0, (normal("gauge", 1.0), Component("runs", 0.3, "t", 1.0)))]
+    for seed in range(4):
+        drawn = monte_carlo(lambda a: a, inputs, draws=100_000, seed=seed)
+        codes = {r.code for r in compare(uncertainty_budget(lambda a: a, inputs), drawn).reasons}
+        assert "tails" in codes and "curved" not in codes
+    def bends(a):
+        return np.exp(np.minimum(a, 10.0))
+
+    drawn = monte_carlo(bends, inputs, draws=100_000)
+    assert "curved" in {r.code for r in compare(uncertainty_budget(bends, inputs), drawn).reasons}

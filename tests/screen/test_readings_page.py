@@ -129,6 +129,13 @@ def test_the_case_remembers_the_columns_and_the_log_stays_with_the_session():
     assert "Mean of 2 runs" not in told(app) and answer(app).startswith("### ● Quality 0\\.97")
 
 
+def test_logs_of_one_layout_are_confirmed_together():
+    app = bring(opened(), ("a.csv", a_log()), ("b.csv", a_log(minutes=50.0)), ("c.csv", b"t [s],T2 [K]\n0,390\n"))
+    app = confirm(app, "a.csv")
+    said = told(app)
+    assert "241 of 241 rows read" in said and "301 of 301 rows read" in said and "columns to be confirmed" in said
+
+
 def test_open_questions_are_asked_before_anything_is_read():
     rows = [f"{10 * k},{9.0 + 0.001 * (k % 3)},{121.1 + 0.01 * (k % 5):.2f}" for k in range(130)]
     app = bring(opened(), ("mute.csv", ("t [s],line pressure,T2\n" + "\n".join(rows)).encode()))
