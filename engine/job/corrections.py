@@ -15,7 +15,7 @@ from engine.calorimeter import StemLiquid, stem_error
 from engine.job.balance import Balance, balance_of
 from engine.job.case import GAUGE, Case, Resolved
 from engine.job.fields_modes import SEPARATING
-from engine.job.fields_path import BY_CONDUCTANCE, BY_NORMAL, BY_TWO_FLOWS, NONE, READING, UNDECIDED
+from engine.job.fields_path import BY_CONDUCTANCE, BY_NORMAL, BY_READING, BY_TWO_FLOWS, NONE, READING, UNDECIDED
 from engine.job.fields_readings import (
     BAROMETER,
     BAROMETER_CERTIFICATE,
@@ -209,12 +209,14 @@ def case_of(case: Case, si: Resolved, true: Corrected, off) -> Case:
     """The case with corrected readings in place of its own, for everything that starts from a case."""
     bar, pascal = "bar", "pressure"
     changes: dict[str, object] = {
-        "question": READING, "leg_height": Entry(0.0, "m"), "barometer_source": "reading",
+        "question": READING, "leg_height": Entry(0.0, "m"),
         "p_line": Entry(from_si(float(true.p_line), bar, pascal), bar, "absolute"),
         "p_exhaust": Entry(from_si(float(true.p_exhaust), bar, pascal), bar, "absolute"),
         "T_exhaust": Entry(from_si(float(true.T_exhaust), "°C", "temperature"), "°C"),
-        "p_barometer": Entry(float(true.p_barometer) / 1e3, "kPa", "absolute"),
     }
+    if not np.isclose(float(true.p_barometer), si.p_barometer, rtol=1e-12):  # else it stays as given, by altitude too
+        changes |= {"barometer_source": BY_READING,
+                    "p_barometer": Entry(float(true.p_barometer) / 1e3, "kPa", "absolute")}
     if true.sample_flow is not None:
         changes["sample_flow"] = Entry(from_si(float(true.sample_flow), "kg/h", "mass flow"), "kg/h")
     if true.T_ambient is not None:

@@ -12,6 +12,7 @@ from engine.job.case import GAUGE, Case, Resolved, resolve
 from engine.job.corrections import balance_without, case_of, switched_off
 from engine.job.fields import FIELDS
 from engine.job.fields_modes import ELECTRIC
+from engine.job.instruments import rests_on_barometer
 from engine.job.modes import check_mode
 from engine.job.reduction import RunResult, reduce_run
 from engine.job.repeatability import Repeatability, repeatability
@@ -74,6 +75,7 @@ def reduce(case: Case, runs: Sequence[Run], *, known: Result | None = None,
 
     >>> from engine.job.demo import DEMO
     >>> from engine.job.fields import FIELDS
+from engine.job.instruments import rests_on_barometer
     >>> from engine.job.rows import Entry
     >>> from engine.job.runs import runs_typed
     >>> sets = [FIELDS["readings"].row(p_line=Entry(9.0, "bar", "gauge"), T_exhaust=Entry(T, "°C"))
@@ -168,11 +170,11 @@ def _without_reason(case: Case, read: list[RunResult]) -> tuple[str, ...]:
 def _measurement(case: Case, si: Resolved, read: list[RunResult], together: Repeatability | None) -> Measurement:
     parts = []
     for run in read:
-        true, shown = run.corrected, run.shown
-        basis = {name: run.run.basis.get(name, shown.basis[name]) for name in ("p_line", "p_exhaust")}
+        true = run.corrected
+        on_barometer = {name: rests_on_barometer(case, name, run.run.basis) for name in ("p_line", "p_exhaust")}
         reading = Reading(float(true.p_line), float(true.p_exhaust), float(true.T_exhaust), true.sample_flow,
-                          true.T_ambient, {"p_line": float(shown.p_line), "p_exhaust": float(shown.p_exhaust)},
-                          {name: b == GAUGE for name, b in basis.items()})
+                          true.T_ambient, {name: _on_scale(run, name, on) for name, on in on_barometer.items()},
+                          on_barometer)
         scatter = [together.component] if together else [c for c in [run.scatter and run.scatter.component] if c]
         parts.append(measurement_of(run.assessment, reading, scatter))
     if len(parts) == 1:
@@ -183,6 +185,12 @@ def _measurement(case: Case, si: Resolved, read: list[RunResult], together: Repe
     return Measurement(MeanOfRuns([p.model for p in parts], apart), inputs, parts[0].on_result, parts[0].coverage,
                        tuple(dict.fromkeys(m for p in parts for m in p.missing)),
                        tuple(dict.fromkeys(c for p in parts for c in p.cautions)))
+
+
+def _on_scale(run: RunResult, name: str, on_barometer: bool) -> float:
+    """What the gauge of a pressure showed [Pa]; one typed on the other basis is turned round."""
+    shown, gauge = float(getattr(run.shown, name)), run.shown.basis[name] == GAUGE
+    return shown + (gauge - on_barometer) * float(run.shown.p_barometer)
 
 
 def _value(part: Measurement, name: str) -> float:

@@ -13,13 +13,13 @@ from engine.job.balance import balance_of
 from engine.job.case import resolve
 from engine.job.fields import FIELDS
 from engine.job.fields_modes import ELECTRIC, NOT_STATED, SEPARATING
-from engine.job.fields_path import BY_CONDUCTANCE, BY_TWO_FLOWS, UNDECIDED
+from engine.job.fields_path import BY_ALTITUDE, BY_CONDUCTANCE, BY_TWO_FLOWS, UNDECIDED
 from engine.job.reduction import reduce_run
 from engine.job.result import reduce
 from engine.job.rows import Entry
 from engine.job.runs import recalled, remembered, run_of_log, runs_typed
 from engine.job.terms import two_flow_conductance
-from engine.job.uncertainty import READINGS, check, prepare, reading_of
+from engine.job.uncertainty import READINGS, check, forecast, prepare, reading_of
 from engine.measurement import SAMPLING, effective_number, type_a
 from engine.measurement.logbook import propose_mapping, read_log
 from engine.steam.errors import InputError
@@ -441,6 +441,24 @@ def test_a_run_is_not_worked_out_again_for_its_doubts():
     assert again.runs[0].assessment.case["thermometer_grade"] == "AA"
     warmer = reduce(better.with_(conductance=Entry(0.3, "W/K")), [run], known=again)
     assert warmer.x > again.x and warmer.runs[0].x is not again.runs[0].x
+
+
+def test_a_barometer_by_altitude_keeps_its_weather():
+    case = FACTORY.with_(barometer_source=BY_ALTITUDE, altitude=Entry(40.0, "m"), barometer_kind=NOT_STATED)
+    result = typed(case, sets(TEN))
+    assert result.final and {t.cause for t in result.terms if t.group == "barometer"} == {"weather"}
+    read = typed(case, sets(TEN, p_barometer=Entry(100.8, "kPa", "absolute")))
+    assert read.missing == ("the uncertainty of the barometer",)  # it was read after all, by something not stated
+
+
+def test_a_pressure_from_the_case_is_doubted_as_its_gauge_shows_it():
+    """Typed absolute, read above the atmosphere: the barometer's error is shared, and the scale is the gauge's."""
+    case = FACTORY.with_(exhaust_gauge_kind="EN 837-1", exhaust_gauge_grade="1", exhaust_gauge_high=Entry(0.1, "bar"))
+    cells = {"p_exhaust": None}
+    result = typed(case, sets(TEN, **cells))
+    barometer = next(r for r in result.budget.rows if r.group == "barometer")
+    assert barometer.quantities == ("p_line", "p_exhaust")
+    assert pytest.approx(forecast(case).instruments.U, rel=0.05) == result.instruments.U
 
 
 # ---- behind a separator, and with a heater
