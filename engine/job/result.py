@@ -75,7 +75,6 @@ def reduce(case: Case, runs: Sequence[Run], *, known: Result | None = None,
 
     >>> from engine.job.demo import DEMO
     >>> from engine.job.fields import FIELDS
-from engine.job.instruments import rests_on_barometer
     >>> from engine.job.rows import Entry
     >>> from engine.job.runs import runs_typed
     >>> sets = [FIELDS["readings"].row(p_line=Entry(9.0, "bar", "gauge"), T_exhaust=Entry(T, "°C"))
