@@ -5,9 +5,9 @@ from __future__ import annotations
 from collections.abc import Callable
 from typing import NamedTuple
 
-from engine.job.methods_said import power
-from engine.job.rig_effects import Fact, told
-from engine.job.rig_tables import points
+from engine.job.assessment.methods_said import power
+from engine.job.rig.effects import Fact, told
+from engine.job.rig.tables import points
 from engine.steam.units import UnitSystem, from_si
 
 _BAROMETER = {"SI": "kPa", "US": "inHg"}

@@ -8,8 +8,8 @@ from typing import NamedTuple
 
 import streamlit as st
 
-from engine.job.fields import FIELDS
-from engine.job.rows import Entry
+from engine.job.case.fields import FIELDS
+from engine.job.case.rows import Entry
 from engine.screen import session
 
 BASES = ("gauge", "absolute")

@@ -4,8 +4,8 @@ from __future__ import annotations
 
 import streamlit as st
 
-from engine.job.fields_instruments import CERTIFICATE, LIMIT
-from engine.job.fields_modes import NOT_STATED
+from engine.job.case.fields_instruments import CERTIFICATE, LIMIT
+from engine.job.case.fields_modes import NOT_STATED
 from engine.screen import entries, methods, session
 
 _WORDS = {NOT_STATED: "Not stated", LIMIT: "± limit", CERTIFICATE: "Certificate"}

@@ -7,7 +7,7 @@ from dataclasses import replace
 
 import streamlit as st
 
-from engine.job.intake import assigned
+from engine.job.result.intake import assigned
 from engine.measurement.logbook_mapping import Mapping
 from engine.measurement.logbook_words import BASES, CHANNELS, PRESSURES, recognise, units_of
 from engine.screen import logs, session

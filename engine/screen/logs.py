@@ -13,10 +13,10 @@ from io import BytesIO
 import streamlit as st
 
 from engine.job.case import Case
-from engine.job.fields import FIELDS
-from engine.job.intake import Layout, layout_of
+from engine.job.case.fields import FIELDS
 from engine.job.result import Result, reduce
-from engine.job.runs import Run, remembered, run_of_log, runs_typed
+from engine.job.result.intake import Layout, layout_of
+from engine.job.result.runs import Run, remembered, run_of_log, runs_typed
 from engine.job.uncertainty import Check, check
 from engine.measurement.logbook import Log, read_log
 from engine.measurement.logbook_mapping import Mapping

@@ -5,9 +5,9 @@ from __future__ import annotations
 import streamlit as st
 
 from engine.calorimeter import MassBasis
-from engine.job.fields_modes import BY_MASS, BY_VOLUME, ELECTRIC, NOT_STATED, SEPARATING
-from engine.job.fields_path import EXPECTED
-from engine.job.methods_said import METHODS
+from engine.job.assessment.methods_said import METHODS
+from engine.job.case.fields_modes import BY_MASS, BY_VOLUME, ELECTRIC, NOT_STATED, SEPARATING
+from engine.job.case.fields_path import EXPECTED
 from engine.screen import entries, session
 
 WATER = {BY_MASS: "By its mass", BY_VOLUME: "By its volume and temperature"}

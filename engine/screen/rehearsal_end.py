@@ -9,10 +9,11 @@ from dataclasses import replace
 import numpy as np
 import streamlit as st
 
-from engine.job import rehearsal as practice
 from engine.job.rehearsal import Finding, Rehearsal, Statement
-from engine.job.rehearsal_link import to_link
-from engine.job.rehearsal_readings import (
+from engine.job.rehearsal import rehearsal as practice
+from engine.job.rehearsal.link import to_link
+from engine.job.rehearsal.looks import Look
+from engine.job.rehearsal.readings import (
     Way,
     basis_of,
     channels_of,
@@ -21,10 +22,9 @@ from engine.job.rehearsal_readings import (
     typed,
     weighed_flow,
 )
-from engine.job.rehearsal_said import clock, cost, headline, journal, judged, truth
-from engine.job.rehearsal_verdict import verdict_of
-from engine.job.rig_looks import Look
-from engine.job.scenario import HiddenFault
+from engine.job.rehearsal.said import clock, cost, headline, journal, judged, truth
+from engine.job.rehearsal.scenario import HiddenFault
+from engine.job.rehearsal.verdict import verdict_of
 from engine.measurement.logbook_write import write_log
 from engine.screen import session
 from engine.screen.rehearsal_faces import decimals_of

@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 
 from engine.job.rehearsal import Rehearsal
-from engine.job.runsheet_plan import Plan
+from engine.job.runsheet.plan import Plan
 from engine.job.uncertainty import leg_pressure
 from engine.screen.charts.dials import Face, nice_end
 from engine.steam import saturation_temperature

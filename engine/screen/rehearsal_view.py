@@ -11,15 +11,15 @@ import time
 
 import streamlit as st
 
-from engine.job import rehearsal as practice
 from engine.job.rehearsal import Kind, Rehearsal
-from engine.job.rehearsal_link import from_link, to_link
-from engine.job.rehearsal_said import clock
-from engine.job.rig_looks import LOOK_WORDS, Look
-from engine.job.rig_valves import CRACKED, DEED_WORDS, Deed
-from engine.job.runsheet_plan import Plan, plan_of
-from engine.job.scenario import MOST_SEED, HiddenFault, Load, Scenario, surprise
-from engine.job.simulation import LONGEST
+from engine.job.rehearsal import rehearsal as practice
+from engine.job.rehearsal.link import from_link, to_link
+from engine.job.rehearsal.looks import LOOK_WORDS, Look
+from engine.job.rehearsal.said import clock
+from engine.job.rehearsal.scenario import MOST_SEED, HiddenFault, Load, Scenario, surprise
+from engine.job.rehearsal.simulation import LONGEST
+from engine.job.rehearsal.valves import CRACKED, DEED_WORDS, Deed
+from engine.job.runsheet.plan import Plan, plan_of
 from engine.screen import live, rehearsal_end, served, session
 from engine.screen.charts.dials import faces_html
 from engine.screen.charts.rehearsal import recorder

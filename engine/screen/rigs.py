@@ -6,9 +6,9 @@ from functools import lru_cache
 
 from engine.job.case import Case
 from engine.job.reach import ReachAssessment, assess_reach
+from engine.job.reach.ways import Way, ways
 from engine.job.rig import RigAssessment, assess_rig
 from engine.job.uncertainty import Forecast, forecast
-from engine.job.ways import Way, ways
 from engine.screen.shell import assessed
 
 

@@ -6,7 +6,8 @@ from collections.abc import Callable
 
 import streamlit as st
 
-from engine.job.decisions import (
+from engine.job.result import Result
+from engine.job.result.decisions import (
     window_row,
     with_removed,
     with_switch,
@@ -14,9 +15,8 @@ from engine.job.decisions import (
     without_removed,
     without_window,
 )
-from engine.job.reduction import RunResult
-from engine.job.result import Result
-from engine.job.result_said import (
+from engine.job.result.reduction import RunResult
+from engine.job.result.said import (
     channel_rows,
     correction_rows,
     drift_text,

@@ -15,11 +15,11 @@ from typing import NamedTuple
 import streamlit as st
 
 from engine.job.case import BLANK, Case, Value, as_entered, barometer, entry_si
-from engine.job.casefile import from_json, from_link, to_link
-from engine.job.demo import DEMO
-from engine.job.examples import EXAMPLES
-from engine.job.fields import FIELDS
-from engine.job.rows import Entry
+from engine.job.case.casefile import from_json, from_link, to_link
+from engine.job.case.demo import DEMO
+from engine.job.case.examples import EXAMPLES
+from engine.job.case.fields import FIELDS
+from engine.job.case.rows import Entry
 from engine.steam.errors import InputError
 from engine.steam.units import SYSTEMS, UnitSystem, from_si
 
@@ -175,7 +175,7 @@ def open_file(key: str) -> None:
         return
     try:
         if upload.name.lower().endswith(RECORDS):
-            from engine.job.record_data import reopened  # reads logs, which few sessions do: not loaded before
+            from engine.job.record.data import reopened  # reads logs, which few sessions do: not loaded before
             found = reopened(upload.getvalue())
             change(found.case)
             st.session_state["reopened"] = found.logs

@@ -5,9 +5,9 @@ from __future__ import annotations
 from functools import lru_cache
 
 from engine.job.case import Case
-from engine.job.fields import FIELDS
+from engine.job.case.fields import FIELDS
 from engine.job.runsheet import RunSheet, run_sheet
-from engine.job.runsheet_plan import Plan, plan_of
+from engine.job.runsheet.plan import Plan, plan_of
 
 # entries that no number of the sheet rests on
 _ASIDE = {name: FIELDS[name].blank for name in ("title", "note", "place", "tested_by", "witnessed_by", "permit",

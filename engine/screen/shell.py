@@ -10,12 +10,12 @@ from functools import lru_cache
 
 import streamlit as st
 
-from engine.job.answer import SHAPES, quality_text
 from engine.job.assessment import Assessment, Verdict, assess
+from engine.job.assessment.answer import SHAPES, quality_text
+from engine.job.assessment.methods_said import in_short
 from engine.job.case import Case
-from engine.job.casefile import to_json
-from engine.job.examples import EXAMPLES
-from engine.job.methods_said import in_short
+from engine.job.case.casefile import to_json
+from engine.job.case.examples import EXAMPLES
 from engine.screen import address, entries, session, style
 from engine.steam.errors import InputError
 from engine.steam.units import SYSTEMS

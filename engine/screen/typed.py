@@ -5,7 +5,7 @@ from __future__ import annotations
 import pandas as pd
 import streamlit as st
 
-from engine.job.typed_sets import Edits, edited, grid, grid_columns, with_room
+from engine.job.result.typed_sets import Edits, edited, grid, grid_columns, with_room
 from engine.screen import session
 from engine.screen.style import escaped_lines
 from engine.steam.errors import InputError

@@ -15,10 +15,10 @@ sys.path.insert(0, str(pathlib.Path(__file__).resolve().parents[2]))
 
 from iapws import IAPWS97  # noqa: E402
 
-from engine.job.answer import answer  # noqa: E402
 from engine.job.assessment import assess  # noqa: E402
-from engine.job.demo import DEMO  # noqa: E402
-from engine.job.tables import state_rows, velocity_rows  # noqa: E402
+from engine.job.assessment.answer import answer  # noqa: E402
+from engine.job.assessment.tables import state_rows, velocity_rows  # noqa: E402
+from engine.job.case.demo import DEMO  # noqa: E402
 from engine.screen.charts.process import process_diagrams  # noqa: E402
 from engine.screen.charts.speed import velocity_diagram  # noqa: E402
 from engine.steam.units import SI  # noqa: E402

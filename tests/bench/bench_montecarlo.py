@@ -26,7 +26,7 @@ sys.path.insert(0, str(pathlib.Path(__file__).resolve().parents[2]))
 
 from engine.calorimeter import quality  # noqa: E402
 from engine.job.assessment import assess  # noqa: E402
-from engine.job.demo import DEMO  # noqa: E402
+from engine.job.case.demo import DEMO  # noqa: E402
 from engine.job.uncertainty import Measurement, measurement_of  # noqa: E402
 from engine.measurement import monte_carlo  # noqa: E402
 

@@ -6,17 +6,17 @@ from pathlib import Path
 import pytest
 from conftest import settle
 
-from engine.job.casefile import from_link, from_record, to_link
-from engine.job.demo import DEMO
-from engine.job.examples import HEATED
+from engine.job.case.casefile import from_link, from_record, to_link
+from engine.job.case.demo import DEMO
+from engine.job.case.examples import HEATED
+from engine.job.case.rows import Entry
 from engine.job.record import record_html
 from engine.job.result import reduce
-from engine.job.result_said import figures
-from engine.job.rows import Entry
-from engine.job.runs import runs_typed
+from engine.job.result.runs import runs_typed
+from engine.job.result.said import figures
 from engine.job.runsheet import run_sheet, tick, ticks_of
-from engine.job.runsheet_print import runsheet_html
-from engine.job.runsheet_readings import with_reading
+from engine.job.runsheet.print import runsheet_html
+from engine.job.runsheet.readings import with_reading
 from engine.steam.units import SI, US
 
 MM = 96 / 25.4  # CSS pixels

@@ -7,9 +7,9 @@ import pytest
 from conftest import settle
 
 from engine.job.assessment import assess
-from engine.job.casefile import from_json, to_json, to_link
-from engine.job.demo import DEMO
-from engine.job.rows import Entry
+from engine.job.case.casefile import from_json, to_json, to_link
+from engine.job.case.demo import DEMO
+from engine.job.case.rows import Entry
 
 READING = "Measured temperature, °C"
 PATHS = """() => [...document.querySelectorAll('.stage')].map((stage) =>

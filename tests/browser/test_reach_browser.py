@@ -5,8 +5,8 @@ import re
 import pytest
 from conftest import settle
 
-from engine.job.casefile import from_link, to_link
-from engine.job.examples import BOILER_OUTLET, HEATING_STEAM, WET_LINE
+from engine.job.case.casefile import from_link, to_link
+from engine.job.case.examples import BOILER_OUTLET, HEATING_STEAM, WET_LINE
 
 
 @pytest.fixture

@@ -7,9 +7,9 @@ import numpy as np
 import pytest
 from conftest import settle
 
-from engine.job.casefile import to_link
-from engine.job.demo import DEMO
-from engine.job.fields_path import UNDECIDED
+from engine.job.case.casefile import to_link
+from engine.job.case.demo import DEMO
+from engine.job.case.fields_path import UNDECIDED
 from engine.measurement.logbook_write import write_log
 
 

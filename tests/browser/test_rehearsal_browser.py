@@ -8,11 +8,11 @@ from pathlib import Path
 import pytest
 from conftest import PATIENCE, served, settle
 
-from engine.job.demo import DEMO
+from engine.job.case.demo import DEMO
+from engine.job.commands.rehearse import by_the_book
 from engine.job.rehearsal import begin
-from engine.job.rehearsal_link import to_link
-from engine.job.rehearse_command import by_the_book
-from engine.job.scenario import Scenario
+from engine.job.rehearsal.link import to_link
+from engine.job.rehearsal.scenario import Scenario
 
 APP = Path(__file__).parents[1] / "screen" / "rehearsal_app.py"
 

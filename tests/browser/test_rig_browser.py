@@ -7,8 +7,8 @@ import re
 import pytest
 from conftest import settle
 
-from engine.job.casefile import to_link
-from engine.job.demo import DEMO
+from engine.job.case.casefile import to_link
+from engine.job.case.demo import DEMO
 
 BARS = """() => [...document.querySelector('.stage[data-key=ranking]').querySelectorAll('.barlayer .point path')]
   .map((bar) => bar.getBBox().width)"""

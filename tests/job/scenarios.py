@@ -1,14 +1,14 @@
 """Invented cases with everything stated, for the tests of this floor: readings, instruments, limits."""
 
 from engine.job.case import Case
-from engine.job.demo import FACTORY_MAIN
-from engine.job.fields import FIELDS
-from engine.job.fields_instruments import HALF_WIDTH, LIMIT, SHOWS_GAUGE
-from engine.job.fields_path import BY_CONDUCTANCE, BY_KG
-from engine.job.fields_rig import MERCURY
+from engine.job.case.demo import FACTORY_MAIN
+from engine.job.case.fields import FIELDS
+from engine.job.case.fields_instruments import HALF_WIDTH, LIMIT, SHOWS_GAUGE
+from engine.job.case.fields_path import BY_CONDUCTANCE, BY_KG
+from engine.job.case.fields_rig import MERCURY
+from engine.job.case.rows import Entry
 from engine.job.result import reduce
-from engine.job.rows import Entry
-from engine.job.runs import runs_typed
+from engine.job.result.runs import runs_typed
 
 _STATED = {
     "exhaust_gauge_kind": LIMIT, "exhaust_gauge_U": Entry(0.5, "kPa"), "exhaust_gauge_shows": SHOWS_GAUGE,

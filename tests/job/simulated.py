@@ -5,7 +5,7 @@ import io
 import numpy as np
 
 from engine.calorimeter import exhaust_temperature
-from engine.job.balance import balance_of
+from engine.job.assessment.balance import balance_of
 from engine.job.case import resolve
 from engine.job.uncertainty import leg_pressure, prepare, reading_of
 from engine.measurement.logbook import read_log

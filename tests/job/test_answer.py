@@ -6,13 +6,13 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from engine.job.answer import SHAPES, answer, percent_points, quality_text
 from engine.job.assessment import assess
-from engine.job.demo import DEMO
-from engine.job.fields_path import BY_KG, BY_NORMAL, EXPECTED, NONE, UNDECIDED
-from engine.job.methods_said import in_short
-from engine.job.rows import Entry
-from engine.job.verdict import Verdict
+from engine.job.assessment.answer import SHAPES, answer, percent_points, quality_text
+from engine.job.assessment.methods_said import in_short
+from engine.job.assessment.verdict import Verdict
+from engine.job.case.demo import DEMO
+from engine.job.case.fields_path import BY_KG, BY_NORMAL, EXPECTED, NONE, UNDECIDED
+from engine.job.case.rows import Entry
 from engine.steam.errors import InputError
 from engine.steam.units import SI, US
 

@@ -11,9 +11,9 @@ from hypothesis import strategies as st
 from engine.calorimeter import Status, least_quality, quality
 from engine.job.assessment import Verdict, assess
 from engine.job.case import BLANK
-from engine.job.demo import DEMO
-from engine.job.fields_path import BY_CONDUCTANCE, BY_KG, BY_NORMAL, BY_TWO_FLOWS, EXPECTED, NONE, UNDECIDED
-from engine.job.rows import Entry
+from engine.job.case.demo import DEMO
+from engine.job.case.fields_path import BY_CONDUCTANCE, BY_KG, BY_NORMAL, BY_TWO_FLOWS, EXPECTED, NONE, UNDECIDED
+from engine.job.case.rows import Entry
 from engine.steam import saturated, saturation_temperature, state_ph, vapour
 from engine.steam.errors import InputError
 from engine.steam.status import SteamStatus

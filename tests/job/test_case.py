@@ -16,9 +16,9 @@ from engine.job.case import (
     faults_of,
     resolve,
 )
-from engine.job.demo import DEMO
-from engine.job.fields import FIELDS
-from engine.job.rows import CHOICE, QUANTITY, TEXT, Entry
+from engine.job.case.demo import DEMO
+from engine.job.case.fields import FIELDS
+from engine.job.case.rows import CHOICE, QUANTITY, TEXT, Entry
 from engine.steam.errors import InputError
 from engine.steam.units import UNITS
 

@@ -5,10 +5,10 @@ import json
 import pytest
 
 from engine.job.case import Case, faults_of
-from engine.job.casefile import from_json, from_link, to_json, to_link
-from engine.job.demo import DEMO
-from engine.job.fields import FIELDS
-from engine.job.rows import Entry, Row
+from engine.job.case.casefile import from_json, from_link, to_json, to_link
+from engine.job.case.demo import DEMO
+from engine.job.case.fields import FIELDS
+from engine.job.case.rows import Entry, Row
 from engine.steam.errors import InputError
 
 READINGS = FIELDS["readings"]

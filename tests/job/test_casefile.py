@@ -9,10 +9,10 @@ from hypothesis import assume, given, settings
 from hypothesis import strategies as st
 
 from engine.job.case import BLANK, Case, as_entered, faults_of
-from engine.job.casefile import FORMAT, LISTED, MAX_BYTES, MAX_TEXT, SCHEMA, from_json, from_link, to_json, to_link
-from engine.job.demo import DEMO
-from engine.job.fields import FIELDS
-from engine.job.rows import CHOICE, QUANTITY, TABLE, TEXT, Entry
+from engine.job.case.casefile import FORMAT, LISTED, MAX_BYTES, MAX_TEXT, SCHEMA, from_json, from_link, to_json, to_link
+from engine.job.case.demo import DEMO
+from engine.job.case.fields import FIELDS
+from engine.job.case.rows import CHOICE, QUANTITY, TABLE, TEXT, Entry
 from engine.steam.errors import InputError
 from engine.steam.units import UNITS
 

@@ -12,15 +12,15 @@ import pytest
 from scenarios import FACTORY
 from simulated import channels_of
 
-from engine.job.casefile import to_json
+from engine.job.case.casefile import to_json
+from engine.job.case.fields import FIELDS
+from engine.job.case.fields_modes import NOT_STATED
+from engine.job.case.rows import Entry
 from engine.job.commands import COMMANDS, main
-from engine.job.fields import FIELDS
-from engine.job.fields_modes import NOT_STATED
-from engine.job.intake import read
 from engine.job.result import reduce
-from engine.job.result_said import headline
-from engine.job.rows import Entry
-from engine.job.runs import run_of_log
+from engine.job.result.intake import read
+from engine.job.result.runs import run_of_log
+from engine.job.result.said import headline
 from engine.measurement.logbook import read_log
 from engine.measurement.logbook_write import write_log
 

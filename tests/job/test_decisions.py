@@ -2,7 +2,8 @@
 
 from scenarios import FACTORY
 
-from engine.job.decisions import (
+from engine.job.case.fields import FIELDS
+from engine.job.result.decisions import (
     window_row,
     with_removed,
     with_switch,
@@ -10,7 +11,6 @@ from engine.job.decisions import (
     without_removed,
     without_window,
 )
-from engine.job.fields import FIELDS
 
 
 def test_one_window_for_a_run_the_last_one_counts():

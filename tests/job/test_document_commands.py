@@ -5,17 +5,17 @@ import zipfile
 
 import pytest
 
-from engine.job.casefile import from_record, to_json
+from engine.job.case.casefile import from_record, to_json
+from engine.job.case.demo import DEMO
+from engine.job.case.examples import HEATING_STEAM
+from engine.job.case.fields_path import UNDECIDED
+from engine.job.case.rows import Entry
 from engine.job.commands import main
-from engine.job.demo import DEMO
-from engine.job.demo_log import demo_log
-from engine.job.examples import HEATING_STEAM
-from engine.job.fields_path import UNDECIDED
 from engine.job.record import record_html
-from engine.job.record_data import reopened
-from engine.job.rows import Entry
-from engine.job.runsheet_print import runsheet_html
-from engine.job.runsheet_readings import with_reading
+from engine.job.record.data import reopened
+from engine.job.rehearsal.demo_log import demo_log
+from engine.job.runsheet.print import runsheet_html
+from engine.job.runsheet.readings import with_reading
 from engine.steam.units import SI, US
 
 

@@ -7,12 +7,12 @@ import pytest
 
 from engine.calorimeter import MassBasis, Status
 from engine.job.assessment import assess
-from engine.job.examples import HEATED, WET_LINE_READ
-from engine.job.fields_instruments import HALF_WIDTH, LIMIT
-from engine.job.fields_path import BY_CONDUCTANCE, EXPECTED
-from engine.job.forecast_words import budget_rows
-from engine.job.rows import Entry
+from engine.job.case.examples import HEATED, WET_LINE_READ
+from engine.job.case.fields_instruments import HALF_WIDTH, LIMIT
+from engine.job.case.fields_path import BY_CONDUCTANCE, EXPECTED
+from engine.job.case.rows import Entry
 from engine.job.uncertainty import check, forecast, measurement_of
+from engine.job.uncertainty.forecast_words import budget_rows
 from engine.steam.units import SI
 
 STATED = {

@@ -4,17 +4,17 @@ import numpy as np
 import pytest
 
 from engine.calorimeter import MassBasis, electric_quality, separated_quality, separated_reading
-from engine.job.answer import SHAPES, answer
 from engine.job.assessment import Verdict, assess
+from engine.job.assessment.answer import SHAPES, answer
+from engine.job.assessment.methods_said import in_short
+from engine.job.assessment.tables import comparison_rows, state_rows, velocity_rows
 from engine.job.case import BLANK
-from engine.job.casefile import from_json, from_link, to_json, to_link
-from engine.job.demo import DEMO
-from engine.job.examples import HEATED, HEATING_STEAM, WET_LINE_READ
-from engine.job.fields_modes import BY_VOLUME, ELECTRIC, MODE_FIELDS, SEPARATING, THROTTLING
-from engine.job.fields_path import BY_KG, EXPECTED, READING
-from engine.job.methods_said import in_short
-from engine.job.rows import Entry
-from engine.job.tables import comparison_rows, state_rows, velocity_rows
+from engine.job.case.casefile import from_json, from_link, to_json, to_link
+from engine.job.case.demo import DEMO
+from engine.job.case.examples import HEATED, HEATING_STEAM, WET_LINE_READ
+from engine.job.case.fields_modes import BY_VOLUME, ELECTRIC, MODE_FIELDS, SEPARATING, THROTTLING
+from engine.job.case.fields_path import BY_KG, EXPECTED, READING
+from engine.job.case.rows import Entry
 from engine.steam.errors import InputError
 from engine.steam.units import SI, US
 

@@ -11,8 +11,8 @@ from hypothesis import strategies as st
 from engine.calorimeter import Readability, WayKind, exhaust_pressure_for, least_quality
 from engine.job.assessment import Verdict, assess
 from engine.job.case import BLANK, describe
-from engine.job.demo import DEMO
-from engine.job.examples import (
+from engine.job.case.demo import DEMO
+from engine.job.case.examples import (
     BOILER_OUTLET,
     EXAMPLES,
     HEATED,
@@ -22,15 +22,15 @@ from engine.job.examples import (
     WET_LINE,
     WET_LINE_READ,
 )
-from engine.job.fields_modes import ELECTRIC, SEPARATING, THROTTLING
-from engine.job.fields_path import EXPECTED, NONE, READING
-from engine.job.instrument_chart import ROWS, instrument_chart
-from engine.job.printable import chart_page, chart_rows
+from engine.job.case.fields_modes import ELECTRIC, SEPARATING, THROTTLING
+from engine.job.case.fields_path import EXPECTED, NONE, READING
+from engine.job.case.rows import Entry
 from engine.job.reach import AS_ENTERED, BY_INSTRUMENT, NOT_STATED, assess_reach
-from engine.job.reach_map import edge_of, map_key, sections, wetness_map
-from engine.job.reach_said import ladder_rows, said, way_change, way_title
-from engine.job.rows import Entry
-from engine.job.ways import ways
+from engine.job.reach.instrument_chart import ROWS, instrument_chart
+from engine.job.reach.map import edge_of, map_key, sections, wetness_map
+from engine.job.reach.printable import chart_page, chart_rows
+from engine.job.reach.said import ladder_rows, said, way_change, way_title
+from engine.job.reach.ways import ways
 from engine.steam import saturation_temperature
 from engine.steam.errors import InputError
 from engine.steam.units import SI, US

@@ -12,26 +12,26 @@ import numpy as np
 import pytest
 from documents import HOSTILE, harmless
 
-from engine.job.answer import quality_text
 from engine.job.assessment import assess
-from engine.job.casefile import from_json, from_record, to_json
-from engine.job.demo import DEMO
-from engine.job.demo_log import demo_log
-from engine.job.examples import EXAMPLES, HEATED, HEATING_STEAM, REDUCING_VALVE, WET_LINE_READ
-from engine.job.fields import FIELDS
-from engine.job.fields_instruments import HALF_WIDTH
-from engine.job.fields_path import EXPECTED, READING, UNDECIDED
-from engine.job.intake import read
+from engine.job.assessment.answer import quality_text
+from engine.job.case.casefile import from_json, from_record, to_json
+from engine.job.case.demo import DEMO
+from engine.job.case.examples import EXAMPLES, HEATED, HEATING_STEAM, REDUCING_VALVE, WET_LINE_READ
+from engine.job.case.fields import FIELDS
+from engine.job.case.fields_instruments import HALF_WIDTH
+from engine.job.case.fields_path import EXPECTED, READING, UNDECIDED
+from engine.job.case.rows import Entry
 from engine.job.record import facts_of, reading_as_run, reasons_against, record_html, record_zip
-from engine.job.record_data import MOST_CELLS, reopened
-from engine.job.record_figures import diagrams_svg
+from engine.job.record.data import MOST_CELLS, reopened
+from engine.job.record.figures import diagrams_svg
+from engine.job.rehearsal.demo_log import demo_log
 from engine.job.result import reduce
-from engine.job.result_said import chance, correction_rows, figures, rule_text, told, verdict_lines
-from engine.job.rig_tables import points
-from engine.job.rows import Entry
-from engine.job.runs import run_of_log, runs_typed
+from engine.job.result.intake import read
+from engine.job.result.runs import run_of_log, runs_typed
+from engine.job.result.said import chance, correction_rows, figures, rule_text, told, verdict_lines
+from engine.job.rig.tables import points
 from engine.job.runsheet import tick
-from engine.job.runsheet_readings import with_reading
+from engine.job.runsheet.readings import with_reading
 from engine.job.uncertainty import forecast
 from engine.measurement.logbook_suspicion import Suspicion
 from engine.steam.errors import InputError
@@ -221,7 +221,7 @@ def test_a_long_log_is_thinned_on_paper_but_not_in_the_data(log):
 
 
 def test_logs_too_long_for_the_page_are_named_instead(log, monkeypatch):
-    monkeypatch.setattr("engine.job.record_data.MOST_CELLS", 100)
+    monkeypatch.setattr("engine.job.record.data.MOST_CELLS", 100)
     assert MOST_CELLS > 100
     html = record_html(DEMO, reduce(DEMO, (run_of_log(log),)), SI, "A4", made=MADE, logs=[log])
     assert "too long for this page" in html and reopened(html).logs == ()

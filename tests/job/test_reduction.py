@@ -9,16 +9,16 @@ from simulated import channels_of, instrument_errors, log_of, noise
 
 from engine.calorimeter import MassBasis, Status, exhaust_temperature
 from engine.job.assessment import assess
-from engine.job.balance import balance_of
+from engine.job.assessment.balance import balance_of
+from engine.job.assessment.terms import two_flow_conductance
 from engine.job.case import resolve
-from engine.job.fields import FIELDS
-from engine.job.fields_modes import ELECTRIC, NOT_STATED, SEPARATING
-from engine.job.fields_path import BY_ALTITUDE, BY_CONDUCTANCE, BY_TWO_FLOWS, UNDECIDED
-from engine.job.reduction import reduce_run
+from engine.job.case.fields import FIELDS
+from engine.job.case.fields_modes import ELECTRIC, NOT_STATED, SEPARATING
+from engine.job.case.fields_path import BY_ALTITUDE, BY_CONDUCTANCE, BY_TWO_FLOWS, UNDECIDED
+from engine.job.case.rows import Entry
 from engine.job.result import reduce
-from engine.job.rows import Entry
-from engine.job.runs import recalled, remembered, run_of_log, runs_typed
-from engine.job.terms import two_flow_conductance
+from engine.job.result.reduction import reduce_run
+from engine.job.result.runs import recalled, remembered, run_of_log, runs_typed
 from engine.job.uncertainty import READINGS, check, forecast, prepare, reading_of
 from engine.measurement import SAMPLING, effective_number, type_a
 from engine.measurement.logbook import propose_mapping, read_log

@@ -9,10 +9,10 @@ from functools import cache
 import numpy as np
 import pytest
 
-from engine.job.demo import DEMO
-from engine.job.demo_log import demo_log
-from engine.job.examples import BOILER_OUTLET
-from engine.job.fields_instruments import LIMIT
+from engine.job.case.demo import DEMO
+from engine.job.case.examples import BOILER_OUTLET
+from engine.job.case.fields_instruments import LIMIT
+from engine.job.case.rows import Entry
 from engine.job.rehearsal import (
     Event,
     Finding,
@@ -29,17 +29,17 @@ from engine.job.rehearsal import (
     take_reading,
     take_readings,
 )
-from engine.job.rehearsal_link import from_link, to_link
-from engine.job.rehearsal_readings import Way, reckoned, typed, weighed_flow
-from engine.job.rehearsal_said import clock, cost, headline, journal, judged, truth
-from engine.job.rehearsal_verdict import SIGNS, verdict_of
+from engine.job.rehearsal.demo_log import demo_log
+from engine.job.rehearsal.link import from_link, to_link
+from engine.job.rehearsal.looks import LOOK_WORDS, Look
+from engine.job.rehearsal.readings import Way, reckoned, typed, weighed_flow
+from engine.job.rehearsal.said import clock, cost, headline, journal, judged, truth
+from engine.job.rehearsal.scenario import HiddenFault, Load, Scenario
+from engine.job.rehearsal.simulation import LONGEST, by_the_sheet
+from engine.job.rehearsal.valves import COLD_AGAIN, DEED_WORDS, DONE_WORDS, Deed, Valves, refusal, valves_after
+from engine.job.rehearsal.verdict import SIGNS, verdict_of
 from engine.job.result import reduce
-from engine.job.rig_looks import LOOK_WORDS, Look
-from engine.job.rig_valves import COLD_AGAIN, DEED_WORDS, DONE_WORDS, Deed, Valves, refusal, valves_after
-from engine.job.rows import Entry
-from engine.job.runs import run_of_log, runs_typed
-from engine.job.scenario import HiddenFault, Load, Scenario
-from engine.job.simulation import LONGEST, by_the_sheet
+from engine.job.result.runs import run_of_log, runs_typed
 from engine.measurement.logbook import read_log
 from engine.steam.errors import InputError
 from engine.steam.units import SI, US

@@ -5,15 +5,15 @@ import json
 
 import pytest
 
-from engine.job.casefile import to_json
+from engine.job.case.casefile import to_json
+from engine.job.case.demo import DEMO
+from engine.job.case.examples import WET_LINE_READ
 from engine.job.commands import main
-from engine.job.demo import DEMO
-from engine.job.examples import WET_LINE_READ
-from engine.job.rehearsal_cost import cost_of
-from engine.job.rehearsal_link import from_link
-from engine.job.rehearsal_readings import Way, reckoned
-from engine.job.rehearse_command import by_the_book
-from engine.job.scenario import HiddenFault, Scenario, surprise
+from engine.job.commands.rehearse import by_the_book
+from engine.job.rehearsal.cost import cost_of
+from engine.job.rehearsal.link import from_link
+from engine.job.rehearsal.readings import Way, reckoned
+from engine.job.rehearsal.scenario import HiddenFault, Scenario, surprise
 from engine.measurement.logbook import read_log
 
 

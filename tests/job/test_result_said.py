@@ -6,9 +6,11 @@ import pytest
 from scenarios import FACTORY, FULL, TEN, sets, typed
 from simulated import log_of
 
+from engine.job.case.rows import Entry
 from engine.job.result import reduce
-from engine.job.result_data import as_data, run_table
-from engine.job.result_said import (
+from engine.job.result.data import as_data, run_table
+from engine.job.result.runs import run_of_log
+from engine.job.result.said import (
     chance,
     channel_rows,
     check_lines,
@@ -25,8 +27,6 @@ from engine.job.result_said import (
     told,
     unsettled_lines,
 )
-from engine.job.rows import Entry
-from engine.job.runs import run_of_log
 from engine.job.uncertainty import check
 from engine.measurement import Reason, Unsettled
 from engine.steam.units import SI, US

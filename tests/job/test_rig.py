@@ -26,10 +26,10 @@ from engine.calorimeter import (
 from engine.calorimeter.warmup import CONDENSING_FILM
 from engine.job.assessment import assess
 from engine.job.case import BLANK
-from engine.job.demo import DEMO
-from engine.job.fields import FIELDS
-from engine.job.fields_modes import ELECTRIC, SEPARATING
-from engine.job.fields_path import (
+from engine.job.case.demo import DEMO
+from engine.job.case.fields import FIELDS
+from engine.job.case.fields_modes import ELECTRIC, SEPARATING
+from engine.job.case.fields_path import (
     BY_ALTITUDE,
     BY_CONDUCTANCE,
     BY_KG,
@@ -39,10 +39,10 @@ from engine.job.fields_path import (
     NONE,
     UNDECIDED,
 )
-from engine.job.fields_rig import BARE, COMPUTED, DRY, MERCURY, RIG_FIELDS, VESSEL, WET
+from engine.job.case.fields_rig import BARE, COMPUTED, DRY, MERCURY, RIG_FIELDS, VESSEL, WET
+from engine.job.case.rows import Entry
 from engine.job.rig import assess_rig
-from engine.job.rig_heat import BY_GEOMETRY, GOOD_IMMERSION
-from engine.job.rows import Entry
+from engine.job.rig.heat import BY_GEOMETRY, GOOD_IMMERSION
 from engine.steam import saturated, saturation_temperature, vapour
 from engine.steam.errors import InputError
 

@@ -7,17 +7,17 @@ from functools import cache
 
 import pytest
 
-from engine.job import rig_tables
 from engine.job.case import BLANK
-from engine.job.demo import DEMO
-from engine.job.fields_path import BY_CONDUCTANCE, BY_NORMAL, BY_TWO_FLOWS, NONE
-from engine.job.fields_rig import COMPUTED
-from engine.job.forecast_words import budget_rows, forecast_advice, forecast_headline
+from engine.job.case.demo import DEMO
+from engine.job.case.fields_path import BY_CONDUCTANCE, BY_NORMAL, BY_TWO_FLOWS, NONE
+from engine.job.case.fields_rig import COMPUTED
+from engine.job.case.rows import Entry
 from engine.job.rig import assess_rig
-from engine.job.rig_offers import offers
-from engine.job.rig_tables import LEFT, TAKEN, headline, left_words, points
-from engine.job.rows import Entry
+from engine.job.rig import tables as rig_tables
+from engine.job.rig.offers import offers
+from engine.job.rig.tables import LEFT, TAKEN, headline, left_words, points
 from engine.job.uncertainty import forecast
+from engine.job.uncertainty.forecast_words import budget_rows, forecast_advice, forecast_headline
 from engine.steam.units import SI, US
 
 rig_of = cache(assess_rig)

@@ -9,20 +9,20 @@ from documents import HOSTILE, harmless
 from engine.calorimeter import WEATHER_HALF_WIDTH, exhaust_temperature
 from engine.job.assessment import assess
 from engine.job.case import Case
-from engine.job.casefile import from_json, from_link, to_json, to_link
-from engine.job.demo import DEMO
-from engine.job.examples import BOILER_OUTLET, EXAMPLES, HEATED, HEATING_STEAM, HIGH_SITE, WET_LINE_READ
-from engine.job.fields import FIELDS
-from engine.job.fields_path import BY_NORMAL, BY_TWO_FLOWS, EXPECTED, UNDECIDED
-from engine.job.fields_rig import VESSEL
-from engine.job.fields_runsheet import GAS_NOTED
+from engine.job.case.casefile import from_json, from_link, to_json, to_link
+from engine.job.case.demo import DEMO
+from engine.job.case.examples import BOILER_OUTLET, EXAMPLES, HEATED, HEATING_STEAM, HIGH_SITE, WET_LINE_READ
+from engine.job.case.fields import FIELDS
+from engine.job.case.fields_path import BY_NORMAL, BY_TWO_FLOWS, EXPECTED, UNDECIDED
+from engine.job.case.fields_rig import VESSEL
+from engine.job.case.fields_runsheet import GAS_NOTED
+from engine.job.case.rows import Entry
 from engine.job.reach import assess_reach
 from engine.job.rig import assess_rig
-from engine.job.rows import Entry
 from engine.job.runsheet import headline, notices, run_sheet, tick, ticks_of, untick
-from engine.job.runsheet_plan import FLOW_ALARM, MOST_SETS, plan_of
-from engine.job.runsheet_print import runsheet_html
-from engine.job.runsheet_readings import columns_of, readings_outside, runs_of, with_reading
+from engine.job.runsheet.plan import FLOW_ALARM, MOST_SETS, plan_of
+from engine.job.runsheet.print import runsheet_html
+from engine.job.runsheet.readings import columns_of, readings_outside, runs_of, with_reading
 from engine.job.said import Said
 from engine.steam import saturation_temperature
 from engine.steam.errors import InputError

@@ -10,16 +10,16 @@ from scipy.integrate import solve_ivp
 from engine.calorimeter import exhaust_temperature, immersion_error, lag_error, time_to_within, velocity, warm_up
 from engine.job.assessment import assess
 from engine.job.case import BLANK
-from engine.job.demo import DEMO
-from engine.job.examples import BOILER_OUTLET, HIGH_SITE, WET_LINE, WET_LINE_READ
-from engine.job.fields_path import EXPECTED
-from engine.job.lag import coloured, lagged
-from engine.job.rehearsal_cost import cost_of
-from engine.job.rig_faults import rig_of
-from engine.job.rig_valves import CRACKED, Deed
-from engine.job.rows import Entry
-from engine.job.scenario import HiddenFault, Load, Scenario, surprise
-from engine.job.simulation import FALL, STEP, by_the_sheet, simulate
+from engine.job.case.demo import DEMO
+from engine.job.case.examples import BOILER_OUTLET, HIGH_SITE, WET_LINE, WET_LINE_READ
+from engine.job.case.fields_path import EXPECTED
+from engine.job.case.rows import Entry
+from engine.job.rehearsal.cost import cost_of
+from engine.job.rehearsal.faults import rig_of
+from engine.job.rehearsal.lag import coloured, lagged
+from engine.job.rehearsal.scenario import HiddenFault, Load, Scenario, surprise
+from engine.job.rehearsal.simulation import FALL, STEP, by_the_sheet, simulate
+from engine.job.rehearsal.valves import CRACKED, Deed
 from engine.steam import saturated, saturation_temperature, vapour
 from engine.steam.errors import InputError
 

@@ -6,10 +6,10 @@ import io
 import pytest
 
 from engine.job.assessment import assess
-from engine.job.demo import DEMO
-from engine.job.fields_path import EXPECTED, NONE
-from engine.job.rows import Entry
-from engine.job.tables import ABSENT, as_csv, comparison_rows, state_rows, velocity_rows
+from engine.job.assessment.tables import ABSENT, as_csv, comparison_rows, state_rows, velocity_rows
+from engine.job.case.demo import DEMO
+from engine.job.case.fields_path import EXPECTED, NONE
+from engine.job.case.rows import Entry
 from engine.steam.units import SI, US
 
 DRY = DEMO.with_(question=EXPECTED, wetness=Entry(0.0, "%"), title="Dry")

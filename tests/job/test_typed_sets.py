@@ -3,9 +3,9 @@
 import pytest
 from scenarios import FACTORY
 
-from engine.job.fields import FIELDS
-from engine.job.rows import Entry
-from engine.job.typed_sets import Edits, as_number, edited, grid, grid_columns, with_room
+from engine.job.case.fields import FIELDS
+from engine.job.case.rows import Entry
+from engine.job.result.typed_sets import Edits, as_number, edited, grid, grid_columns, with_room
 from engine.steam.units import SI, US
 
 ROW = FIELDS["readings"].row

@@ -6,11 +6,11 @@ from scenarios import BOILER, FACTORY, GEOTHERMAL, HIGH_SITE
 
 from engine.calorimeter import Status
 from engine.job.assessment import assess
-from engine.job.balance import balance_of
+from engine.job.assessment.balance import balance_of
 from engine.job.case import resolve
-from engine.job.fields_instruments import CERTIFICATE, STANDARD
-from engine.job.fields_modes import NOT_STATED
-from engine.job.fields_path import (
+from engine.job.case.fields_instruments import CERTIFICATE, STANDARD
+from engine.job.case.fields_modes import NOT_STATED
+from engine.job.case.fields_path import (
     BY_ALTITUDE,
     BY_CONDUCTANCE,
     BY_KG,
@@ -20,9 +20,9 @@ from engine.job.fields_path import (
     NONE,
     UNDECIDED,
 )
-from engine.job.instruments import grade_of, rests_on_barometer
-from engine.job.rows import Entry
+from engine.job.case.rows import Entry
 from engine.job.uncertainty import forecast, prepare, reading_of
+from engine.job.uncertainty.instruments import grade_of, rests_on_barometer
 from engine.measurement import SAMPLING, monte_carlo
 from engine.steam import saturation_temperature
 from engine.steam.errors import InputError

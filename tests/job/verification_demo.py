@@ -13,8 +13,8 @@ import pytest
 
 from engine.job.assessment import Verdict, assess
 from engine.job.case import BLANK, Case
-from engine.job.fields_path import BY_CONDUCTANCE, BY_KG, NONE
-from engine.job.rows import Entry
+from engine.job.case.fields_path import BY_CONDUCTANCE, BY_KG, NONE
+from engine.job.case.rows import Entry
 
 FORMULATIONS = 8e-5
 

@@ -13,9 +13,9 @@ import pytest
 from engine.calorimeter import MassBasis
 from engine.job.assessment import Verdict, assess
 from engine.job.case import BLANK
-from engine.job.fields_modes import BY_VOLUME, ELECTRIC, SEPARATING
-from engine.job.fields_path import EXPECTED, NONE
-from engine.job.rows import Entry
+from engine.job.case.fields_modes import BY_VOLUME, ELECTRIC, SEPARATING
+from engine.job.case.fields_path import EXPECTED, NONE
+from engine.job.case.rows import Entry
 
 MM_MERCURY = 101_325 / 760  # Pa
 

@@ -6,11 +6,11 @@ import CoolProp.CoolProp as CP
 import pytest
 
 from engine.job.case import BLANK
-from engine.job.demo import DEMO
-from engine.job.fields_path import BY_ALTITUDE, BY_KG, NONE
-from engine.job.fields_rig import MERCURY
+from engine.job.case.demo import DEMO
+from engine.job.case.fields_path import BY_ALTITUDE, BY_KG, NONE
+from engine.job.case.fields_rig import MERCURY
+from engine.job.case.rows import Entry
 from engine.job.rig import assess_rig
-from engine.job.rows import Entry
 from engine.steam.units import to_si
 
 P2 = 101_325.0

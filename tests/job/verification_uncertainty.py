@@ -5,9 +5,9 @@ import numpy as np
 import pytest
 from scenarios import BOILER, FACTORY, GEOTHERMAL, HIGH_SITE
 
-from engine.job.balance import Balance
-from engine.job.fields_path import BY_NORMAL, NONE
-from engine.job.rows import Entry
+from engine.job.assessment.balance import Balance
+from engine.job.case.fields_path import BY_NORMAL, NONE
+from engine.job.case.rows import Entry
 from engine.job.uncertainty import forecast
 from engine.measurement import Input, uncertainty_budget
 

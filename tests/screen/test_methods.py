@@ -6,12 +6,12 @@ import pytest
 from streamlit.testing.v1 import AppTest
 
 from engine.calorimeter import MassBasis
-from engine.job.casefile import to_link
-from engine.job.demo import DEMO
-from engine.job.examples import HEATED, WET_LINE_READ
-from engine.job.fields_modes import BY_VOLUME, ELECTRIC, SEPARATING, THROTTLING
-from engine.job.fields_path import EXPECTED
-from engine.job.rows import Entry
+from engine.job.case.casefile import to_link
+from engine.job.case.demo import DEMO
+from engine.job.case.examples import HEATED, WET_LINE_READ
+from engine.job.case.fields_modes import BY_VOLUME, ELECTRIC, SEPARATING, THROTTLING
+from engine.job.case.fields_path import EXPECTED
+from engine.job.case.rows import Entry
 
 APP = Path(__file__).parents[2] / "app.py"
 

@@ -6,13 +6,13 @@ from pathlib import Path
 import pytest
 from streamlit.testing.v1 import AppTest
 
-from engine.job.answer import answer
 from engine.job.assessment import assess
+from engine.job.assessment.answer import answer
 from engine.job.case import BLANK
-from engine.job.casefile import to_json, to_link
-from engine.job.demo import DEMO
-from engine.job.fields_path import BY_NORMAL, EXPECTED, NONE
-from engine.job.rows import Entry
+from engine.job.case.casefile import to_json, to_link
+from engine.job.case.demo import DEMO
+from engine.job.case.fields_path import BY_NORMAL, EXPECTED, NONE
+from engine.job.case.rows import Entry
 from engine.screen.style import escaped
 from engine.steam.units import SI, US
 

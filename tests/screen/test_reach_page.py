@@ -6,14 +6,14 @@ import pytest
 from streamlit.testing.v1 import AppTest
 
 from engine.calorimeter import WayKind
-from engine.job.casefile import to_link
-from engine.job.demo import DEMO
-from engine.job.examples import EXAMPLES, HEATED, HEATING_STEAM, WET_LINE, WET_LINE_READ
-from engine.job.fields_modes import ELECTRIC, SEPARATING
-from engine.job.instrument_chart import instrument_chart
+from engine.job.case.casefile import to_link
+from engine.job.case.demo import DEMO
+from engine.job.case.examples import EXAMPLES, HEATED, HEATING_STEAM, WET_LINE, WET_LINE_READ
+from engine.job.case.fields_modes import ELECTRIC, SEPARATING
+from engine.job.case.rows import Entry
 from engine.job.reach import assess_reach
-from engine.job.reach_said import said
-from engine.job.rows import Entry
+from engine.job.reach.instrument_chart import instrument_chart
+from engine.job.reach.said import said
 from engine.steam.units import SI, US
 
 ROOT = Path(__file__).parents[2]

@@ -12,16 +12,16 @@ import pytest
 from streamlit.testing.v1 import AppTest
 
 from engine.job.case import BLANK
-from engine.job.casefile import to_link
-from engine.job.demo import DEMO
-from engine.job.fields import FIELDS
-from engine.job.fields_modes import NOT_STATED
-from engine.job.fields_path import UNDECIDED
-from engine.job.intake import read
+from engine.job.case.casefile import to_link
+from engine.job.case.demo import DEMO
+from engine.job.case.fields import FIELDS
+from engine.job.case.fields_modes import NOT_STATED
+from engine.job.case.fields_path import UNDECIDED
+from engine.job.case.rows import Entry
 from engine.job.result import reduce
-from engine.job.result_said import headline
-from engine.job.rows import Entry
-from engine.job.runs import run_of_log
+from engine.job.result.intake import read
+from engine.job.result.runs import run_of_log
+from engine.job.result.said import headline
 from engine.measurement.logbook_write import write_log
 from engine.screen import logs
 from engine.screen.style import escaped
@@ -308,7 +308,7 @@ def test_what_is_saved_is_the_result_on_screen():
     app = opened(DEMO.with_(readings=sets(*TEN)))
     keys = {b.proto.id.split("-")[-1] if hasattr(b, "proto") else "" for b in app.get("download_button")}
     assert {"result json", "runs csv", "rows csv"} <= keys
-    from engine.job.result_data import as_json
+    from engine.job.result.data import as_json
 
     data = json.loads(as_json(app.session_state["reduced"][2], app.session_state["checked"][1]))
     assert f"{data['x']:.4f}" in answer(app).replace("\\", "") and data["monte_carlo"]["draws"] == 20_000

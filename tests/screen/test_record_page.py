@@ -6,19 +6,19 @@ from pathlib import Path
 import pytest
 from streamlit.testing.v1 import AppTest
 
-from engine.job.casefile import to_json, to_link
-from engine.job.demo import DEMO
-from engine.job.demo_log import demo_log
-from engine.job.examples import HEATED, HEATING_STEAM, REDUCING_VALVE
-from engine.job.fields_instruments import HALF_WIDTH
-from engine.job.fields_path import EXPECTED, READING, UNDECIDED
-from engine.job.intake import read
+from engine.job.case.casefile import to_json, to_link
+from engine.job.case.demo import DEMO
+from engine.job.case.examples import HEATED, HEATING_STEAM, REDUCING_VALVE
+from engine.job.case.fields_instruments import HALF_WIDTH
+from engine.job.case.fields_path import EXPECTED, READING, UNDECIDED
+from engine.job.case.rows import Entry
 from engine.job.record import facts_of, headline, record_html, summary
+from engine.job.rehearsal.demo_log import demo_log
 from engine.job.result import reduce
-from engine.job.rows import Entry
-from engine.job.runs import run_of_log, runs_typed
+from engine.job.result.intake import read
+from engine.job.result.runs import run_of_log, runs_typed
 from engine.job.runsheet import tick
-from engine.job.runsheet_readings import with_reading
+from engine.job.runsheet.readings import with_reading
 from engine.screen.style import escaped
 from engine.steam.units import SI, US
 

@@ -7,19 +7,19 @@ from pathlib import Path
 import pytest
 from streamlit.testing.v1 import AppTest
 
-from engine.job.casefile import to_link as case_link
-from engine.job.demo import DEMO
-from engine.job.examples import WET_LINE_READ
+from engine.job.case.casefile import to_link as case_link
+from engine.job.case.demo import DEMO
+from engine.job.case.examples import WET_LINE_READ
+from engine.job.commands.rehearse import by_the_book
 from engine.job.rehearsal import Finding, Statement, advance, begin, look, state
-from engine.job.rehearsal_link import from_link, to_link
-from engine.job.rehearsal_readings import Way, reckoned
-from engine.job.rehearsal_said import headline, truth
-from engine.job.rehearsal_verdict import verdict_of
-from engine.job.rehearse_command import by_the_book
-from engine.job.rig_looks import Look
-from engine.job.rig_valves import Deed
-from engine.job.scenario import HiddenFault, Load, Scenario
-from engine.job.simulation import LONGEST
+from engine.job.rehearsal.link import from_link, to_link
+from engine.job.rehearsal.looks import Look
+from engine.job.rehearsal.readings import Way, reckoned
+from engine.job.rehearsal.said import headline, truth
+from engine.job.rehearsal.scenario import HiddenFault, Load, Scenario
+from engine.job.rehearsal.simulation import LONGEST
+from engine.job.rehearsal.valves import Deed
+from engine.job.rehearsal.verdict import verdict_of
 from engine.screen.style import escaped
 from engine.steam.units import SI, US
 

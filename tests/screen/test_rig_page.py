@@ -8,15 +8,15 @@ import pytest
 from streamlit.testing.v1 import AppTest
 
 from engine.job.case import BLANK
-from engine.job.casefile import to_link
-from engine.job.demo import DEMO
-from engine.job.fields_path import BY_CONDUCTANCE
-from engine.job.fields_rig import COMPUTED
-from engine.job.forecast_words import forecast_headline
+from engine.job.case.casefile import to_link
+from engine.job.case.demo import DEMO
+from engine.job.case.fields_path import BY_CONDUCTANCE
+from engine.job.case.fields_rig import COMPUTED
+from engine.job.case.rows import Entry
 from engine.job.rig import assess_rig
-from engine.job.rig_tables import headline
-from engine.job.rows import Entry
+from engine.job.rig.tables import headline
 from engine.job.uncertainty import forecast
+from engine.job.uncertainty.forecast_words import forecast_headline
 from engine.screen.style import escaped
 
 APP = Path(__file__).parents[2] / "app.py"

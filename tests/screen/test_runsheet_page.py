@@ -7,13 +7,13 @@ import pytest
 from streamlit.testing.v1 import AppTest
 
 from engine.job.case import faults_of
-from engine.job.casefile import to_link
-from engine.job.demo import DEMO
-from engine.job.examples import EXAMPLES, HEATED, HEATING_STEAM
-from engine.job.fields import FIELDS
-from engine.job.rows import Entry
+from engine.job.case.casefile import to_link
+from engine.job.case.demo import DEMO
+from engine.job.case.examples import EXAMPLES, HEATED, HEATING_STEAM
+from engine.job.case.fields import FIELDS
+from engine.job.case.rows import Entry
 from engine.job.runsheet import headline, run_sheet, tick, ticks_of
-from engine.job.runsheet_readings import with_reading
+from engine.job.runsheet.readings import with_reading
 from engine.screen.style import escaped
 from engine.steam.units import SI, US
 

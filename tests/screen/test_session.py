@@ -5,8 +5,8 @@ from pathlib import Path
 import pytest
 from streamlit.testing.v1 import AppTest
 
-from engine.job.demo import DEMO
-from engine.job.rows import Entry
+from engine.job.case.demo import DEMO
+from engine.job.case.rows import Entry
 
 SLIDER, EXACT = "slide T_exhaust °C", "exact T_exhaust °C"
 

@@ -6,9 +6,9 @@ from typing import Any
 
 import numpy as np
 
-from engine.job.fields_instruments import AT_LEAST
+from engine.job.case.fields_instruments import AT_LEAST
 from engine.job.result import Result
-from engine.job.result_said import verdict_lines, verdict_word
+from engine.job.result.said import verdict_lines, verdict_word
 from engine.job.uncertainty import Check
 from engine.screen.charts.diagram import Diagram
 

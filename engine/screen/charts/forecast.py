@@ -2,11 +2,11 @@
 
 from __future__ import annotations
 
-from engine.job.forecast_words import forecast_headline, largest_first
 from engine.job.result import Result
-from engine.job.result_said import told
-from engine.job.rig_tables import points
+from engine.job.result.said import told
+from engine.job.rig.tables import points
 from engine.job.uncertainty import Forecast
+from engine.job.uncertainty.forecast_words import forecast_headline, largest_first
 from engine.measurement import SAMPLING
 from engine.screen.charts.diagram import Diagram
 from engine.screen.charts.ranking import words_above

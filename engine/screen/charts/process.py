@@ -9,8 +9,8 @@ from typing import Any
 import numpy as np
 
 from engine.calorimeter import Path
-from engine.job.answer import answer
 from engine.job.assessment import Assessment, StatePoint, Verdict
+from engine.job.assessment.answer import answer
 from engine.screen.charts.background import AXES, HS, PH, TS, Axes, axis_title, background, shown
 from engine.screen.charts.diagram import Diagram
 from engine.steam.units import UnitSystem

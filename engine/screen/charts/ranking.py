@@ -7,8 +7,8 @@ from collections.abc import Sequence
 from typing import Any
 
 from engine.job.rig import RigAssessment
-from engine.job.rig_effects import Effect
-from engine.job.rig_tables import LEFT, TAKEN, headline, points
+from engine.job.rig.effects import Effect
+from engine.job.rig.tables import LEFT, TAKEN, headline, points
 from engine.screen.charts.diagram import Diagram
 from engine.steam.units import UnitSystem
 

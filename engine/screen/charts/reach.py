@@ -9,12 +9,12 @@ from typing import Any
 
 import numpy as np
 
-from engine.job.instrument_chart import InstrumentChart
-from engine.job.methods_said import thermometer
-from engine.job.printable import nice_step
+from engine.job.assessment.methods_said import thermometer
 from engine.job.reach import ReachAssessment
-from engine.job.reach_map import MapKey, Section, WetnessMap, edge_of, map_key, wetness_map
-from engine.job.reach_said import percent, said
+from engine.job.reach.instrument_chart import InstrumentChart
+from engine.job.reach.map import MapKey, Section, WetnessMap, edge_of, map_key, wetness_map
+from engine.job.reach.printable import nice_step
+from engine.job.reach.said import percent, said
 from engine.screen.charts.diagram import Diagram
 from engine.steam.units import SYSTEMS, UnitSystem, from_si
 

@@ -6,9 +6,9 @@ from typing import Any, NamedTuple
 
 import numpy as np
 
-from engine.job.reduction import RunResult
 from engine.job.result import Result
-from engine.job.result_said import LABELS, upper_first
+from engine.job.result.reduction import RunResult
+from engine.job.result.said import LABELS, upper_first
 from engine.screen.charts.diagram import Diagram
 from engine.steam import saturation_temperature
 from engine.steam.units import UnitSystem

@@ -7,8 +7,8 @@ from typing import Any
 import numpy as np
 
 from engine.job.rig import RigAssessment
-from engine.job.rig_flow import RATIOS
-from engine.job.rig_tables import points
+from engine.job.rig.flow import RATIOS
+from engine.job.rig.tables import points
 from engine.screen.charts.diagram import Diagram
 from engine.steam.units import UnitSystem, from_si
 

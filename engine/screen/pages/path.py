@@ -4,11 +4,12 @@ from __future__ import annotations
 
 import streamlit as st
 
-from engine.job.answer import answer
 from engine.job.assessment import Assessment
-from engine.job.cautions import CAUTIONS, SHORT
-from engine.job.fields_modes import ELECTRIC, SEPARATING, THROTTLING
-from engine.job.fields_path import (
+from engine.job.assessment.answer import answer
+from engine.job.assessment.cautions import CAUTIONS, SHORT
+from engine.job.assessment.tables import as_csv, comparison_rows, state_rows, velocity_rows
+from engine.job.case.fields_modes import ELECTRIC, SEPARATING, THROTTLING
+from engine.job.case.fields_path import (
     BY_ALTITUDE,
     BY_CONDUCTANCE,
     BY_KG,
@@ -19,7 +20,6 @@ from engine.job.fields_path import (
     READING,
     UNDECIDED,
 )
-from engine.job.tables import as_csv, comparison_rows, state_rows, velocity_rows
 from engine.screen import entries, live, methods, session, style
 from engine.screen.charts.process import process_diagrams
 from engine.screen.charts.speed import velocity_diagram

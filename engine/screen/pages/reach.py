@@ -5,16 +5,16 @@ from __future__ import annotations
 import streamlit as st
 
 from engine.calorimeter import Readability
+from engine.job.assessment.cautions import SHORT
+from engine.job.assessment.tables import as_csv
 from engine.job.case import Case
-from engine.job.cautions import SHORT
-from engine.job.fields_modes import ELECTRIC
-from engine.job.instrument_chart import InstrumentChart, instrument_chart
-from engine.job.printable import chart_page, chart_rows, conditions, slopes_said
+from engine.job.case.fields_modes import ELECTRIC
 from engine.job.reach import ReachAssessment
-from engine.job.reach_map import sections
-from engine.job.reach_said import SHAPES, VERDICTS, ladder_rows, percent, said, way_change, way_title
-from engine.job.tables import as_csv
-from engine.job.ways import Way
+from engine.job.reach.instrument_chart import InstrumentChart, instrument_chart
+from engine.job.reach.map import sections
+from engine.job.reach.printable import chart_page, chart_rows, conditions, slopes_said
+from engine.job.reach.said import SHAPES, VERDICTS, ladder_rows, percent, said, way_change, way_title
+from engine.job.reach.ways import Way
 from engine.screen import entries, live, methods, session, style
 from engine.screen.charts.reach import instrument_diagram, reach_map_diagram, section_diagrams
 from engine.screen.rigs import planned

@@ -7,16 +7,16 @@ from io import BytesIO
 
 import streamlit as st
 
-from engine.job.cautions import CAUTIONS, SHORT
-from engine.job.corrections import case_of, switched_off
-from engine.job.demo_log import demo_log
-from engine.job.fields_path import BY_CONDUCTANCE, BY_KG, BY_NORMAL, BY_TWO_FLOWS
-from engine.job.fields_rig import ELECTRIC_PROBE, MERCURY, ORGANIC
-from engine.job.forecast_words import budget_rows
+from engine.job.assessment.cautions import CAUTIONS, SHORT
+from engine.job.assessment.tables import as_csv
+from engine.job.case.fields_path import BY_CONDUCTANCE, BY_KG, BY_NORMAL, BY_TWO_FLOWS
+from engine.job.case.fields_rig import ELECTRIC_PROBE, MERCURY, ORGANIC
+from engine.job.rehearsal.demo_log import demo_log
 from engine.job.result import Result
-from engine.job.result_data import as_json, run_table, write_rows
-from engine.job.result_said import check_lines, counted, decision_words, rule_text, run_rows, told, upper_first
-from engine.job.tables import as_csv
+from engine.job.result.corrections import case_of, switched_off
+from engine.job.result.data import as_json, run_table, write_rows
+from engine.job.result.said import check_lines, counted, decision_words, rule_text, run_rows, told, upper_first
+from engine.job.uncertainty.forecast_words import budget_rows
 from engine.screen import entries, live, log_columns, logs, run_view, session, typed
 from engine.screen.charts.decision import decision_diagram, draws_diagram
 from engine.screen.charts.forecast import budget_diagram

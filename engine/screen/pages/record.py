@@ -6,9 +6,9 @@ from functools import partial
 
 import streamlit as st
 
+from engine.job.assessment.cautions import SHORT
 from engine.job.case import Case
-from engine.job.cautions import SHORT
-from engine.job.fields_modes import ELECTRIC
+from engine.job.case.fields_modes import ELECTRIC
 from engine.job.paper import PAPERS, usual_paper
 from engine.job.record import Facts, facts_of, headline, reasons_against, record_html, record_zip, summary
 from engine.job.result import Result

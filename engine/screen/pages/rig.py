@@ -6,13 +6,13 @@ from collections.abc import Callable, Sequence
 
 import streamlit as st
 
-from engine.job.cautions import SHORT
-from engine.job.fields_path import BY_CONDUCTANCE, BY_KG, BY_NORMAL
-from engine.job.fields_rig import BARE, COMPUTED, ELECTRIC_PROBE, MERCURY, OPEN_AIR, ORGANIC, VESSEL, WEIGHED
-from engine.job.forecast_words import budget_rows, forecast_advice, forecast_headline
+from engine.job.assessment.cautions import SHORT
+from engine.job.assessment.tables import as_csv
+from engine.job.case.fields_path import BY_CONDUCTANCE, BY_KG, BY_NORMAL
+from engine.job.case.fields_rig import BARE, COMPUTED, ELECTRIC_PROBE, MERCURY, OPEN_AIR, ORGANIC, VESSEL, WEIGHED
 from engine.job.rig import RigAssessment
-from engine.job.rig_offers import Offer, offers
-from engine.job.rig_tables import (
+from engine.job.rig.offers import Offer, offers
+from engine.job.rig.tables import (
     comparison_rows,
     effect_rows,
     exhaust_rows,
@@ -31,7 +31,7 @@ from engine.job.rig_tables import (
     thermometer_words,
     warming_rows,
 )
-from engine.job.tables import as_csv
+from engine.job.uncertainty.forecast_words import budget_rows, forecast_advice, forecast_headline
 from engine.screen import entries, live, session
 from engine.screen.charts.diagram import Diagram
 from engine.screen.charts.forecast import budget_diagram

@@ -4,28 +4,28 @@ from __future__ import annotations
 
 import streamlit as st
 
+from engine.job.assessment.cautions import CAUTIONS, SHORT
 from engine.job.case import faults_of
-from engine.job.cautions import CAUTIONS, SHORT
-from engine.job.fields_modes import ELECTRIC
-from engine.job.fields_runsheet import GAS_NONE, GAS_NOTED
+from engine.job.case.fields_modes import ELECTRIC
+from engine.job.case.fields_runsheet import GAS_NONE, GAS_NOTED
+from engine.job.case.rows import Entry
 from engine.job.paper import PAPERS, Table, usual_paper
-from engine.job.rows import Entry
 from engine.job.runsheet import RunSheet, headline, notices, tick, untick
-from engine.job.runsheet_print import (
+from engine.job.runsheet.print import (
     deviation_table,
     gauge_table,
     mark_table,
     runsheet_html,
     title_of,
 )
-from engine.job.runsheet_readings import (
+from engine.job.runsheet.readings import (
     columns_of,
     reading_table,
     readings_outside,
     runs_of,
     with_reading,
 )
-from engine.job.runsheet_steps import Section, Step
+from engine.job.runsheet.steps import Section, Step
 from engine.screen import clock, entries, rehearsal_view, session
 from engine.screen.sheets import sheet_of
 from engine.screen.style import escaped, escaped_lines

@@ -9,11 +9,11 @@ from html.parser import HTMLParser
 import numpy as np
 import pytest
 
-from engine.job.demo import DEMO
+from engine.job.case.demo import DEMO
+from engine.job.commands.rehearse import by_the_book
 from engine.job.rehearsal import advance, begin, take_readings
-from engine.job.rehearse_command import by_the_book
-from engine.job.runsheet_plan import plan_of
-from engine.job.scenario import HiddenFault, Scenario
+from engine.job.rehearsal.scenario import HiddenFault, Scenario
+from engine.job.runsheet.plan import plan_of
 from engine.screen.charts.dials import BEGIN, SWEEP, Face, angle, faces_html, nice_end, ticks
 from engine.screen.charts.rehearsal import FINELY, recorder
 from engine.screen.rehearsal_faces import decimals_of, faces_of

@@ -9,9 +9,9 @@ import numpy as np
 import pytest
 
 from engine.job.assessment import assess
-from engine.job.demo import DEMO
-from engine.job.fields_path import EXPECTED, NONE
-from engine.job.rows import Entry
+from engine.job.case.demo import DEMO
+from engine.job.case.fields_path import EXPECTED, NONE
+from engine.job.case.rows import Entry
 from engine.screen.charts.background import AXES, background, shown
 from engine.screen.charts.process import process_diagrams
 from engine.screen.charts.speed import velocity_diagram

@@ -8,12 +8,12 @@ from functools import cache
 import numpy as np
 import pytest
 
-from engine.job.demo import DEMO
-from engine.job.examples import EXAMPLES, HEATED, HEATING_STEAM, WET_LINE, WET_LINE_READ
-from engine.job.instrument_chart import instrument_chart
+from engine.job.case.demo import DEMO
+from engine.job.case.examples import EXAMPLES, HEATED, HEATING_STEAM, WET_LINE, WET_LINE_READ
+from engine.job.case.rows import Entry
 from engine.job.reach import assess_reach
-from engine.job.reach_map import map_key, sections
-from engine.job.rows import Entry
+from engine.job.reach.instrument_chart import instrument_chart
+from engine.job.reach.map import map_key, sections
 from engine.screen.charts import wire
 from engine.screen.charts.diagram import COLOURS
 from engine.screen.charts.reach import (

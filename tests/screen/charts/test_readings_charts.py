@@ -3,12 +3,12 @@
 import numpy as np
 import pytest
 
-from engine.job.decisions import with_removed, with_window
-from engine.job.demo import DEMO
-from engine.job.fields import FIELDS
+from engine.job.case.demo import DEMO
+from engine.job.case.fields import FIELDS
+from engine.job.case.rows import Entry
 from engine.job.result import reduce
-from engine.job.rows import Entry
-from engine.job.runs import Run, runs_typed
+from engine.job.result.decisions import with_removed, with_window
+from engine.job.result.runs import Run, runs_typed
 from engine.job.uncertainty import check
 from engine.screen.charts.decision import decision_diagram, draws_diagram
 from engine.screen.charts.readings import MOST, decimated, run_diagram

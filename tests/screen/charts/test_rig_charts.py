@@ -10,11 +10,11 @@ import numpy as np
 import pytest
 
 from engine.job.case import BLANK
-from engine.job.demo import DEMO
-from engine.job.fields_rig import COMPUTED
+from engine.job.case.demo import DEMO
+from engine.job.case.fields_rig import COMPUTED
+from engine.job.case.rows import Entry
 from engine.job.rig import assess_rig
-from engine.job.rig_tables import headline
-from engine.job.rows import Entry
+from engine.job.rig.tables import headline
 from engine.job.uncertainty import forecast
 from engine.screen.charts import wire
 from engine.screen.charts.forecast import budget_diagram

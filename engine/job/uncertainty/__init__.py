@@ -1,0 +1,41 @@
+"""How sure is the quality? The case's doubts as inputs of the budget, and the forecast before the test."""
+
+from engine.job.uncertainty.uncertainty import (
+    HEAT_LOSS,
+    READINGS,
+    Better,
+    Check,
+    Forecast,
+    Measurement,
+    Reading,
+    Term,
+    check,
+    forecast,
+    improvements,
+    leg_pressure,
+    measurement_of,
+    prepare,
+    reading_of,
+    terms_of,
+    verdicts,
+)
+
+__all__ = [
+    "Better",
+    "Check",
+    "check",
+    "forecast",
+    "Forecast",
+    "HEAT_LOSS",
+    "improvements",
+    "leg_pressure",
+    "Measurement",
+    "measurement_of",
+    "prepare",
+    "Reading",
+    "reading_of",
+    "READINGS",
+    "Term",
+    "terms_of",
+    "verdicts",
+]
