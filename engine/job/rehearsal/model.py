@@ -1,6 +1,6 @@
 """The simulated rig as it should be: made from a case, with what is usual where the case says nothing.
 
-What a scenario hides is put into it by ``rig_faults``.
+What a scenario hides is put into it by ``faults``.
 """
 
 from __future__ import annotations
