@@ -10,7 +10,7 @@ Cases broadcast together; a path adds one axis at the end, its points from line 
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, fields
 from functools import cache
 
 import numpy as np
@@ -60,6 +60,10 @@ class Path:
     def chokes(self):
         """Whether the path ends above the exhaust pressure."""
         return ~np.isnan(self.p_choke)
+
+    def row(self, k: int) -> Path:
+        """The path of one of several cases."""
+        return Path(*(getattr(self, field.name)[k] for field in fields(self)))
 
 
 def _dry_enthalpy(p: np.ndarray) -> np.ndarray:

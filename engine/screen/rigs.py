@@ -8,7 +8,7 @@ from engine.job.case import Case
 from engine.job.reach import ReachAssessment, assess_reach
 from engine.job.reach.ways import Way, ways
 from engine.job.rig import RigAssessment, assess_rig
-from engine.job.uncertainty import Forecast, forecast
+from engine.job.uncertainty import Forecast, forecast, forecast_or_why
 from engine.screen.shell import assessed
 
 
@@ -22,6 +22,12 @@ def rig_of(case: Case) -> RigAssessment:
 def expected_of(case: Case) -> Forecast:
     """The uncertainty to expect of a case. Raises InputError."""
     return forecast(case, assessed(case))
+
+
+@lru_cache(maxsize=64)
+def sure_of(case: Case) -> Forecast:
+    """The same beside an answer: what cannot be forecast says why. Raises InputError where there is no answer."""
+    return forecast_or_why(case, assessed(case))
 
 
 @lru_cache(maxsize=32)

@@ -28,7 +28,8 @@ _CSS = """
 </style>
 """
 
-_STROKES = {"solid": "solid", "dashed": "dashed", "dotted": "dotted"}
+_STROKES = {"solid": "3px solid {}", "dashed": "3px dashed {}", "dotted": "3px dotted {}",
+            "band": "10px solid {}; opacity: .35"}
 
 
 def legend(rows: tuple[tuple[str, str, str], ...]) -> None:
@@ -36,7 +37,7 @@ def legend(rows: tuple[tuple[str, str, str], ...]) -> None:
     parts = []
     for colour, stroke, words in rows:
         paint = "currentColor" if colour == "text" else COLOURS[colour].light
-        parts.append(f'<span class="legend"><i style="border-top:3px {_STROKES[stroke]} {paint}"></i>'
+        parts.append(f'<span class="legend"><i style="border-top: {_STROKES[stroke].format(paint)}"></i>'
                      f"{html.escape(words)}</span>")
     st.html(f'<div class="legends">{" ".join(parts)}</div>')
 

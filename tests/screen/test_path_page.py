@@ -7,12 +7,13 @@ import pytest
 from streamlit.testing.v1 import AppTest
 
 from engine.job.assessment import assess
-from engine.job.assessment.answer import answer
 from engine.job.case import BLANK
 from engine.job.case.casefile import to_json, to_link
 from engine.job.case.demo import DEMO
 from engine.job.case.fields_path import BY_NORMAL, EXPECTED, NONE
 from engine.job.case.rows import Entry
+from engine.job.uncertainty import forecast_or_why
+from engine.job.uncertainty.answer_with import answer_with
 from engine.screen.style import escaped
 from engine.steam.units import SI, US
 
@@ -71,7 +72,7 @@ def headline(app):
 
 def says(app, case, units=SI):
     """Whether bar and answer are those of the case."""
-    words = answer(assess(case), units)
+    words = answer_with(forecast_or_why(case, assess(case)), units)
     return headline(app) == f"{words.shape} {words.headline}" and words.verdict in bar(app)
 
 
@@ -109,10 +110,12 @@ def test_a_first_visit_shows_an_invented_case_and_says_so(first):
     assert "This is an invented demo case." in captions(first)
     assert bar(first) == ("**Factory main at 10 bar** · line 9 bar gauge · exhaust 1.021 bar absolute · "
                         "reading 121.1 °C · **● reads 0.9720**")
-    assert headline(first) == "● Quality in the line 0.9720, wetness 2.80 %."
+    assert headline(first) == "● Quality in the line 0.9720 ± 0.0058, wetness 2.80 ± 0.58 %."
     reasons = first.markdown[2].value
-    assert reasons == ("The exhaust is 20.9 K superheated, 15.9 K above the least readable superheat of 5 K. "
-                       "Between these pressures the least readable quality is 0.9558.")
+    assert reasons == ("The quality is told to ± 0.58 %pt (k = 2.00, coverage 95.45 %), by the instruments alone to "
+                       "± 0.077 %pt; the scatter of readings comes on top. The exhaust is 20.9 K superheated, "
+                       "15.9 K above the least readable superheat of 5 K. Between these pressures the least readable "
+                       "quality is 0.9558.")
     assert "Heat loss 2.0 kJ/kg of sample, by conductance, +0.10 %pt." in captions(first)
 
 
@@ -131,7 +134,7 @@ def test_the_states_and_velocities_are_on_screen(first):
 def test_three_diagrams_and_the_velocities_are_drawn(first):
     drawn = diagrams(first)
     assert list(drawn) == ["Ts", "hs", "Ph", "velocity"]
-    assert drawn["Ts"]["label"] == "T–s diagram. Quality in the line 0.9720, wetness 2.80 %."
+    assert drawn["Ts"]["label"] == "T–s diagram. Quality in the line 0.9720 ± 0.0058, wetness 2.80 ± 0.58 %."
     assert all(trace["x"] for trace in drawn["Ph"]["traces"] if trace["name"] in ("constant enthalpy", "states"))
 
 
@@ -158,13 +161,13 @@ def test_a_slider_moves_answer_bar_diagrams_and_exact_entry(at_hand, key, value,
     case = DEMO.with_(**changes)
     assert open_case(app) == case and says(app, case)
     assert app.number_input(key=key.replace("slide", "exact")).value == value
-    assert answer(assess(case), SI).headline in diagrams(app)["hs"]["label"]
+    assert answer_with(forecast_or_why(case, assess(case)), SI).headline in diagrams(app)["hs"]["label"]
     assert "demo case" not in captions(app)
 
 
 def test_the_numbers_after_a_step_of_the_slider(app):
     ran(app.slider(key="slide T_exhaust °C").set_value(122.1))
-    assert headline(app) == "● Quality in the line 0.9730, wetness 2.70 %."  # 0.100 %pt per kelvin at 10 bar
+    assert headline(app) == "● Quality in the line 0.9730 ± 0.0058, wetness 2.70 ± 0.58 %."  # 0.1 %pt per kelvin
     assert table(app, "Line").at[0, "x"] == "0.9730"
 
 
@@ -213,7 +216,7 @@ def test_the_other_question(app):
     assert headline(app) == "○ A wetness of 6.00 % cannot be read here."
     assert "cannot read" in bar(app) and "0.94" not in bar(app)
     ran(app.segmented_control(key="choice question").set_value("reading"))
-    assert headline(app) == "● Quality in the line 0.9720, wetness 2.80 %."
+    assert headline(app) == "● Quality in the line 0.9720 ± 0.0058, wetness 2.80 ± 0.58 %."
 
 
 def test_the_barometer_from_the_altitude(app):

@@ -188,7 +188,7 @@ def _throttled(case: Case, si: Resolved) -> Assessment:
         h_line = line.h_f + min(x_bound, 1.0) * (line.h_g - line.h_f)
     h_least = line.h_f + x_least * (line.h_g - line.h_f)
     both = isenthalpic_path_at(p1, np.array([h_line, h_least]), p2, points=POINTS)
-    path, reach_path = _row(both, 0), _row(both, 1)
+    path, reach_path = both.row(0), both.row(1)
     velocities = _velocities(case, si, path, line)
     bore_path = None
     if velocities.sample and line_superheat == 0.0 and path.x[0] <= 1.0:
@@ -265,13 +265,6 @@ def _expected(case: Case, si: Resolved, x: float):
         if moved < 1e-6:
             break
     return T, seen.superheat, seen.x_exhaust, terms, seen.status
-
-
-def _row(paths: Path, k: int) -> Path:
-    def pick(value):
-        return value[k]
-
-    return Path(*(pick(getattr(paths, name)) for name in Path.__dataclass_fields__))
 
 
 def _velocities(case: Case, si: Resolved, path: Path, line: Saturated) -> Velocities:

@@ -15,7 +15,6 @@ from typing import NamedTuple, TextIO
 
 from engine import __version__
 from engine.job.assessment import assess
-from engine.job.assessment.answer import answer
 from engine.job.assessment.verdict import Verdict
 from engine.job.case import Case
 from engine.job.case.casefile import from_json
@@ -24,8 +23,9 @@ from engine.job.commands.console import OPEN as NO_ANSWER
 from engine.job.commands.documents import record_arguments, record_command, runsheet_arguments, runsheet_command
 from engine.job.commands.reduce import reduce_arguments, reduce_command
 from engine.job.commands.rehearse import rehearse_arguments, rehearse_command
-from engine.job.uncertainty import forecast
-from engine.job.uncertainty.forecast_words import forecast_advice, forecast_headline
+from engine.job.uncertainty import forecast_or_why
+from engine.job.uncertainty.answer_with import answer_with
+from engine.job.uncertainty.forecast_words import forecast_advice
 from engine.steam.errors import Fault, InputError
 from engine.steam.units import SYSTEMS
 
@@ -50,10 +50,11 @@ def _quality(options: argparse.Namespace, console: Console) -> int:
     """What one reading, or an expected wetness, says: the answer of the Path page, and its uncertainty."""
     case = read_case(options.case)
     a, units = assess(case), SYSTEMS[options.units]
-    said, expected = answer(a, units), forecast(case, a)
+    expected = forecast_or_why(case, a)
+    said = answer_with(expected, units)
     if str(options.json) != "-":
-        for line in (f"{said.shape} {said.headline}", *said.reasons, *said.remedies, forecast_headline(expected),
-                     *forecast_advice(expected), *said.assumed):
+        for line in (f"{said.shape} {said.headline}", *said.reasons, *said.remedies, *forecast_advice(expected),
+                     *said.assumed):
             console.say(line)
     if options.json:
         figures = {"verdict": a.verdict.value, "x": a.x, "x_below": a.x_below, "superheat": a.superheat,

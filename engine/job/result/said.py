@@ -14,7 +14,8 @@ from engine.job.result.reduction import RunResult
 from engine.job.result.result import Result
 from engine.job.rig.tables import points
 from engine.job.uncertainty import Check
-from engine.measurement import Budget, Interval, Outcome, Reason, Unsettled, Verdict, decimals_of
+from engine.job.uncertainty.figures import figures, wetness_figures
+from engine.measurement import Interval, Outcome, Reason, Unsettled, Verdict
 from engine.steam.units import UnitSystem, uncertainty_from_si
 
 # A shape beside the word, so that a verdict never hangs on colour alone
@@ -51,21 +52,7 @@ def told(result: Result) -> Told:
 def headline(result: Result) -> str:
     """``Quality 0.9720 ± 0.0058, wetness 2.80 ± 0.58 %.``"""
     x, U = figures(result.budget)
-    return f"Quality {x} ± {U}, wetness {_wetness(result.budget)} %."
-
-
-def figures(budget: Budget) -> tuple[str, str]:
-    """Quality and expanded uncertainty in the digits that the uncertainty allows: two of its own.
-
-    Six decimals at most: no thermometer tells more.
-    """
-    places = max(0, min(decimals_of(budget.U), 6)) if budget.U > 0 else 6
-    return f"{budget.value:.{places}f}", f"{budget.U:.{places}f}"
-
-
-def _wetness(budget: Budget) -> str:
-    places = max(0, min(decimals_of(100 * budget.U), 4)) if budget.U > 0 else 4
-    return f"{100 * (1 - budget.value):.{places}f} ± {100 * budget.U:.{places}f}"
+    return f"Quality {x} ± {U}, wetness {wetness_figures(result.budget)} %."
 
 
 def _reasons(result: Result) -> tuple[str, ...]:

@@ -9,17 +9,17 @@ from __future__ import annotations
 
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, replace
+from functools import cached_property
 from typing import NamedTuple
 
-import numpy as np
-
-from engine.calorimeter import leg_density
+from engine.calorimeter import Path, leg_density
 from engine.job.assessment import Assessment, Verdict, assess
 from engine.job.assessment.balance import Balance, balance_of
 from engine.job.case import T_LEG, Case, Resolved
 from engine.job.case.fields_instruments import AT_LEAST, HALF_WIDTH
 from engine.job.case.fields_modes import NOT_STATED
 from engine.job.case.fields_path import BY_CONDUCTANCE, BY_NORMAL, BY_TWO_FLOWS, NONE, UNDECIDED
+from engine.job.uncertainty.band import band_of
 from engine.job.uncertainty.instruments import (
     Doubts,
     flow_doubts,
@@ -129,7 +129,6 @@ class Forecast:
     instruments  the same without sampling
     terms        the budget line by line
     better       what to improve, the most helpful first
-    sampling_share  part of the variance that sampling makes up
     missing      what is not stated yet, so that the true uncertainty is larger
     verdicts     the decision this quality would get; None without a limit
     """
@@ -138,12 +137,27 @@ class Forecast:
     unable: str = ""
     budget: Budget | None = None
     instruments: Budget | None = None
-    terms: tuple[Term, ...] = ()
-    better: tuple[Better, ...] = ()
-    sampling_share: float = 0.0
     missing: tuple[str, ...] = ()
     cautions: tuple[str, ...] = ()
     verdicts: Verdicts | None = None
+
+    @cached_property
+    def terms(self) -> tuple[Term, ...]:
+        return terms_of(self.budget) if self.budget else ()
+
+    @cached_property
+    def better(self) -> tuple[Better, ...]:
+        return improvements(self.instruments) if self.instruments else ()
+
+    @cached_property
+    def sampling_share(self) -> float:
+        """Part of the variance that sampling makes up, 0 to 1."""
+        return sum(row.share for row in self.budget.rows if row.group == SAMPLING) if self.budget else 0.0
+
+    @cached_property
+    def band(self) -> tuple[Path, Path] | None:
+        """The paths of a quality smaller and larger by U, as far as there can be such: None where U is none."""
+        return band_of(self.assessment, self.budget.U) if self.budget and self.budget.U > 0 else None
 
     @property
     def sampling_dominates(self) -> bool:
@@ -177,8 +191,23 @@ def forecast(case: Case, assessment: Assessment | None = None) -> Forecast:
     except InputError as error:
         return Forecast(a, error.faults[0].why, missing=measurement.missing, cautions=measurement.cautions)
     instruments = budget.without(SAMPLING)
-    return Forecast(a, "", budget, instruments, terms_of(budget), improvements(instruments),
-                    sampling_share(budget), measurement.missing, measurement.cautions, verdicts(case, a.si, budget))
+    return Forecast(a, "", budget, instruments, measurement.missing, measurement.cautions,
+                    verdicts(case, a.si, budget))
+
+
+def forecast_or_why(case: Case, assessment: Assessment) -> Forecast:
+    """The forecast beside an answer that stands without it: an instrument that does not fit is its reason, no error.
+
+    >>> from engine.job.case.demo import DEMO
+    >>> from engine.job.case.rows import Entry
+    >>> high = DEMO.with_(p_line=Entry(18.0, "bar", "gauge"))
+    >>> forecast_or_why(high, assess(high)).unable
+    'Line gauge: scale to: got 16 bar, needs a scale that holds the reading, 18 bar.'
+    """
+    try:
+        return forecast(case, assessment)
+    except InputError as error:
+        return Forecast(assessment, "; ".join(str(fault).partition("\n")[0] for fault in error.faults) + ".")
 
 
 _UNABLE = {
@@ -291,11 +320,6 @@ def improvements(budget: Budget) -> tuple[Better, ...]:
     """What half the doubt and none would leave of U, the most helpful first; readings cannot be bought."""
     found = [Better(g, budget.improved(g, 0.5).U, budget.improved(g, 0.0).U) for g in budget.groups if g != READINGS]
     return tuple(sorted(found, key=lambda b: b.U_halved))
-
-
-def sampling_share(budget: Budget) -> float:
-    """Part of the variance that sampling makes up, 0 to 1."""
-    return float(np.sum([row.share for row in budget.rows if row.group == SAMPLING]))
 
 
 def check(measurement: Measurement, budget: Budget, *, draws: int = 1_000_000, seed: int = 1,

@@ -11,6 +11,8 @@ import numpy as np
 from engine.calorimeter import Path
 from engine.job.assessment import Assessment, StatePoint, Verdict
 from engine.job.assessment.answer import answer
+from engine.job.uncertainty import Forecast
+from engine.job.uncertainty.answer_with import answer_with
 from engine.screen.charts.background import AXES, HS, PH, TS, Axes, axis_title, background, shown
 from engine.screen.charts.diagram import Diagram
 from engine.steam.units import UnitSystem
@@ -20,17 +22,18 @@ _MARKS = {"Line": "circle", "Throttled steam": "circle-open", "Drained water": "
           "Dries out": "diamond", "Exhaust": "square", "After the heater": "square"}
 
 
-def process_diagrams(a: Assessment, units: UnitSystem,
-                     pinned: Sequence[tuple[str, Assessment]] = ()) -> tuple[Diagram, ...]:
-    """T–s, h–s and P–h of one case, with pinned cases as further paths."""
-    label = answer(a, units).headline
-    return tuple(_diagram(axes, a, units, pinned, label) for axes in AXES)
+def process_diagrams(a: Assessment, units: UnitSystem, pinned: Sequence[tuple[str, Assessment]] = (),
+                     expected: Forecast | None = None) -> tuple[Diagram, ...]:
+    """T–s, h–s and P–h of one case, with pinned cases as further paths and the band of the uncertainty expected."""
+    label = (answer_with(expected, units) if expected else answer(a, units)).headline
+    band = expected.band if expected else None
+    return tuple(_diagram(axes, a, units, pinned, band, label) for axes in AXES)
 
 
-def _diagram(axes: Axes, a: Assessment, units: UnitSystem, pinned, label: str) -> Diagram:
+def _diagram(axes: Axes, a: Assessment, units: UnitSystem, pinned, band, label: str) -> Diagram:
     still = list(background(axes.key, units.name))
-    moving = [_reach(axes, a, units), _pinned(axes, pinned, units), _bore(axes, a, units), _path(axes, a, units),
-              _reading(axes, a, units), _points(axes, a, units)]
+    moving = [_band(axes, band, units), _reach(axes, a, units), _pinned(axes, pinned, units), _bore(axes, a, units),
+              _path(axes, a, units), _reading(axes, a, units), _points(axes, a, units)]
     figure = {"data": still + moving, "layout": _layout(axes, a, units, pinned)}
     name = f"{axes.title} diagram"
     return Diagram(axes.key, axes.title, figure, tuple(range(len(still), len(still) + len(moving))), f"{name}. {label}")
@@ -48,6 +51,16 @@ def _trace(axes: Axes, units: UnitSystem, columns: dict[str, np.ndarray], **more
 
 def _nothing(name: str, **more: Any) -> dict[str, Any]:
     return {"type": "scatter", "mode": "lines", "x": [], "y": [], "name": name, **more}
+
+
+def _band(axes: Axes, band: tuple[Path, Path] | None, units: UnitSystem) -> dict[str, Any]:
+    """Between the paths of the wetter and of the drier steam."""
+    fill = {"fill": "toself", "fillcolor": "var:vermilion/0.22", "line": {"width": 0}}
+    if band is None:
+        return _nothing("uncertainty", **fill)
+    there, back = (_columns(path) for path in band)
+    around = {n: np.concatenate([there[n], back[n][::-1]]) for n in there}
+    return _trace(axes, units, around, name="uncertainty", **fill)
 
 
 def _path(axes: Axes, a: Assessment, units: UnitSystem) -> dict[str, Any]:

@@ -5,7 +5,6 @@ from __future__ import annotations
 import streamlit as st
 
 from engine.job.assessment import Assessment
-from engine.job.assessment.answer import answer
 from engine.job.assessment.cautions import CAUTIONS, SHORT
 from engine.job.assessment.tables import as_csv, comparison_rows, state_rows, velocity_rows
 from engine.job.case.fields_modes import ELECTRIC, SEPARATING, THROTTLING
@@ -20,9 +19,11 @@ from engine.job.case.fields_path import (
     READING,
     UNDECIDED,
 )
+from engine.job.uncertainty.answer_with import answer_with
 from engine.screen import entries, live, methods, session, style
 from engine.screen.charts.process import process_diagrams
 from engine.screen.charts.speed import velocity_diagram
+from engine.screen.rigs import sure_of
 from engine.screen.shell import assessed
 from engine.screen.style import escaped, escaped_lines
 from engine.steam.errors import InputError
@@ -33,6 +34,7 @@ WAYS = {THROTTLING: "constant enthalpy: ● line, ◆ dries out, ■ exhaust",
         ELECTRIC: "heating: ● line, ◆ dries out, ■ after the heater"}
 LEGEND = (("blue", "dashed", "one constant bore; ✚ exhaust as read"),
           ("text", "dashed", "reach limit: the wettest steam still readable"), ("green", "solid", "pinned cases"))
+BAND = ("vermilion", "band", "expanded uncertainty of the quality")
 LOSSES = {UNDECIDED: "Not decided yet", NONE: "Knowingly none", BY_CONDUCTANCE: "By conductance UA",
           BY_KG: "Known per kg of sample", BY_NORMAL: "By a normal reading on dry steam", BY_TWO_FLOWS: "By two flows"}
 ENTRIES_OF_LOSS = {BY_CONDUCTANCE: ("conductance", "T_ambient"), BY_KG: ("heat_loss",), BY_NORMAL: ("T_normal",),
@@ -49,8 +51,9 @@ def page() -> None:
         return
     units = session.units()
     others = _pinned()
-    live.show(process_diagrams(a, units, others), key="process", height=420)
-    style.legend((("vermilion", "solid", WAYS[session.case()["mode"]]), *LEGEND))
+    expected = sure_of(a.case)
+    live.show(process_diagrams(a, units, others, expected), key="process", height=420)
+    style.legend((("vermilion", "solid", WAYS[session.case()["mode"]]), *([BAND] if expected.band else []), *LEGEND))
     st.caption(SHORT)
     _assumed()
     if not a.heating:
@@ -107,7 +110,7 @@ def _assessment(place) -> Assessment | None:
 
 
 def _say(a: Assessment) -> None:
-    said = answer(a, session.units())
+    said = answer_with(sure_of(a.case), session.units())
     st.markdown(f"### {said.shape} {said.headline}")
     st.markdown(" ".join((*said.reasons, *said.remedies)))
     st.caption(" ".join(said.assumed))

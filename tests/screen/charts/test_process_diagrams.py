@@ -12,6 +12,7 @@ from engine.job.assessment import assess
 from engine.job.case.demo import DEMO
 from engine.job.case.fields_path import EXPECTED, NONE
 from engine.job.case.rows import Entry
+from engine.job.uncertainty import forecast
 from engine.screen.charts.background import AXES, background, shown
 from engine.screen.charts.process import process_diagrams
 from engine.screen.charts.speed import velocity_diagram
@@ -201,7 +202,7 @@ def test_figures_are_pure_and_plain(case, units):
         for trace in d.figure["data"]:
             assert len(trace["x"]) == len(trace["y"])
             assert [x is None for x in trace["x"]] == [y is None for y in trace["y"]]
-        assert d.moving == tuple(range(len(d.figure["data"]) - 6, len(d.figure["data"])))
+        assert d.moving == tuple(range(len(d.figure["data"]) - 7, len(d.figure["data"])))
 
 
 @BOTH
@@ -255,3 +256,18 @@ def test_without_flow_or_bores_there_is_no_velocity_diagram():
 def test_one_bore_alone_is_drawn():
     only = velocity_diagram(assess(DEMO.with_(line_bore=None)), SI).figure["data"]
     assert [len(trace["x"]) > 0 for trace in only] == [False, True, False]
+
+
+@BOTH
+@EACH
+def test_the_band_is_as_wide_as_the_uncertainty(axes, units):
+    found = forecast(DEMO)
+    drawn = traces({d.key: d for d in process_diagrams(assess(DEMO), units, expected=found)}[axes.key])
+    band, path = points(drawn["uncertainty"]), points(drawn["constant enthalpy"])
+    assert not drawn_alone(DEMO, units.name)[axes.key].figure["data"][-7]["x"]  # none where none is asked for
+    x, y = shown(axes, units, {n: np.array([getattr(path_, n)[0] for path_ in found.band]) for n in "pThs"})
+    half = len(band) // 2
+    assert band[0] == pytest.approx((x[0], y[0])) and band[-1] == pytest.approx((x[1], y[1]))
+    wetter, drier = found.band
+    assert (drier.x[0] - wetter.x[0]) / 2 == pytest.approx(found.budget.U, rel=1e-9)
+    assert band[half - 1] != path[-1] != band[half]
