@@ -112,8 +112,8 @@ def test_a_first_visit_shows_an_invented_case_and_says_so(first):
                         "reading 121.1 °C · **● reads 0.9720**")
     assert headline(first) == "● Quality in the line 0.9720 ± 0.0058, wetness 2.80 ± 0.58 %."
     reasons = first.markdown[2].value
-    assert reasons == ("The quality is told to ± 0.58 %pt (k = 2.00, coverage 95.45 %), by the instruments alone to "
-                       "± 0.077 %pt; the scatter of readings comes on top. The exhaust is 20.9 K superheated, "
+    assert reasons == ("Expanded uncertainty 0.58 %pt (k = 2.00, coverage 95.45 %), by the instruments alone "
+                       "0.077 %pt; the scatter of readings comes on top. The exhaust is 20.9 K superheated, "
                        "15.9 K above the least readable superheat of 5 K. Between these pressures the least readable "
                        "quality is 0.9558.")
     assert "Heat loss 2.0 kJ/kg of sample, by conductance, +0.10 %pt." in captions(first)
