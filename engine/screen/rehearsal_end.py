@@ -35,6 +35,11 @@ from engine.steam.units import UnitSystem, from_si
 FINDINGS = {Finding.QUALITY: "A quality", Finding.CANNOT: "It cannot be read", Finding.SUPERHEATED: "Line superheated"}
 
 
+def address_of(word: str) -> str:
+    """The link that opens a rehearsal, as far as the server knows where its readers reach it."""
+    return f"{(st.context.url or '').split('?')[0]}?rehearsal={word}"
+
+
 def reading_rows(r: Rehearsal, units: UnitSystem) -> list[dict[str, str]]:
     """The sets of readings as the gauges showed them."""
     course, rig = r.course, r.rig
@@ -172,8 +177,8 @@ def show(r: Rehearsal, put: Callable[[Rehearsal | None], None]) -> None:
     with st.expander("Everything that was done and seen"):
         st.table([{"Time": when, "What": escaped(what), "Seen": escaped(seen)}
                   for when, what, seen in journal(r, units)])
-    with st.expander("Hand it in: this word behind the page's address opens the rehearsal with its verdict"):
-        st.code(f"?rehearsal={to_link(r)}", language=None, wrap_lines=True)
+    with st.expander("Hand it in: a link that opens the rehearsal with its verdict"):
+        st.code(address_of(to_link(r)), language=None, wrap_lines=True)
 
 
 def _listed(title: str, lines: list[str]) -> None:

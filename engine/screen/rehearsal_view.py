@@ -31,6 +31,7 @@ FAST = 60.0  # the clock that runs by itself, against the one on the wall
 TICK = 1.0  # s on the wall
 SETS_SHOWN = 6
 WORDS = 205  # pixels
+SHEET = "sheet"  # in the address, while the sheet is shown and the rehearsal waits
 STEPS = ((30, "30 s"), (60, "1 min"), (300, "5 min"), (900, "15 min"))
 
 _CSS = """
@@ -46,8 +47,15 @@ _address = served.component("address.js", "address")
 
 
 def asked() -> bool:
-    """Whether the page was opened by a link to a rehearsal, or one is under way."""
-    return st.session_state.get("rehearsal") is not None or bool(st.query_params.get("rehearsal"))
+    """Whether the page was opened by a link to a rehearsal, and not on the sheet beside it."""
+    return bool(st.query_params.get("rehearsal")) and st.query_params.get("on") != SHEET
+
+
+def beside() -> None:
+    """Have the rehearsal wait while the sheet is on the page: a reload comes back to the sheet, and keeps both."""
+    _open_link()
+    r = st.session_state.get("rehearsal")
+    _keep(r, SHEET if r else None)
 
 
 def show() -> None:
@@ -74,9 +82,9 @@ def _runs() -> bool:
     return bool(state.get("rehearsal runs")) and state["rehearsal"].stated is None
 
 
-def _keep(r: Rehearsal | None) -> None:
+def _keep(r: Rehearsal | None, on: str | None = None) -> None:
     """Have the address hold the rehearsal, so that a reload goes on with it."""
-    _address(data={"page": "rehearsal", "query": {"rehearsal": r and to_link(r)}}, key="rehearsal address")
+    _address(data={"page": "rehearsal", "query": {"rehearsal": r and to_link(r), "on": on}}, key="rehearsal address")
 
 
 def _open_link() -> None:
@@ -92,6 +100,8 @@ def _open_link() -> None:
         _set(from_link(word))
     except InputError as error:
         state["rehearsal notice"] = f"The rehearsal in the link could not be opened.\n\n{error}"
+        return
+    if st.query_params.get("case"):  # what is open, with its ticks and readings, stays open
         return
     session.change(state["rehearsal"].scenario.case)
     st.rerun()  # the bar above has drawn another case already
@@ -177,9 +187,8 @@ def _instructor() -> None:
         except InputError as error:
             st.error(escaped_lines(str(error)))
             return
-        st.caption("Whoever opens this page with this word behind its address gets the scenario, and no word of what "
-                   "it hides:")
-        st.code(f"?rehearsal={word}", language=None, wrap_lines=True)
+        st.caption("Whoever opens this link gets the scenario, and no word of what it hides:")
+        st.code(rehearsal_end.address_of(word), language=None, wrap_lines=True)
         st.button("Start this scenario here", key="begin prepared", on_click=_begin, args=(scenario,))
 
 
@@ -313,9 +322,8 @@ def _readings(r: Rehearsal) -> None:
 
 def _aside(r: Rehearsal) -> None:
     with st.expander("This rehearsal: hand it in, or begin anew"):
-        st.caption("This word behind the page's address opens the rehearsal as it stands, for an instructor to see or "
-                   "for you to go on with:")
-        st.code(f"?rehearsal={to_link(r)}", language=None, wrap_lines=True)
+        st.caption("This link opens the rehearsal as it stands, for an instructor to see or for you to go on with:")
+        st.code(rehearsal_end.address_of(to_link(r)), language=None, wrap_lines=True)
         if Scenario(session.case()).case != r.scenario.case:
             st.caption("The open case has been changed since. The rehearsal goes on with the case it began with.")
         st.button("Give up and begin anew", key="begin anew", on_click=_set, args=(None,))

@@ -40,6 +40,7 @@ def run(pages: Sequence) -> None:
     session.listen()
     style.apply()
     page = st.navigation(list(pages), position="top")
+    _lead(pages, page)
     _turn_to(page.url_path)
     _bar()
     with st.container(key="notices"):  # always there, so that nothing below moves when a notice goes
@@ -48,6 +49,16 @@ def run(pages: Sequence) -> None:
     address.keep(page.url_path, case=session.link())
     session.listen()
     _settle(len(sys.modules))
+
+
+def _lead(pages: Sequence, page) -> None:
+    """A link to a rehearsal leads to the page that plays it, whichever page it was put behind."""
+    if "led" in st.session_state:
+        return
+    st.session_state["led"] = True
+    there = next((one for one in pages if one.url_path == "runsheet"), page)
+    if st.query_params.get("rehearsal") and page.url_path != there.url_path:
+        st.switch_page(there, query_params=st.query_params.to_dict())
 
 
 def _turn_to(page: str) -> None:

@@ -82,6 +82,22 @@ def test_the_record_of_a_log_with_its_data(run, tmp_path):
     assert reopened(archive.read("record.html")).logs[0].name == "run1.csv"
 
 
+@pytest.mark.parametrize("order", ["LOG --out FILE --made today", "--out FILE LOG --made today",
+                                   "--out FILE --made today LOG"])
+def test_logs_may_stand_before_between_and_after_the_options(run, tmp_path, order):
+    log, file = tmp_path / "run1.csv", tmp_path / "record.html"
+    demo_log(log, DEMO, seed=4, x=0.972, duration=4200.0, every=30.0)
+    named = {"LOG": log, "FILE": file}
+    assert run("record", DEMO, *(named.get(word, word) for word in order.split())) == (0, "", "")
+    assert [log.name for log in reopened(file.read_bytes()).logs] == ["run1.csv"]
+
+
+@pytest.mark.parametrize(("command", "more"), [("record", ["run1.csv", "--no-such"]), ("runsheet", ["run1.csv"])])
+def test_what_no_command_knows_is_still_refused(run, tmp_path, capsys, command, more):
+    assert run(command, DEMO, "--out", tmp_path / "x.html", *more)[0] == 2
+    assert f"unrecognized arguments: {more[-1]}" in capsys.readouterr().err
+
+
 def test_what_is_undecided_is_named_and_nothing_is_written(run, tmp_path):
     file = tmp_path / "record.html"
     status, out, err = run("record", DEMO.with_(heat_loss_method=UNDECIDED, sampling=None), "--out", file)

@@ -20,6 +20,7 @@ from engine.job.rehearsal.scenario import HiddenFault, Load, Scenario
 from engine.job.rehearsal.simulation import LONGEST
 from engine.job.rehearsal.valves import Deed
 from engine.job.rehearsal.verdict import verdict_of
+from engine.job.runsheet import tick
 from engine.screen.style import escaped
 from engine.steam.units import SI, US
 
@@ -119,12 +120,12 @@ def test_an_instructor_prepares_a_link_that_hides_what_it_brings():
     ran(app.number_input(key="prepare seed").set_value(77))
     ran(app.number_input(key="prepare quality").set_value(0.981))
     app = ran(app.selectbox(key="prepare load").set_value(Load.SWINGING))
-    word = next(c.value for c in app.code if c.value.startswith("?rehearsal="))
+    link = next(c.value for c in app.code if "?rehearsal=" in c.value)
     wanted = Scenario(DEMO, frozenset({"wet lagging", "back pressure"}), 77, 0.981, Load.SWINGING)
-    assert from_link(word.removeprefix("?rehearsal=")).scenario == wanted
+    assert from_link(link.partition("?rehearsal=")[2]).scenario == wanted
     app = press(app, "begin prepared")
     assert under_way(app).scenario == wanted
-    app = opened(word.removeprefix("?rehearsal="))
+    app = opened(link.partition("?rehearsal=")[2])
     assert under_way(app).scenario == wanted and "wet lagging" not in words(app)
 
 
@@ -151,6 +152,12 @@ def test_a_link_brings_its_case_and_a_finished_rehearsal_its_verdict():
     done = by_the_book(Scenario(DEMO, seed=1))
     app = opened(state(done, Statement(Finding.CANNOT)))
     assert "### ○ The answer is wrong" in words(app)
+
+
+def test_a_reload_keeps_the_open_case_beside_its_rehearsal():
+    case = tick(DEMO.with_(title="Ticked at the line"), "hold.permit", "08:15", "AB")
+    app = opened(begin(Scenario(DEMO, seed=3)), case)
+    assert app_case(app) == case and under_way(app).scenario == Scenario(DEMO, seed=3)
 
 
 def app_case(app):

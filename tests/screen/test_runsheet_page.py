@@ -12,6 +12,9 @@ from engine.job.case.demo import DEMO
 from engine.job.case.examples import EXAMPLES, HEATED, HEATING_STEAM
 from engine.job.case.fields import FIELDS
 from engine.job.case.rows import Entry
+from engine.job.rehearsal import begin
+from engine.job.rehearsal.link import to_link as to_rehearsal
+from engine.job.rehearsal.scenario import Scenario
 from engine.job.runsheet import headline, run_sheet, tick, ticks_of
 from engine.job.runsheet.readings import with_reading
 from engine.screen.style import escaped
@@ -220,6 +223,24 @@ def test_the_rehearsal_stands_beside_the_sheet(at):
     assert "Practise the test without steam" in words(app) and not keyed(app, "tick ")
     app = ran(app.segmented_control(key="sheet or rehearsal").set_value("Run sheet"))
     assert keyed(app, "tick ")
+
+
+def test_a_link_to_a_rehearsal_leads_here_from_another_page():
+    r = begin(Scenario(DEMO.with_(title="Another rig"), seed=5))
+    app = AppTest.from_file(ROOT / "app.py", default_timeout=60)
+    app.query_params["rehearsal"] = to_rehearsal(r)
+    assert "The rig is cold" in words(ran(app)) and case_of(app)["title"] == "Another rig"
+
+
+def test_what_is_shown_stays_when_the_reader_comes_back_from_another_page():
+    app = opened(DEMO)
+    ran(app.segmented_control(key="sheet or rehearsal").set_value("Rehearsal"))
+    ran(app.button(key="begin sound").click())
+    ran(app.segmented_control(key="sheet or rehearsal").set_value("Run sheet"))
+    app = ran(ran(app.switch_page("engine/screen/pages/record.py")).switch_page(PAGE))
+    assert keyed(app, "tick ")
+    ran(app.segmented_control(key="sheet or rehearsal").set_value("Rehearsal"))
+    assert "The rig is cold" in words(ran(ran(app.switch_page("engine/screen/pages/record.py")).switch_page(PAGE)))
 
 
 def test_what_users_write_does_nothing(at):

@@ -101,7 +101,7 @@ examples:
   python -m engine reduce run1.csv --case case.json --window 20 50 --reason "load steady, by the control room"
   python -m engine rehearse case.json --fault "wet lagging" --seed 7 --log practice.csv
   python -m engine runsheet case.json --out run-sheet.html --paper A4
-  python -m engine record case.json run1.csv run2.csv --out record.zip
+  python -m engine record case.json --out record.zip run1.csv run2.csv
 
 A result says that a number could be measured. It is never permission to open a valve."""
 
@@ -122,11 +122,23 @@ def parser() -> argparse.ArgumentParser:
     return whole
 
 
+def _parsed(arguments: Sequence[str]) -> argparse.Namespace:
+    """The options; logs may stand before, between and after them."""
+    whole = parser()
+    options, more = whole.parse_known_args(arguments)
+    unknown = [word for word in more if word.startswith("-")] if hasattr(options, "logs") else more
+    if unknown:
+        whole.error(f"unrecognized arguments: {' '.join(unknown)}")
+    if more:
+        options.logs = [*options.logs, *map(Path, more)]
+    return options
+
+
 def main(arguments: Sequence[str], out: TextIO | None = None, err: TextIO | None = None) -> int:
     """Run one command; ``out`` and ``err`` are the terminal's streams unless given. Returns the exit status."""
     console = Console(sys.stdout if out is None else out, sys.stderr if err is None else err)
     try:
-        options = parser().parse_args(arguments)
+        options = _parsed(arguments)
     except SystemExit as stopped:  # argparse has said why
         return int(stopped.code or 0)
     try:

@@ -48,13 +48,22 @@ SHEET, REHEARSAL = "Run sheet", "Rehearsal"
 
 def page() -> None:
     """The sheet, or the rehearsal of it on a simulated rig."""
-    asked = REHEARSAL if rehearsal_view.asked() else SHEET
-    chosen = st.segmented_control("What to show", (SHEET, REHEARSAL), key="sheet or rehearsal", default=asked,
-                                  required=True, label_visibility="collapsed")
-    if chosen == REHEARSAL:
+    state = st.session_state
+    if "run sheet shows" not in state:
+        state["run sheet shows"] = REHEARSAL if rehearsal_view.asked() else SHEET
+    session.mirror("sheet or rehearsal", state["run sheet shows"])
+    st.segmented_control("What to show", (SHEET, REHEARSAL), key="sheet or rehearsal", required=True,
+                         label_visibility="collapsed", on_change=_turned)
+    if state["run sheet shows"] == REHEARSAL:
         rehearsal_view.show()
     else:
+        rehearsal_view.beside()
         _whole_sheet()
+
+
+def _turned() -> None:
+    """What is shown outlives its widget, which a change of the page takes away."""
+    st.session_state["run sheet shows"] = st.session_state["sheet or rehearsal"]
 
 
 def _whole_sheet() -> None:
