@@ -11,7 +11,8 @@ from engine.job.runsheet.plan import Plan, plan_of
 
 # entries that no number of the sheet rests on
 _ASIDE = {name: FIELDS[name].blank for name in ("title", "note", "place", "tested_by", "witnessed_by", "permit",
-                                                "instrument_list", "deviations", "ticks", "readings")}
+                                                "instrument_list", "deviations", "ticks", "readings",
+                                                "heater_readings")}
 
 
 @lru_cache(maxsize=32)

@@ -26,6 +26,7 @@ from engine.job.record.data import MOST_CELLS, reopened
 from engine.job.record.figures import diagrams_svg
 from engine.job.rehearsal.demo_log import demo_log
 from engine.job.result import reduce
+from engine.job.result.heated import reduce_heated
 from engine.job.result.intake import read
 from engine.job.result.runs import run_of_log, runs_typed
 from engine.job.result.said import chance, correction_rows, figures, rule_text, told, verdict_lines
@@ -250,6 +251,20 @@ def test_with_a_heater_the_means_are_those_of_the_case(result):
     assert f"Quality {' ± '.join(figures(found.budget))}" in page.text and found.missing
     assert "Not a result yet, because not stated" in page.text
     assert record_html(case, result, SI, "A4", made=MADE) == record_html(case, None, SI, "A4", made=MADE)
+
+
+def test_sets_with_a_heater_stand_in_the_record_and_give_its_quality():
+    case = HEATED.with_(**STATED)
+    for run, power in (("1", 860.0), ("2", 875.0)):
+        for k in range(6):
+            case = with_reading(case, run=run, time=Entry(float(k), "min"), T_heater=Entry(178.6 + 0.1 * (k % 3), "°C"),
+                                power=Entry(power, "W"), remark="fed" if k == 2 else "")
+    found, html = reduce_heated(case), record_html(case, None, SI, "A4", made=MADE)
+    page = harmless(html, TAGS)
+    assert f"Quality {' ± '.join(figures(found.forecast.budget))}" in page.text
+    assert all(f"{x:.5f}" in page.text for run in found.runs for x in run.x) and "fed" in page.text
+    assert "The runs differ by more than their own scatter explains" in page.text
+    assert record_html(reopened(html).case, None, SI, "A4", made=MADE) == html
 
 
 def test_a_superheated_line_and_a_wet_exhaust_are_told_as_such():

@@ -78,9 +78,9 @@ def keyed(app, start):
     return [b.key for b in app.button if b.key and b.key.startswith(start)]
 
 
-def write(app, run="1", **typed):
+def write(app, run="1", table="readings", **typed):
     """Type a set of readings and press the button; names are headings of the columns."""
-    count = len(case_of(app)["readings"])
+    count = len(case_of(app)[table])
     for name, value in typed.items():
         app.number_input(key=f"set {run} {count} {name}").set_value(value)
     return ran(app.button(key="write set").click())
@@ -201,9 +201,12 @@ def test_a_full_table_says_so(at):
     assert "at most 400 rows" in app.error[0].value.replace("\\", "")
 
 
-def test_a_heater_has_no_sets_to_type(at):
-    app = at(HEATED)
-    assert "With a heater" in words(app) and not keyed(app, "write")
+def test_a_heater_has_sets_of_its_own(at):
+    app = write(at(HEATED), **{"T_heater °C": 178.8, "power W": 861.0}, table="heater_readings")
+    (row,) = case_of(app)["heater_readings"]
+    assert row["T_heater"] == Entry(178.8, "°C") and row["power"] == Entry(861.0, "W") and row["run"] == "1"
+    app = ran(app.button(key="drop set").click())
+    assert case_of(app)["heater_readings"] == ()
 
 
 def test_a_plan_that_leads_nowhere_says_so(at):

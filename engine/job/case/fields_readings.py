@@ -8,6 +8,7 @@ from __future__ import annotations
 
 from dataclasses import replace
 
+from engine.job.case.fields_modes import MODE_FIELDS
 from engine.job.case.fields_path import PATH_FIELDS
 from engine.job.case.rows import Entry, Field, choice, quantity, table, text
 
@@ -19,12 +20,12 @@ CORRECTIONS = (LINE_CERTIFICATE, EXHAUST_CERTIFICATE, BAROMETER_CERTIFICATE, THE
                BAROMETER, LEG, HEAT_LOSS, KINETIC)
 """In the order in which they are applied."""
 
-_PATH = {field.name: field for field in PATH_FIELDS}
+_ENTRIES = {field.name: field for field in (*PATH_FIELDS, *MODE_FIELDS)}
 
 
 def _as_column(name: str) -> Field:
     """An entry of the case as a column: the same rules, and it may stay empty."""
-    return replace(_PATH[name], blank=None)
+    return replace(_ENTRIES[name], blank=None)
 
 
 def _offset(stem: str, label: str, kind: str, most: float) -> Field:
@@ -37,6 +38,13 @@ READINGS = table("readings", "Readings typed", "readings", (
     text("run", "Run", "readings"),
     quantity("time", "Time from the start", "readings", 0.0, 1e7),
     *map(_as_column, ("p_line", "p_exhaust", "T_exhaust", "p_barometer", "sample_flow", "T_ambient")),
+    text("remark", "Remark", "readings"),
+), 400, "one set a row, all gauges read within a few seconds")
+
+HEATER_READINGS = table("heater_readings", "Readings typed, with a heater", "readings", (
+    text("run", "Run", "readings"),
+    quantity("time", "Time from the start", "readings", 0.0, 1e7),
+    *map(_as_column, ("p_line", "p_heater", "T_heater", "power", "sample_flow")),
     text("remark", "Remark", "readings"),
 ), 400, "one set a row, all gauges read within a few seconds")
 
@@ -78,5 +86,5 @@ READING_FIELDS = (
     _offset("exhaust_gauge", "Exhaust gauge", "pressure difference", 1e5),
     _offset("barometer", "Barometer", "pressure difference", 1e4),
     _offset("thermometer", "Exhaust thermometer", "difference", 20.0),
-    READINGS, MAPPINGS, WINDOWS, REMOVED, OFF,
+    READINGS, HEATER_READINGS, MAPPINGS, WINDOWS, REMOVED, OFF,
 )

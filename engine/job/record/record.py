@@ -23,6 +23,7 @@ from engine.job.record.data import blocks, fits, readings_csv
 from engine.job.record.sections import READING, WAYS, Facts
 from engine.job.result import Result, reduce
 from engine.job.result.corrections import shown_of
+from engine.job.result.heated import reduce_heated
 from engine.job.result.runs import Run
 from engine.job.result.said import decision_reason, told, verdict_word
 from engine.job.runsheet import RunSheet, run_sheet
@@ -128,7 +129,8 @@ def reasons_against(case: Case, result: Result | None) -> tuple[Fault, ...]:
                             "a judgement of someone who knows the tapping",
                             "it is a part of the uncertainty, often the largest",
                             "state it with the instruments, 0 where it is knowingly nothing", "sampling"))
-    if (result is None or case["mode"] == ELECTRIC) and case["question"] == EXPECTED:
+    read = case["heater_readings"] if case["mode"] == ELECTRIC else result is not None
+    if not read and case["question"] == EXPECTED:
         faults.append(Fault("question", "what must be seen", "", "a reading, or readings",
                             "an expectation is no test", "choose “I have a reading” on the Path page", "question"))
     if result is not None and not result.runs:
@@ -149,20 +151,21 @@ def facts_of(case: Case, result: Result | None, units: UnitSystem, logs: Sequenc
     """
     if faults := reasons_against(case, result):
         raise InputError(*faults)
-    if case["mode"] == ELECTRIC:  # the means of such a test are entered one by one
-        result = None
+    heated = None
+    if case["mode"] == ELECTRIC:  # sets written down, else means entered one by one
+        result, heated = None, reduce_heated(case)
     elif result is None:
         result = reduce(case, (reading_as_run(case),))
     first = next((run.assessment for run in (*result.read, *result.runs) if run.assessment), None) if result else None
-    a = first or assess(case)
+    a = first or (heated.assessment if heated else assess(case))
     try:
         sheet, trouble = sheet or run_sheet(case), ""
     except InputError as error:
         sheet, trouble = None, str(error)
     reduced = set() if result is None else {run.run.name for run in result.runs}
     kept = tuple(log for log in logs if log.name in reduced)
-    expected = forecast(case, a) if result is None else None
-    return Facts(case, a, answer(a, units), result, expected, kept, sheet, trouble, units)
+    expected = None if result is not None else heated.forecast if heated else forecast(case, a)
+    return Facts(case, a, answer(a, units), result, heated, expected, kept, sheet, trouble, units)
 
 
 def headline(facts: Facts) -> tuple[str, str, str]:
@@ -182,17 +185,25 @@ def summary(facts: Facts) -> tuple[tuple[str, str], ...]:
     made_from = "the single reading in the case"
     if facts.result is not None and [run.run.name for run in runs] != [READING]:
         made_from = "; ".join(f"{run.run.name}: {run.used.sum()} of {len(run.run)} sets" for run in runs)
+    if facts.heated is not None:
+        made_from = "; ".join(f"{run.run.name}: {run.used.sum()} of {len(run.run)} sets" for run in facts.heated.runs)
     verdicts = facts.sure.verdicts or ()
     decided = [(name, f"{verdict_word(v)}: {decision_reason(v, case)}")
                for name, v in zip(WAYS, verdicts, strict=False)]  # none of the two without a limit
     ticked = ("no run sheet can be made for this case" if sheet is None else
               f"{len(sheet.steps) - len(sheet.unticked)} of {len(sheet.steps)} steps ticked")
     lost = sum(sum(log.rejected_counts.values()) for log in facts.logs)
-    return (("Made from", made_from), *decided, ("Heat loss", case["heat_loss_method"]),
+    return (("Made from", made_from), *decided, _loss(case),
             ("Sampling representativeness", f"± {describe(case['sampling'])}, {case['sampling_kind']}"),
             ("Run sheet", ticked), *([("Refused in the logs", f"{lost} cells or rows")] if lost else []),
             *([("Not stated", ", ".join(facts.sure.missing))] if facts.sure.missing else []),
             ("Properties", FORMULATION), ("Program version", __version__))
+
+
+def _loss(case: Case) -> tuple[str, str]:
+    if case["mode"] == ELECTRIC:
+        return "Heat lost by the heater", describe(case["power_loss"])
+    return "Heat loss", case["heat_loss_method"]
 
 
 def reading_as_run(case: Case) -> Run:

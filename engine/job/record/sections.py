@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Iterator
 from typing import NamedTuple
 
 import numpy as np
@@ -16,7 +16,9 @@ from engine.job.case.fields_modes import NOT_STATED
 from engine.job.case.rows import QUANTITY, TABLE, Row
 from engine.job.paper import Table, bullets, paragraph
 from engine.job.record.figures import diagrams_svg
+from engine.job.record.heated import digits, heated_readings, heated_windows, table_of
 from engine.job.result import Result
+from engine.job.result.heated import HeatedResult
 from engine.job.result.reduction import RunResult
 from engine.job.result.said import (
     LABELS,
@@ -52,13 +54,14 @@ LISTED, FLAGS = 200, 24  # refusals and flagged readings, likewise
 
 
 class Facts(NamedTuple):
-    """What a record is made from: ``result`` where sets of readings were reduced, ``forecast`` for methods whose
-    means are entered one by one; the other is None."""
+    """What a record is made from: ``result`` where sets of readings were reduced, ``forecast`` with a heater; the
+    other is None. ``heated`` are the sets with a heater, None where its means were entered one by one."""
 
     case: Case
     a: Assessment
     said: Answer
     result: Result | None
+    heated: HeatedResult | None
     forecast: Forecast | None
     logs: tuple[Log, ...]
     sheet: RunSheet | None
@@ -69,15 +72,6 @@ class Facts(NamedTuple):
     def sure(self) -> Result | Forecast:
         """Whichever of the two brings budget and decision."""
         return self.forecast if self.result is None else self.result
-
-
-def table_of(rows: Sequence[Mapping[str, object]], numbers: Sequence[str] = (), kind: str = "") -> str:
-    """Rows with named cells as a table; nothing for no rows."""
-    if not rows:
-        return ""
-    headings = list(rows[0])
-    right = frozenset(k for k, name in enumerate(headings) if name in numbers)
-    return Table(headings, [[str(row[name]) for name in headings] for row in rows], right, kind).html()
 
 
 # ---- what was asked, and the answer
@@ -168,6 +162,8 @@ def _idle(case: Case, name: str) -> bool:
 
 def readings(f: Facts) -> str:
     """Run by run what was read, and what of it counts; then what could not be used at all."""
+    if f.heated is not None:
+        return heated_readings(f.heated, f.case, f.units)
     if f.result is None:
         return paragraph("The readings of this method are entered one by one; they stand with all entries, below.")
     parts = [part for run in f.result.runs for part in _run_readings(run, f)]
@@ -196,9 +192,9 @@ def _run_readings(run: RunResult, f: Facts) -> Iterator[str]:
     for k, number in enumerate(run.run.rows.tolist()):
         if k % every and number not in remarks and number not in run.removed:
             continue
-        readings = [_number(from_si(run.run.channels[n][k], unit, kind)) for n, unit, kind in columns]
+        readings = [digits(from_si(run.run.channels[n][k], unit, kind)) for n, unit, kind in columns]
         rows.append([str(number), *([f"{run.run.time[k] / 60:.5g}"] if timed else []), *readings,
-                     _number(run.x[k], ".5f"), "; ".join(filter(None, (_not_used(run, k), remarks.get(number))))])
+                     digits(run.x[k], ".5f"), "; ".join(filter(None, (_not_used(run, k), remarks.get(number))))])
     yield Table(headings, rows, frozenset(range(len(headings) - 1)), "log").html()
     yield paragraph("; ".join(f"{QUANTITIES[n].symbol} {LABELS[n]}" for n, _, _ in columns) + "; x quality of the set.",
                     "small")
@@ -230,10 +226,6 @@ def _unit(run: RunResult, name: str, f: Facts) -> tuple[str, str]:
     return typed.pop() if len(typed) == 1 else reading_unit(name, f.units), FIELDS[name].kind
 
 
-def _number(value: float, form: str = ".6g") -> str:
-    return f"{value:{form}}" if np.isfinite(value) else ""
-
-
 def _not_used(run: RunResult, k: int) -> str:
     """Why a row does not count; "" where it does."""
     if run.used[k]:
@@ -248,6 +240,8 @@ def _not_used(run: RunResult, k: int) -> str:
 
 def windows(f: Facts) -> str:
     """Which stretch of each run counts, and why not the rest."""
+    if f.heated is not None:
+        return heated_windows(f.heated)
     if f.result is None or [run.run.name for run in f.result.runs] == [READING]:
         return ""
     parts = [table_of(run_rows(f.result, f.units))]

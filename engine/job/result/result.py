@@ -60,8 +60,8 @@ class Result:
         return tuple(run for run in self.runs if run.quality is not None)
 
 
-WITH_A_HEATER = ("With a heater the readings are not reduced from a log: enter the means of line pressure, power, "
-                 "sample flow and temperature on the Path page.")
+WITH_A_HEATER = ("With a heater the readings are not reduced from a log: write the sets down on the Run sheet page, or "
+                 "enter the means of line pressure, power, sample flow and temperature on the Path page.")
 
 
 def reduce(case: Case, runs: Sequence[Run], *, known: Result | None = None,
@@ -176,6 +176,11 @@ def _measurement(case: Case, si: Resolved, read: list[RunResult], together: Repe
                           on_barometer)
         scatter = [together.component] if together else [c for c in [run.scatter and run.scatter.component] if c]
         parts.append(measurement_of(run.assessment, reading, scatter))
+    return joined(parts)
+
+
+def joined(parts: Sequence[Measurement]) -> Measurement:
+    """Runs measured one by one as one measurement of their mean; the causes on the result are those of the first."""
     if len(parts) == 1:
         return parts[0]
     means = {i.name: float(np.mean([_value(p, i.name) for p in parts])) for i in parts[0].inputs}

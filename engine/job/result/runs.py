@@ -17,6 +17,7 @@ from engine.steam.units import to_si
 
 CHANNELS = ("p_line", "p_exhaust", "T_exhaust", "p_barometer", "sample_flow", "T_ambient", "T_line", "condensate")
 TYPED = tuple(name for name in CHANNELS if name not in ("T_line", "condensate"))
+HEATED = ("p_line", "p_heater", "T_heater", "power", "sample_flow")
 
 
 @dataclass(frozen=True, eq=False)
@@ -55,18 +56,27 @@ def runs_typed(case: Case) -> tuple[Run, ...]:
 
     Raises InputError for a run of which only some rows have a time.
     """
+    return _typed(case["readings"], TYPED)
+
+
+def runs_heated(case: Case) -> tuple[Run, ...]:
+    """The same for the readings with a heater, which have channels of their own: ``HEATED``."""
+    return _typed(case["heater_readings"], HEATED)
+
+
+def _typed(rows: tuple[Row, ...], channels: tuple[str, ...]) -> tuple[Run, ...]:
     runs: dict[str, list[tuple[int, Row]]] = {}
-    for number, row in enumerate(case["readings"], 1):
-        if any(row[name] is not None for name in TYPED):
+    for number, row in enumerate(rows, 1):
+        if any(row[name] is not None for name in channels):
             runs.setdefault(row["run"].strip(), []).append((number, row))
-    return tuple(_typed_run(name, numbered) for name, numbered in runs.items())
+    return tuple(_typed_run(name, numbered, channels) for name, numbered in runs.items())
 
 
-def _typed_run(name: str, numbered: list[tuple[int, Row]]) -> Run:
+def _typed_run(name: str, numbered: list[tuple[int, Row]], names: tuple[str, ...]) -> Run:
     numbers, rows = np.array([n for n, _ in numbered]), [row for _, row in numbered]
     label = f"run {name}" if name else "typed readings"
     channels, basis = {}, {}
-    for channel in TYPED:
+    for channel in names:
         entries = [row[channel] for row in rows]
         if any(entry is not None for entry in entries):
             if FIELDS[channel].kind == "pressure":

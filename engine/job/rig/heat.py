@@ -31,7 +31,7 @@ from engine.calorimeter import (
 )
 from engine.calorimeter.warmup import CONDENSING_FILM
 from engine.job.assessment.terms import two_flow_conductance
-from engine.job.case import Case, describe
+from engine.job.case import Case, Resolved, describe
 from engine.job.case.fields import FIELDS
 from engine.job.case.fields_path import BY_CONDUCTANCE, BY_KG, BY_NORMAL, BY_TWO_FLOWS
 from engine.job.case.fields_rig import BARE, ELECTRIC_PROBE, MERCURY
@@ -43,6 +43,7 @@ BY_GEOMETRY = "geometry and lagging"
 GOOD_IMMERSION = 0.1  # K, an immersion error that no budget sees
 EARLY = (300.0, 600.0, 1200.0, 1800.0)  # s after the start, when one may be tempted to read
 FILM = 100.0  # W/(m² K), superheated steam along the wall of the body (common practice)
+_BODY = ("body_mass", "body_length", "body_inner_diameter", "T_ambient")  # what a warm-up needs to know of it
 _METHODS = {BY_CONDUCTANCE: ("sample_flow", "conductance", "T_ambient"), BY_KG: ("heat_loss",),
             BY_TWO_FLOWS: ("sample_flow", "second_flow", "T_second", "T_ambient"), BY_NORMAL: ("T_normal",)}
 
@@ -235,8 +236,18 @@ def _film(point: Point) -> float:
 
 def warming_of(point: Point, loss: Loss | None) -> Part[WarmingUp]:
     """The warm-up from the start to the end of the test; ``loss`` is the heat loss thought to be real."""
-    return part(point.si, ("sample_flow", "body_mass", "body_length", "body_inner_diameter", "T_ambient"),
-                lambda: _warming(point, loss))
+    return part(point.si, ("sample_flow", *_BODY), lambda: _warming(point, loss))
+
+
+def heater_warming(si: Resolved, p: float, T: float) -> Part[WarmingUp]:
+    """The warm-up behind a heater: the body between it and the thermometer, in steam at ``p`` [Pa] and ``T`` [K].
+
+    What the body itself loses is not known apart from the loss of the heater, and is left out.
+    """
+    def compute() -> WarmingUp:
+        return _course(si, si["sample_flow"], _run(si, si["sample_flow"], p, T, 0.0), ())
+
+    return part(si, ("sample_flow", *_BODY), compute)
 
 
 def _warming(point: Point, loss: Loss | None) -> WarmingUp:
@@ -244,14 +255,22 @@ def _warming(point: Point, loss: Loss | None) -> WarmingUp:
     lost = 0.0 if loss is None else max(loss.heat_loss, 0.0)
     UA = lost * point.flow / max(r.T_exhaust - si["T_ambient"], 1.0)
     enters = state_ph(r.p_exhaust, vapour(r.p_exhaust, r.T_exhaust).h + lost).T
+    run = _run(si, point.flow, r.p_exhaust, enters, UA)
+    return _course(si, point.flow, run, _early(point, run))
+
+
+def _run(si: Resolved, flow: float, p: float, T: float, conductance: float) -> WarmUp:
     start = si["T_ambient"] if si["T_start"] is None else si["T_start"]
-    run = warm_up(body_heat_capacity(si["body_mass"]), np.pi * si["body_inner_diameter"] * si["body_length"],
-                  point.flow, r.p_exhaust, enters, start, si["T_ambient"], film=FILM, conductance=UA)
+    return warm_up(body_heat_capacity(si["body_mass"]), np.pi * si["body_inner_diameter"] * si["body_length"], flow,
+                   p, T, start, si["T_ambient"], film=FILM, conductance=conductance)
+
+
+def _course(si: Resolved, flow: float, run: WarmUp, early: tuple) -> WarmingUp:
     ready = time_to_within(run, si["warmup_error"])
     # closer where it changes fast: the reading jumps when condensation ends
     time = np.unique(np.r_[np.linspace(0.0, max(1.4 * ready, 600.0), 121), run.time_condensing])
-    return WarmingUp(run, ready, steam_used(point.flow, ready, si["duration"]), time,
-                     run.T_final + np.asarray(reading_error(run, time)), _early(point, run))
+    return WarmingUp(run, ready, steam_used(flow, ready, si["duration"]), time,
+                     run.T_final + np.asarray(reading_error(run, time)), early)
 
 
 def _early(point: Point, run: WarmUp) -> tuple[tuple[float, float, float | None], ...]:

@@ -16,7 +16,7 @@ from engine.job.case.fields_path import EXPECTED
 from engine.job.case.fields_rig import VESSEL
 from engine.job.reach import ReachAssessment, assess_reach, stage_pressure
 from engine.job.rig import RigAssessment, assess_rig
-from engine.job.rig.heat import WarmingUp
+from engine.job.rig.heat import WarmingUp, heater_warming
 from engine.job.rig.point import Part, shares
 from engine.job.uncertainty import Forecast, forecast, reading_of
 from engine.steam import saturated, saturation_pressure
@@ -194,11 +194,11 @@ class Plan:
 
     # ---- time
 
-    @property
+    @cached_property
     def warming(self) -> Part[WarmingUp]:
         """The warm-up of the rig."""
         if self.electric:
-            return Part(None, "The warm-up of a heater is not worked out here.")
+            return heater_warming(self.a.si, self.a.heating.p, self.a.T_exhaust)
         return self.of_rig("warming")
 
     @property

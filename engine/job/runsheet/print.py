@@ -10,7 +10,7 @@ from engine.job.assessment.methods_said import METHODS, in_short
 from engine.job.case import Case
 from engine.job.case.fields import FIELDS
 from engine.job.paper import Table, document, escaped_line, one_line, paragraph
-from engine.job.runsheet.readings import heater_table, reading_table, runs_of, weighed_table
+from engine.job.runsheet.readings import reading_table, runs_of, weighed_table
 from engine.job.runsheet.runsheet import RunSheet, headline, notices, run_sheet
 from engine.job.runsheet.steps import Section
 from engine.steam.units import UnitSystem
@@ -118,8 +118,6 @@ def _readings(sheet: RunSheet, units: UnitSystem) -> Iterator[str]:
     """One sheet of paper for each run: what was typed, and room for what was not."""
     plan, typed = sheet.plan, runs_of(sheet.case)
     for name in dict.fromkeys([*(str(number) for number in range(1, plan.runs + 1)), *typed]):
-        table = (heater_table(plan, units) if plan.electric else
-                 reading_table(typed.get(name, []), plan, units, plan.sets))
         yield f'<h2 class="new">Readings{", run " + escaped_line(name) if name else ""}</h2>'
-        yield table.html()
+        yield reading_table(typed.get(name, []), plan, units, plan.sets).html()
         yield weighed_table(plan, units).html()

@@ -7,7 +7,7 @@ from typing import NamedTuple
 
 from engine.job.case import Case, describe, entry_si
 from engine.job.case.fields import FIELDS
-from engine.job.case.fields_modes import BY_VOLUME
+from engine.job.case.fields_modes import BY_VOLUME, ELECTRIC
 from engine.job.case.rows import Entry, Row
 from engine.job.paper import Table
 from engine.job.runsheet.plan import FLOW_ALARM, Plan
@@ -17,8 +17,10 @@ from engine.steam.errors import Fault, InputError
 from engine.steam.units import UnitSystem, from_si, to_si
 
 CHANNELS = ("p_line", "p_exhaust", "T_exhaust", "p_barometer", "T_ambient", "sample_flow")
+WITH_HEATER = ("p_line", "p_heater", "T_heater", "power", "sample_flow")
 SHORT_NAMES = {"p_line": "Line", "p_exhaust": "Exhaust", "T_exhaust": "Thermometer", "p_barometer": "Barometer",
-               "T_ambient": "Air", "sample_flow": "Sample"}
+               "T_ambient": "Air", "sample_flow": "Sample", "p_heater": "After the heater", "T_heater": "Thermometer",
+               "power": "Power"}
 _OWN_UNITS = {"p_barometer": {"SI": "kPa", "US": "inHg"}}
 
 
@@ -36,8 +38,10 @@ class Column(NamedTuple):
 
 def columns_of(plan: Plan, units: UnitSystem) -> tuple[Column, ...]:
     """The columns of the table, pressures as the gauges of the case show them."""
-    bases = {**plan.basis, "p_barometer": "absolute"}
-    return tuple(Column(name, reading_unit(name, units), bases.get(name, "")) for name in CHANNELS)
+    heater = plan.case["p_heater"]
+    bases = {**plan.basis, "p_barometer": "absolute", "p_heater": heater.basis if heater else plan.basis["p_line"]}
+    return tuple(Column(name, reading_unit(name, units), bases.get(name, ""))
+                 for name in (WITH_HEATER if plan.electric else CHANNELS))
 
 
 def reading_unit(name: str, units: UnitSystem) -> str:
@@ -62,10 +66,15 @@ def time_text(entry: Entry | None) -> str:
     return "" if entry is None else f"{to_si(entry.value, entry.unit, 'time') / 60:.4g}"
 
 
+def table_of(case: Case) -> str:
+    """The table of the case that its sets of readings go into: with a heater other gauges are read."""
+    return "heater_readings" if case["mode"] == ELECTRIC else "readings"
+
+
 def runs_of(case: Case) -> dict[str, list[Row]]:
     """The readings typed, by the name of their run."""
     runs: dict[str, list[Row]] = {}
-    for row in case["readings"]:
+    for row in case[table_of(case)]:
         runs.setdefault(row["run"].strip(), []).append(row)
     return runs
 
@@ -77,11 +86,11 @@ def with_reading(case: Case, **cells: Entry | str | None) -> Case:
     >>> len(with_reading(DEMO, run="1", T_exhaust=Entry(121.1, "°C"))["readings"])
     1
     """
-    field = FIELDS["readings"]
-    if len(case["readings"]) >= field.most:
-        raise InputError(Fault(field.label, len(case["readings"]) + 1, "rows", f"at most {field.most} rows",
-                               hint="bring more as a log file", name="readings"))
-    return case.with_(readings=(*case["readings"], field.row(**cells)))
+    field = FIELDS[table_of(case)]
+    if len(case[field.name]) >= field.most:
+        raise InputError(Fault(field.label, len(case[field.name]) + 1, "rows", f"at most {field.most} rows",
+                               hint="bring more as a log file" if field.name == "readings" else "", name=field.name))
+    return case.with_(**{field.name: (*case[field.name], field.row(**cells))})
 
 
 def readings_outside(row: Row, plan: Plan, p_barometer: float) -> tuple[str, ...]:
@@ -89,8 +98,10 @@ def readings_outside(row: Row, plan: Plan, p_barometer: float) -> tuple[str, ...
 
     ``p_barometer`` [Pa] turns what a gauge shows into absolute pressure where the set has no barometer.
     """
-    air = _si(row, "p_barometer", 0.0) or p_barometer
-    T, p, p2, flow = (_si(row, name, air) for name in ("T_exhaust", "p_line", "p_exhaust", "sample_flow"))
+    names = ("T_heater", "p_line", "p_heater", "sample_flow") if plan.electric else (
+        "T_exhaust", "p_line", "p_exhaust", "sample_flow")
+    air = (not plan.electric and _si(row, "p_barometer", 0.0)) or p_barometer
+    T, p, p2, flow = (_si(row, name, air) for name in names)
     si, found = plan.a.si, []
     if T is not None:  # by the set's own exhaust pressure, where it has one
         superheat = T - (saturation_temperature(p2) if p2 else plan.a.T_saturation)
@@ -100,7 +111,7 @@ def readings_outside(row: Row, plan: Plan, p_barometer: float) -> tuple[str, ...
             found.append("thin")
         elif plan.T_dry is not None and plan.T_dry + plan.U_thermometer < T:
             found.append("superheated")
-    if p2 is not None and p2 > si["p_exhaust"] + plan.play("p_exhaust"):
+    if not plan.electric and p2 is not None and p2 > si["p_exhaust"] + plan.play("p_exhaust"):
         found.append("back_pressure")
     if flow is not None and plan.flow is not None and flow < (1.0 - FLOW_ALARM) * plan.flow:
         found.append("flow")
@@ -121,14 +132,6 @@ def reading_table(rows: Sequence[Row], plan: Plan, units: UnitSystem, length: in
     cells += [(str(k), *[""] * (len(columns) + 2)) for k in range(len(cells) + 1, length + 1)]
     return Table(("", "Time, min", *(c.heading for c in columns), "Remark"), cells, frozenset(range(len(columns) + 2)),
                  "readings")
-
-
-def heater_table(plan: Plan, units: UnitSystem) -> Table:
-    """Empty lines for the readings of a heater."""
-    headings = ("", "Time", f"Line, {units.unit('pressure')} {plan.basis['p_line']}",
-                f"After the heater, {units.unit('pressure')}", f"Thermometer, {units.unit('temperature')}", "Power, W",
-                f"Sample, {units.unit('mass flow')}", "Remark")
-    return Table(headings, [(str(k), *[""] * 7) for k in range(1, plan.sets + 1)], kind="readings")
 
 
 def weighed_table(plan: Plan, units: UnitSystem) -> Table:

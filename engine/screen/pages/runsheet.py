@@ -6,7 +6,6 @@ import streamlit as st
 
 from engine.job.assessment.cautions import CAUTIONS, SHORT
 from engine.job.case import faults_of
-from engine.job.case.fields_modes import ELECTRIC
 from engine.job.case.fields_runsheet import GAS_NONE, GAS_NOTED
 from engine.job.case.rows import Entry
 from engine.job.paper import PAPERS, Table, usual_paper
@@ -23,6 +22,7 @@ from engine.job.runsheet.readings import (
     reading_table,
     readings_outside,
     runs_of,
+    table_of,
     with_reading,
 )
 from engine.job.runsheet.steps import Section, Step
@@ -245,10 +245,6 @@ def _deviations(sheet: RunSheet) -> None:
 
 def _readings(sheet: RunSheet) -> None:
     st.subheader("Readings", anchor=False)
-    if sheet.case["mode"] == ELECTRIC:
-        st.markdown("With a heater the means of line pressure, power, flow and temperature are entered on the Path "
-                    "page; the printed sheet has room for every set.")
-        return
     run = _take(sheet)
     typed = runs_of(sheet.case)
     for name, rows in typed.items():
@@ -270,7 +266,7 @@ def _take(sheet: RunSheet) -> str:
         at = 0.0 if last is None or last["time"] is None else (
             to_si(last["time"].value, last["time"].unit, "time") + plan.a.si["read_every"]) / 60
         columns = columns_of(plan, session.units())
-        key = f"set {run} {len(sheet.case['readings'])}"
+        key = f"set {run} {len(sheet.case[table_of(sheet.case)])}"
         grid = [*st.columns(4), *st.columns(4)]
         grid[0].number_input("Time from the start, min", value=at, step=0.5, format="%.7g", key=f"{key} time")
         for place, column in zip(grid[1:], columns, strict=False):
@@ -298,20 +294,21 @@ def _write(run: str, key: str, columns) -> None:
         case = with_reading(session.case(), **cells)
         if faults := faults_of(case):
             raise InputError(*faults)
-        session.take(readings=case["readings"])
+        session.take(**{table_of(case): case[table_of(case)]})
     except InputError as error:
         _refuse("readings", error)
 
 
 def _drop(run: str) -> None:
-    rows = session.case()["readings"]
+    name = table_of(session.case())
+    rows = session.case()[name]
     last = max(k for k, row in enumerate(rows) if row["run"].strip() == run)
-    session.take(readings=rows[:last] + rows[last + 1:])
+    session.take(**{name: rows[:last] + rows[last + 1:]})
 
 
 def _say_outside(sheet: RunSheet) -> None:
     """What the set written down last shows that it should not."""
-    rows = sheet.case["readings"]
+    rows = sheet.case[table_of(sheet.case)]
     if not rows:
         return
     said = {d.key: d for d in sheet.deviations}
