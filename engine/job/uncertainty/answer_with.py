@@ -37,9 +37,9 @@ def how_sure(f: Forecast) -> str:
         return f"No uncertainty can be given. {f.unable}"
     whole, alone = f.budget, f.instruments
     if f.missing and points(whole.U) == points(0.0):
-        return "Uncertainty not known yet: state the instruments and the sampling on the Rig page."
-    of_what = "Expanded uncertainty of the quality from that reading" if f.assessment.expected else "Expanded uncertainty"
+        return "Uncertainty not known yet: state the instruments and the sampling."
+    of_what = "Expanded uncertainty" + (" of the quality from that reading" if f.assessment.expected else "")
     if f.missing:
         return f"{of_what} at least {points(whole.U)}; not stated yet: {', '.join(f.missing)}."
-    return (f"{of_what} {points(whole.U)} (k = {whole.k:.2f}, coverage {100 * whole.coverage:.4g} %), by the instruments "
-            f"alone {points(alone.U)}; the scatter of readings comes on top.")
+    return (f"{of_what} {points(whole.U)} (k = {whole.k:.2f}, coverage {100 * whole.coverage:.4g} %), by the "
+            f"instruments alone {points(alone.U)}; the scatter of readings comes on top.")
