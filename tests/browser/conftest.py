@@ -109,6 +109,7 @@ def windows(browser):
             size = {"width": width, "height": height}
             contexts[kind] = browser.new_context(viewport=size, color_scheme=scheme, is_mobile=phone, has_touch=phone)
             contexts[kind].set_default_timeout(PATIENCE)
+            contexts[kind].add_init_script("localStorage.clear()")  # a menu left open is not for the next test
         return contexts[kind]
 
     yield context

@@ -55,7 +55,7 @@ def _reasons(plan: ReachAssessment, units: UnitSystem) -> tuple[str, ...]:
     if plan.wetness_most < 0:
         limit = f"Even dry steam would show only {dry} of superheat, and {_after_U(plan, units)}{least} are needed."
     else:
-        limit = (f"The least readable quality is {quality_text(1 - plan.wetness_most)}, "
+        limit = (f"The least readable quality {_after_U(plan, units)}is {quality_text(1 - plan.wetness_most)}, "
                  f"{percent(plan.wetness_most)} wetness; dry steam shows {dry} of superheat.")
     ends = (plan.dry,) if plan.dry.wetness == plan.wet.wetness else (plan.dry, plan.wet)
     lines = [*(_end(end, plan, units) for end in ends), limit]

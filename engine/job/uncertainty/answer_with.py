@@ -6,6 +6,8 @@ from dataclasses import replace
 
 from engine.job.assessment import Verdict
 from engine.job.assessment.answer import Answer, answer
+from engine.job.case.fields_instruments import AT_LEAST
+from engine.job.result.said import chance, verdict_word
 from engine.job.rig.tables import points
 from engine.job.uncertainty.figures import figures, wetness_figures
 from engine.job.uncertainty.uncertainty import Forecast
@@ -24,7 +26,7 @@ def answer_with(f: Forecast, units: UnitSystem) -> Answer:
     said = answer(f.assessment, units)
     if f.assessment.verdict not in (Verdict.READS, Verdict.THIN):
         return said
-    said = replace(said, reasons=(how_sure(f), *said.reasons))
+    said = replace(said, reasons=(how_sure(f), *_against_limit(f), *said.reasons))
     if f.assessment.expected or f.missing or not f.budget or not f.budget.U > 0:
         return said
     x, U = figures(f.budget)
@@ -43,3 +45,14 @@ def how_sure(f: Forecast) -> str:
         return f"{of_what} at least {points(whole.U)}; not stated yet: {', '.join(f.missing)}."
     return (f"{of_what} {points(whole.U)} (k = {whole.k:.2f}, coverage {100 * whole.coverage:.4g} %), by the "
             f"instruments alone {points(alone.U)}; the scatter of readings comes on top.")
+
+
+def _against_limit(f: Forecast) -> tuple[str, ...]:
+    """What the decision rule of the case would say, in one sentence; nothing without a limit."""
+    if f.verdicts is None:
+        return ()
+    both, least = f.verdicts, f.assessment.case["limit_side"] == AT_LEAST
+    alone = verdict_word(both.without_sampling)
+    return (f"Against the limit of {'at least' if least else 'at most'} {f.assessment.si['x_limit']:.4g}: "
+            f"{verdict_word(both.with_sampling)}, the chance that it is met {chance(both.with_sampling.probability)}"
+            f"{f' (by the instruments alone {alone})' if f.instruments.U < f.budget.U else ''}.",)
