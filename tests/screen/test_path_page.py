@@ -113,9 +113,10 @@ def test_a_first_visit_shows_an_invented_case_and_says_so(first):
     assert headline(first) == "● Quality in the line 0.9720 ± 0.0058, wetness 2.80 ± 0.58 %."
     reasons = first.markdown[2].value
     assert reasons == ("Expanded uncertainty 0.58 %pt (k = 2.00, coverage 95.45 %), by the instruments alone "
-                       "0.077 %pt; the scatter of readings comes on top. The exhaust is 20.9 K superheated, "
-                       "15.9 K above the least readable superheat of 5 K. Between these pressures the least readable "
-                       "quality is 0.9558.")
+                       "0.077 %pt; the scatter of readings comes on top. Against the limit of at least 0.97: "
+                       "◇ undecided, the chance that it is met 76 % (by the instruments alone ✓ accept). "
+                       "The exhaust is 20.9 K superheated, 15.9 K above the least readable superheat of 5 K. "
+                       "Between these pressures the least readable quality is 0.9558.")
     assert "Heat loss 2.0 kJ/kg of sample, by conductance, +0.10 %pt." in captions(first)
 
 
