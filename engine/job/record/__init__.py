@@ -2,6 +2,7 @@
 
 from engine.job.record.record import (
     Facts,
+    decided,
     facts_of,
     headline,
     reading_as_run,
@@ -12,6 +13,7 @@ from engine.job.record.record import (
 )
 
 __all__ = [
+    "decided",
     "Facts",
     "facts_of",
     "headline",

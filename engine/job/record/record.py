@@ -6,6 +6,7 @@ import hashlib
 import io
 import zipfile
 from collections.abc import Sequence
+from dataclasses import replace
 
 import numpy as np
 
@@ -29,6 +30,7 @@ from engine.job.result.said import decision_reason, told, verdict_word
 from engine.job.runsheet import RunSheet, run_sheet
 from engine.job.runsheet.print import signature_table, title_of
 from engine.job.uncertainty import forecast
+from engine.job.uncertainty.answer_with import answer_with
 from engine.measurement.logbook import Log
 from engine.steam.errors import Fault, InputError
 from engine.steam.units import UnitSystem
@@ -165,7 +167,10 @@ def facts_of(case: Case, result: Result | None, units: UnitSystem, logs: Sequenc
     reduced = set() if result is None else {run.run.name for run in result.runs}
     kept = tuple(log for log in logs if log.name in reduced)
     expected = None if result is not None else heated.forecast if heated else forecast(case, a)
-    return Facts(case, a, answer(a, units), result, heated, expected, kept, sheet, trouble, units)
+    said = answer(a, units)
+    if heated is not None:  # with the scatter of the sets in it
+        said = replace(said, headline=answer_with(expected, units).headline)
+    return Facts(case, a, said, result, heated, expected, kept, sheet, trouble, units)
 
 
 def headline(facts: Facts) -> tuple[str, str, str]:
@@ -179,6 +184,12 @@ def headline(facts: Facts) -> tuple[str, str, str]:
     return facts.said.shape, facts.said.headline, "exploration" if open_points else "result"
 
 
+def decided(facts: Facts) -> tuple[tuple[str, str], ...]:
+    """The decision with sampling and by the instruments alone: name and words; none of the two without a limit."""
+    return tuple((name, f"{verdict_word(v)}: {decision_reason(v, facts.case)}")
+                 for name, v in zip(WAYS, facts.sure.verdicts or (), strict=False))
+
+
 def summary(facts: Facts) -> tuple[tuple[str, str], ...]:
     """What a record will say, in a few lines: name and text."""
     case, runs, sheet = facts.case, () if facts.result is None else facts.result.runs, facts.sheet
@@ -187,13 +198,10 @@ def summary(facts: Facts) -> tuple[tuple[str, str], ...]:
         made_from = "; ".join(f"{run.run.name}: {run.used.sum()} of {len(run.run)} sets" for run in runs)
     if facts.heated is not None:
         made_from = "; ".join(f"{run.run.name}: {run.used.sum()} of {len(run.run)} sets" for run in facts.heated.runs)
-    verdicts = facts.sure.verdicts or ()
-    decided = [(name, f"{verdict_word(v)}: {decision_reason(v, case)}")
-               for name, v in zip(WAYS, verdicts, strict=False)]  # none of the two without a limit
     ticked = ("no run sheet can be made for this case" if sheet is None else
               f"{len(sheet.steps) - len(sheet.unticked)} of {len(sheet.steps)} steps ticked")
     lost = sum(sum(log.rejected_counts.values()) for log in facts.logs)
-    return (("Made from", made_from), *decided, _loss(case),
+    return (("Made from", made_from), *decided(facts), _loss(case),
             ("Sampling representativeness", f"± {describe(case['sampling'])}, {case['sampling_kind']}"),
             ("Run sheet", ticked), *([("Refused in the logs", f"{lost} cells or rows")] if lost else []),
             *([("Not stated", ", ".join(facts.sure.missing))] if facts.sure.missing else []),

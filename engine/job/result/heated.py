@@ -23,13 +23,10 @@ from engine.job.uncertainty import (
     READINGS,
     Forecast,
     forecast,
-    improvements,
     leg_pressure,
     measurement_of,
-    terms_of,
     verdicts,
 )
-from engine.job.uncertainty.uncertainty import sampling_share
 from engine.measurement import SAMPLING, Component, Trend, effective_number, trend, type_a
 from engine.steam.errors import InputError
 from engine.steam.units import from_si
@@ -174,6 +171,5 @@ def _sure(case: Case, a: Assessment, read: list[HeatedRun], together: Repeatabil
         budget = measurement.budget()
     except InputError as error:
         return Forecast(a, error.faults[0].why, missing=missing, cautions=measurement.cautions)
-    alone = budget.without(SAMPLING)
-    return Forecast(a, "", budget, alone, terms_of(budget), improvements(alone), sampling_share(budget), missing,
-                    measurement.cautions, verdicts(case, a.si, budget))
+    return Forecast(a, "", budget, budget.without(SAMPLING), missing, measurement.cautions,
+                    verdicts(case, a.si, budget))
