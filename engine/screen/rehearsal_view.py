@@ -20,6 +20,7 @@ from engine.job.rehearsal.scenario import MOST_SEED, HiddenFault, Load, Scenario
 from engine.job.rehearsal.simulation import LONGEST
 from engine.job.rehearsal.valves import CRACKED, DEED_WORDS, Deed
 from engine.job.runsheet.plan import Plan, plan_of
+from engine.job.runsheet.steps import sections_of
 from engine.screen import live, rehearsal_end, served, session
 from engine.screen.charts.dials import faces_html
 from engine.screen.charts.rehearsal import recorder
@@ -32,6 +33,7 @@ TICK = 1.0  # s on the wall
 SETS_SHOWN = 6
 WORDS = 205  # pixels
 SHEET = "sheet"  # in the address, while the sheet is shown and the rehearsal waits
+REHEARSED = ("blow", "warm", "settle", "read", "close")  # parts of the sheet; before them nothing is under steam
 STEPS = ((30, "30 s"), (60, "1 min"), (300, "5 min"), (900, "15 min"))
 
 _CSS = """
@@ -228,10 +230,23 @@ def _rig(r: Rehearsal) -> None:
         _words(r)
         _valves(r)
         _looks(r)
+    _order(r)
     live.show(recorder(r, units), key="recorder", height=240)
     _readings(r)
     rehearsal_end.conclude(r, _do)
     _aside(r)
+
+
+def _order(r: Rehearsal) -> None:
+    """The steps of the run sheet that are rehearsed, to keep at hand."""
+    plan = _planned(r)
+    if plan is None:
+        return
+    with st.expander("The steps of the run sheet, from draining to closing down"):
+        for section in sections_of(plan):
+            if section.key in REHEARSED:
+                st.markdown(f"**{escaped(section.title)}**\n" + "\n".join(
+                    f"{k}. {escaped(step.said.text(session.units()))}" for k, step in enumerate(section.steps, 1)))
 
 
 def _planned(r: Rehearsal) -> Plan | None:
@@ -285,6 +300,7 @@ def _wind() -> None:
 
 
 def _valves(r: Rehearsal) -> None:
+    st.markdown("**Do**")
     drain = Deed.CLOSE_DRAIN if r.valves.drain else Deed.OPEN_DRAIN
     rows = ((Deed.PERMIT, Deed.WALK_EXHAUST), (drain, Deed.CRACK_STOP), (Deed.OPEN_STOP, Deed.CLOSE_STOP),
             (Deed.BLANK_EXHAUST, Deed.OPEN_BODY))
@@ -302,6 +318,7 @@ def _done(r: Rehearsal, deed: Deed) -> bool:
 
 
 def _looks(r: Rehearsal) -> None:
+    st.markdown("**Look and read**")
     looks = list(Look)
     for k in range(0, len(looks), 2):
         for place, where in zip(st.columns(2), looks[k:k + 2], strict=False):
@@ -326,4 +343,6 @@ def _aside(r: Rehearsal) -> None:
         st.code(rehearsal_end.address_of(to_link(r)), language=None, wrap_lines=True)
         if Scenario(session.case()).case != r.scenario.case:
             st.caption("The open case has been changed since. The rehearsal goes on with the case it began with.")
-        st.button("Give up and begin anew", key="begin anew", on_click=_set, args=(None,))
+        with st.container(horizontal=True):
+            st.button("This rig again, cold", key="same rig cold", on_click=_set, args=(practice.begin(r.scenario),))
+            st.button("Give up and begin anew", key="begin anew", on_click=_set, args=(None,))

@@ -11,6 +11,9 @@ from engine.job.case.demo import DEMO
 from engine.job.case.examples import HEATED
 from engine.job.case.rows import Entry
 from engine.job.record import record_html
+from engine.job.rehearsal import begin
+from engine.job.rehearsal.link import to_link as to_rehearsal
+from engine.job.rehearsal.scenario import Scenario
 from engine.job.result import reduce
 from engine.job.result.runs import runs_typed
 from engine.job.result.said import figures
@@ -70,11 +73,18 @@ def sign(page, initials):
     field = page.get_by_role("textbox", name="Initials")
     field.fill(initials)
     field.press("Enter")
+    page.get_by_text("initials: got nothing").wait_for(state="detached")
     settle(page)
 
 
 def press_tick(page, number):
     page.get_by_role("button", name="○ Tick").nth(number).click()
+
+
+def turn_to(page, part, first_words):
+    """Another part of the sheet, once its steps stand there: a click is on its way before the page knows of it."""
+    page.get_by_text(part).click()
+    page.get_by_text(first_words).wait_for()
     settle(page)
 
 
@@ -101,12 +111,10 @@ def test_a_run_sheet_is_ticked_on_a_tablet_and_found_after_a_reload(opened):
 
 def test_hold_points_hold_and_readings_are_taken(opened):
     page = opened("Run sheet", DEMO, width=1024, height=768)
-    page.get_by_text("Warm up 0/4").click()
-    settle(page)
+    turn_to(page, "Warm up 0/4", "At first the metal condenses the steam")
     assert page.get_by_role("button", name="○ Tick").first.is_disabled()
     page = opened("Run sheet", measured(0), width=1024, height=768)
-    page.get_by_text("Warm up 0/4").click()
-    settle(page)
+    turn_to(page, "Warm up 0/4", "At first the metal condenses the steam")
     press_tick(page, 1)
     page.get_by_text("10 of 50 steps ticked").wait_for()
     page.get_by_role("spinbutton", name="Thermometer, °C").fill("100.4")
@@ -123,6 +131,27 @@ def test_the_run_sheet_fits_other_screens(opened, width, height, phone, dark):
     page.get_by_text("9 of 50 steps ticked").wait_for()
 
 
+def test_the_sheet_and_the_rehearsal_beside_it_are_found_after_a_reload(opened):
+    page = opened("Run sheet", measured(0), width=820, height=1180, forgive="404")
+    tabs = page.locator(".st-key-sheet-or-rehearsal")
+    tabs.get_by_text("Rehearsal").click()
+    page.get_by_role("button", name="Start: nothing is wrong").click()
+    page.get_by_text("The rig is cold").wait_for()
+    page.wait_for_function("() => location.search.includes('rehearsal=')")
+    tabs.get_by_text("Run sheet").click()
+    page.get_by_text("9 of 50 steps ticked").wait_for()
+    page.wait_for_function("() => location.search.includes('on=sheet')")
+    page.reload()
+    page.get_by_text("9 of 50 steps ticked").wait_for()  # no rehearsal comes in its way, and none is lost
+    tabs.get_by_text("Rehearsal").click()
+    page.get_by_text("The rig is cold").wait_for()
+
+
+def test_a_link_to_a_rehearsal_leads_there_from_the_first_page(app_address, visit):
+    page = visit(f"{app_address}?rehearsal={to_rehearsal(begin(Scenario(DEMO, seed=2)))}")
+    page.get_by_text("The rig is cold").wait_for()
+
+
 def downloaded(page, button, tmp_path):
     with page.expect_download() as caught:
         page.get_by_role("button", name=button, exact=True).click()
@@ -134,8 +163,7 @@ def downloaded(page, button, tmp_path):
 def test_the_run_sheet_is_saved_for_the_paper_chosen(opened, tmp_path):
     page = opened("Run sheet", DEMO)
     page.get_by_role("radio", name="Letter").click()
-    settle(page)
-    file = downloaded(page, "Save the run sheet to print", tmp_path)
+    file = downloaded(page, "Save the run sheet to print on Letter", tmp_path)
     assert file.read_text(encoding="utf-8") == runsheet_html(DEMO, SI, "Letter")
 
 
@@ -145,7 +173,7 @@ def test_the_run_sheet_is_saved_for_the_paper_chosen(opened, tmp_path):
 def test_the_record_is_saved_read_and_opened_again(opened, visit, tmp_path):
     case = measured()
     page = opened("Record", case)
-    file = downloaded(page, "Save the record", tmp_path)
+    file = downloaded(page, "Save the record on A4", tmp_path)
     assert from_record(file.read_bytes()) == case
 
     x, U = figures(reduce(case, runs_typed(case)).budget)
@@ -171,7 +199,7 @@ def visit_file(visit, file):
 def test_what_is_undecided_stands_where_the_record_would(opened):
     page = opened("Record", DEMO.with_(heat_loss_method="not decided"))
     page.get_by_text("No record yet").wait_for()
-    assert page.get_by_role("button", name="Save the record").count() == 0
+    assert page.get_by_role("button", name="Save the record on A4").count() == 0
 
 
 @pytest.mark.parametrize(("width", "height", "phone", "dark"), [(390, 844, True, False), (1024, 768, False, False),
@@ -179,7 +207,7 @@ def test_what_is_undecided_stands_where_the_record_would(opened):
 def test_the_record_page_fits_other_screens(opened, width, height, phone, dark):
     page = opened("Record", measured(), width=width, height=height, phone=phone, dark=dark)
     assert sideways(page) == 0
-    page.get_by_role("button", name="Save the record", exact=True).wait_for()
+    page.get_by_role("button", name="Save the record on A4", exact=True).wait_for()
 
 
 # ---- on paper

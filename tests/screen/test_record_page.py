@@ -12,6 +12,7 @@ from engine.job.case.examples import HEATED, HEATING_STEAM, REDUCING_VALVE
 from engine.job.case.fields_instruments import HALF_WIDTH
 from engine.job.case.fields_path import EXPECTED, READING, UNDECIDED
 from engine.job.case.rows import Entry
+from engine.job.paper import usual_paper
 from engine.job.record import facts_of, headline, record_html, summary
 from engine.job.rehearsal.demo_log import demo_log
 from engine.job.result import reduce
@@ -73,8 +74,7 @@ def expected(case, result=None, units=SI, logs=()):
 
 
 def downloads(app):
-    return [block.label for block in app.get("download_button") if block.label.startswith("Save rec") or
-            block.label == "Save the record"]
+    return [block.label for block in app.get("download_button") if "record" in block.label]
 
 
 @pytest.fixture(scope="module")
@@ -92,7 +92,7 @@ def test_a_single_reading_is_told_with_its_doubts(at, units):
     assert (answer(app), told(app)) == expected(DEMO, units=units)
     assert "Exploration, not a result" in " ".join(m.value for m in app.markdown)
     assert told(app)["Made from"] == "the single reading in the case"
-    assert downloads(app) == ["Save the record", "Save record and data"]
+    assert downloads(app) == [f"Save the record on {usual_paper(units)}", "Save record and data"]
 
 
 def test_typed_readings_go_into_the_record(at):

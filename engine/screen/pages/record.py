@@ -10,7 +10,7 @@ from engine.job.assessment.cautions import SHORT
 from engine.job.case import Case
 from engine.job.case.fields_modes import ELECTRIC
 from engine.job.paper import PAPERS, usual_paper
-from engine.job.record import Facts, facts_of, headline, reasons_against, record_html, record_zip, summary
+from engine.job.record import Facts, decided, facts_of, headline, reasons_against, record_html, record_zip, summary
 from engine.job.result import Result
 from engine.job.runsheet import RunSheet
 from engine.measurement.logbook import Log
@@ -49,6 +49,8 @@ def _facts() -> tuple[Facts | None, Result | None]:
         return None, None
     shape, sentence, kind = headline(facts)
     st.markdown(f"### {shape} {escaped(sentence)}")
+    for name, words in decided(facts):
+        st.markdown(f"**{name}** {escaped(words)}")
     if kind == "exploration":
         missing = escaped(", ".join(facts.sure.missing) or "the uncertainty")
         st.markdown(f"**Exploration, not a result**, as long as it is not stated: {missing}. The record will say so.")
@@ -98,8 +100,8 @@ def _files(result: Result | None, brought: tuple[Log, ...]) -> None:
                                  required=True) or usual_paper(units)
     asked = (case, result, units, paper)
     with st.container(horizontal=True):
-        st.download_button("Save the record", partial(record_html, *asked, made=made, logs=brought), "record.html",
-                           "text/html", key="record html", on_click="ignore", type="primary",
+        st.download_button(f"Save the record on {paper}", partial(record_html, *asked, made=made, logs=brought),
+                           "record.html", "text/html", key="record html", on_click="ignore", type="primary",
                            help="One page of HTML: open it in any browser, print it, sign it.")
         st.download_button("Save record and data", partial(record_zip, *asked, made=made, logs=brought), "record.zip",
                            "application/zip", key="record zip", on_click="ignore",

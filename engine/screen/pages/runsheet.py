@@ -6,6 +6,7 @@ import streamlit as st
 
 from engine.job.assessment.cautions import CAUTIONS, SHORT
 from engine.job.case import faults_of
+from engine.job.case.fields_modes import ELECTRIC
 from engine.job.case.fields_runsheet import GAS_NONE, GAS_NOTED
 from engine.job.case.rows import Entry
 from engine.job.paper import PAPERS, Table, usual_paper
@@ -38,12 +39,14 @@ _CSS = """
 .st-key-steps button, .st-key-take button {min-height: 3.5rem; font-size: 1.1rem;}
 .st-key-steps [data-testid="stMarkdownContainer"] p {font-size: 1.08rem; line-height: 1.4;}
 .st-key-take input, .st-key-hand input {min-height: 3.2rem; font-size: 1.15rem;}
-.st-key-parts button {min-height: 3rem;}
+.st-key-take [data-testid^="stNumberInputStep"] {display: none;}
+.st-key-parts button, .st-key-onward button {min-height: 3rem;}
 [class*="st-key-step-"] {border-bottom: 1px solid var(--st-border-color-light, rgba(128,128,128,.3));
   padding-bottom: .7rem;}
 </style>
 """
 SHEET, REHEARSAL = "Run sheet", "Rehearsal"
+_BODY = (("body_mass", 0.5), ("body_length", 10.0), ("body_inner_diameter", 1.0), ("T_ambient", 1.0))
 
 
 def page() -> None:
@@ -74,9 +77,10 @@ def _whole_sheet() -> None:
     _about()
     if sheet is None:
         return
-    _steps(sheet)
-    _gauges(sheet)
-    _readings(sheet)
+    part = _steps(sheet)
+    # whoever reads wants the room for the readings right below the steps, whoever waits the gauges
+    for show in (_readings, _gauges) if part == "read" else (_gauges, _readings):
+        show(sheet)
     _deviations(sheet)
     _paper(sheet)
     with st.expander("Cautions"):
@@ -113,24 +117,33 @@ def _about() -> None:
             entries.choice("gas_hazard", {GAS_NONE: "None noted", GAS_NOTED: "Toxic or suffocating gas possible"})
             for name, step in (("runs_planned", 1.0), ("read_every", 0.5), ("duration", 5.0)):
                 entries.number(name, step=step)
+        if session.case()["mode"] == ELECTRIC:  # the Rig page describes what throttles
+            st.caption("For the warm-up: the body between heater and thermometer.")
+            places = st.columns(4, gap="medium")
+            for place, (name, step) in zip(places, _BODY, strict=True):
+                with place:
+                    entries.number(name, step=step)
 
 
 # ---- steps
 
 
-def _steps(sheet: RunSheet) -> None:
+def _steps(sheet: RunSheet) -> str:
+    """The part chosen, step by step. Returns its key."""
     st.subheader("Steps", anchor=False)
     with st.container(key="hand"):
         session.mirror("initials", st.session_state.get("hand", next((t.initials for t in sheet.ticks.values()), "")))
         st.text_input("Initials", key="initials", max_chars=12, placeholder="of whoever ticks", on_change=_signed,
                       help="A tick without a name says nothing. They are needed once, before the first tick.")
-    _refused("steps")
     sections = {section.key: section for section in sheet.sections}
     with st.container(key="parts"):
         chosen = st.segmented_control("Part", list(sections), key="part", label_visibility="collapsed",
                                       format_func=lambda key: _progress(sections[key], sheet),
                                       default=_current(sheet).key, required=True)
-    _section(sections.get(chosen) or _current(sheet), sheet)
+    section = sections.get(chosen) or _current(sheet)
+    _section(section, sheet)
+    _onward(section, sheet)
+    return section.key
 
 
 def _progress(section: Section, sheet: RunSheet) -> str:
@@ -151,9 +164,23 @@ def _section(section: Section, sheet: RunSheet) -> None:
     with st.container(key="steps"):
         for step in section.steps:
             _step(step, sheet, bool(held))
-    left = [s.title for s in sheet.sections if s.key == section.key and all(t.key in sheet.ticks for t in s.steps)]
-    if left:
-        st.success(f"All of “{left[0]}” is ticked.")
+
+
+def _onward(section: Section, sheet: RunSheet) -> None:
+    """To the next part without a way back to the top."""
+    done = all(step.key in sheet.ticks for step in section.steps)
+    following = next((s for before, s in zip(sheet.sections, sheet.sections[1:], strict=False)
+                      if before.key == section.key), None)
+    if done:
+        st.success(f"All of “{section.title}” is ticked.")
+    if following is not None:
+        with st.container(key="onward"):
+            st.button(f"Next part: {following.title.split(':')[0]}", key="next part", width="stretch",
+                      type="primary" if done else "secondary", on_click=_turn_to, args=(following.key,))
+
+
+def _turn_to(part: str) -> None:
+    st.session_state["part"] = part
 
 
 def _step(step: Step, sheet: RunSheet, held: bool) -> None:
@@ -168,6 +195,7 @@ def _step(step: Step, sheet: RunSheet, held: bool) -> None:
             st.button("○ Tick", key=f"tick {step.key}", width="stretch", on_click=_tick, args=(step.key,),
                       disabled=held)
     with words:
+        _refused(step.key)
         st.markdown(escaped(step.said.text(session.units())))
         if step.missing:
             st.caption(f"Number missing: {escaped(step.missing)}")
@@ -196,7 +224,7 @@ def _tick(key: str) -> None:
     try:
         session.take(ticks=tick(session.case(), key, clock.now(), st.session_state["initials"])["ticks"])
     except InputError as error:
-        _refuse("steps", error)
+        _refuse(key, error)
 
 
 def _correct(step: Step, sheet: RunSheet) -> None:
@@ -214,7 +242,7 @@ def _corrected(key: str) -> None:
     try:
         session.take(ticks=tick(session.case(), key, time, initials, remark)["ticks"])
     except InputError as error:
-        _refuse("steps", error)
+        _refuse(key, error)
 
 
 def _untick(key: str) -> None:
@@ -320,8 +348,9 @@ def _say_outside(sheet: RunSheet) -> None:
 def _paper(sheet: RunSheet) -> None:
     case, units = sheet.case, session.units()
     st.subheader("On paper", anchor=False)
-    paper = st.segmented_control("Paper", PAPERS, key="sheet paper", default=usual_paper(units), required=True)
-    st.download_button("Save the run sheet to print", lambda: runsheet_html(case, units, paper or usual_paper(units)),
+    paper = st.segmented_control("Paper", PAPERS, key="sheet paper", default=usual_paper(units),
+                                 required=True) or usual_paper(units)
+    st.download_button(f"Save the run sheet to print on {paper}", lambda: runsheet_html(case, units, paper),
                        "run-sheet.html", "text/html", key="sheet html", on_click="ignore",
                        help=f"{title_of(case)}: one page of HTML; open it in any browser and print.")
 
