@@ -96,7 +96,7 @@ def _preview(facts: Facts) -> None:
 def _files(result: Result | None, brought: tuple[Log, ...]) -> None:
     case, units, made = session.case(), session.units(), clock.now()
     st.subheader("The record", anchor=False)
-    paper = st.segmented_control("Paper", PAPERS, key="record paper", default=usual_paper(units),
+    paper = st.segmented_control("Paper", PAPERS, key=f"record paper {units.name}", default=usual_paper(units),
                                  required=True) or usual_paper(units)
     asked = (case, result, units, paper)
     with st.container(horizontal=True):

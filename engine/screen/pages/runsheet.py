@@ -348,7 +348,7 @@ def _say_outside(sheet: RunSheet) -> None:
 def _paper(sheet: RunSheet) -> None:
     case, units = sheet.case, session.units()
     st.subheader("On paper", anchor=False)
-    paper = st.segmented_control("Paper", PAPERS, key="sheet paper", default=usual_paper(units),
+    paper = st.segmented_control("Paper", PAPERS, key=f"sheet paper {units.name}", default=usual_paper(units),
                                  required=True) or usual_paper(units)
     st.download_button(f"Save the run sheet to print on {paper}", lambda: runsheet_html(case, units, paper),
                        "run-sheet.html", "text/html", key="sheet html", on_click="ignore",
