@@ -130,13 +130,13 @@ def _case_tools() -> None:
             st.caption("The case file can be saved once every entry can be used.")
         st.file_uploader("Open a case file, or a record", type=["json", *session.RECORDS], key="open",
                          on_change=session.open_file, args=("open",))
-        st.caption("Link to this case: the page's own address holds it; copy it, or this word behind `?case=`.")
-        st.code(f"?case={session.link()}", language=None, wrap_lines=True)
         st.selectbox("Invented examples", list(EXAMPLES), index=None, placeholder="Choose one to open it",
                      key="example", on_change=session.open_example, args=("example",))
         left, right = st.columns(2)
         left.button("Demo case", key="demo", on_click=session.open_demo, width="stretch")
         right.button("Empty case", key="blank", on_click=session.open_blank, width="stretch")
+        st.caption("Link to this case: the page's own address holds it; copy it, or this word behind `?case=`.")
+        st.code(f"?case={session.link()}", language=None, height=70)
 
 
 def _notice() -> None:
