@@ -9,6 +9,7 @@ import shutil
 import subprocess
 from fnmatch import fnmatch
 from functools import lru_cache
+from graphlib import CycleError, TopologicalSorter
 from pathlib import Path
 
 import pytest
@@ -18,7 +19,7 @@ FLOORS = ("steam", "calorimeter", "measurement", "job", "screen")  # from the gr
 DRAWING = {"streamlit", "plotly"}  # the business of the uppermost floor alone
 TESTING = {"CoolProp", "hypothesis", "playwright", "pytest"}  # in requirements.txt for the tests only
 TOP = {"README.md", "DEVELOPERS.md", "requirements.txt", "app.py", "engine", "tests"}
-HIDDEN = {".ci", ".gitignore", ".pytest.ini", ".ruff.toml", ".streamlit"}
+HIDDEN = {".ci", ".gitignore", ".pictures", ".pytest.ini", ".ruff.toml", ".streamlit"}
 LONGEST = 400  # lines; a longer module is two
 
 # Where the product came from is no part of it. Scrambled, so that this file keeps its own rule.
@@ -119,6 +120,15 @@ def test_an_arrow_that_points_upward_is_found(name, text):
 )
 def test_an_arrow_that_points_downward_is_allowed(name, text):
     assert not trespasses(name, text)
+
+
+def test_no_module_leads_back_to_itself():
+    """Within a floor, too, imports run one way; a package's door counts as its modules' reader, not as theirs."""
+    named = {name.removesuffix(".py").replace("/", "."): name for name in modules()}
+    leads = {module: imported(name, (ROOT / name).read_text()) & set(named) for module, name in named.items()}
+    with pytest.raises(CycleError):
+        TopologicalSorter({"a": {"b"}, "b": {"a"}}).prepare()
+    TopologicalSorter(leads).prepare()
 
 
 def test_the_top_level_holds_the_agreed_names_only():

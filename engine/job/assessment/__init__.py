@@ -1,15 +1,7 @@
 """One call from a case to everything that the Path page, and whatever follows it, shows."""
 
-from engine.job.assessment.assessment import (
-    Assessment,
-    StatePoint,
-    Verdict,
-    assess,
-)
+from engine.job.assessment.assessed import Assessment, StatePoint
+from engine.job.assessment.assessment import assess
+from engine.job.assessment.verdict import Verdict
 
-__all__ = [
-    "assess",
-    "Assessment",
-    "StatePoint",
-    "Verdict",
-]
+__all__ = ["Assessment", "StatePoint", "Verdict", "assess"]

@@ -5,8 +5,9 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from engine.job.assessment import methods_said as said
-from engine.job.assessment.assessment import Assessment, Verdict
+from engine.job.assessment.assessed import Assessment
 from engine.job.assessment.terms import HOW
+from engine.job.assessment.verdict import Verdict
 from engine.job.case import T_LEG, describe
 from engine.job.case.fields_path import BY_ALTITUDE, BY_KG, NONE, UNDECIDED
 from engine.steam.units import UnitSystem, from_si

@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-
 import numpy as np
 
 from engine.calorimeter import (
@@ -21,118 +19,22 @@ from engine.calorimeter import (
     velocity,
     velocity_ratio,
 )
-from engine.job.assessment.heating import Heating, heat, heating_path
+from engine.job.assessment.assessed import Assessment, StatePoint, Velocities
+from engine.job.assessment.heating import heat, heating_path
 from engine.job.assessment.modes import check_mode
-from engine.job.assessment.separation import Separation, separated, stage_of
+from engine.job.assessment.separation import separated, stage_of
 from engine.job.assessment.terms import Terms, check_method, refuse_supersonic, terms_at
 from engine.job.assessment.verdict import Verdict, verdict_of
 from engine.job.case import Case, Resolved, as_entered, describe, resolve
 from engine.job.case.fields import FIELDS
 from engine.job.case.fields_modes import ELECTRIC, SEPARATING
-from engine.job.case.fields_path import BY_NORMAL, EXPECTED, UNDECIDED
+from engine.job.case.fields_path import BY_NORMAL, EXPECTED
 from engine.steam import Saturated, saturated, saturation_temperature, state_ph, vapour
 from engine.steam.errors import Fault, InputError
 
 _LEAST_CP = 1800.0  # J/(kg K): no vapour heats up with less
 POINTS = 25  # along a path: the eye sees no corner, and the page stays quick
 _FAST = 300.0  # m/s: slower than sound in any dry saturated steam
-
-
-@dataclass(frozen=True)
-class StatePoint:
-    """One named state on the way, SI; ``velocity`` is None where none is known."""
-
-    name: str
-    p: float
-    T: float
-    x: float | None
-    h: float
-    s: float
-    v: float
-    velocity: float | None
-
-
-@dataclass(frozen=True)
-class Velocities:
-    """What the bores make of the sample flow; None where the case does not say."""
-
-    line: float | None
-    sample: float | None
-    exhaust: float | None
-    ratio: float | None
-    keeping_bore_ratio: float
-    kinetic_energy: float | None
-    kinetic_superheat: float | None
-    kinetic_quality: float | None
-
-
-@dataclass(frozen=True)
-class Assessment:
-    """Everything the case says, SI.
-
-    x           quality in the line: reduced from the reading, or as expected; None where it cannot be told
-    x_below     where the exhaust is too little superheated: the quality is below this; None otherwise
-    x_as_read   the same reading without heat loss and kinetic energy
-    x_without_kinetic   with the heat loss alone
-    T_exhaust, superheat   what the thermometer reads, or must read for the expected wetness
-    x_least     least readable quality, at the least superheat asked for
-    least_readable      superheat from which the exhaust can be read [K]: the least asked for, or more in a fast
-        stream, which is still wet while a probe that stops it shows superheat
-    margin      superheat above the least readable one [K]
-    line_superheat      [K], 0 for a wet line
-    read_state  the exhaust steam as the thermometer reads it; None where that is not superheated
-    separation, heating   what a separator or a heater did before; None where there is none. Behind a separator
-        the path is that of the throttled steam; with a heater it is the heating, "exhaust" is the steam after
-        it, and ``x_as_read`` leaves out the heat that the heater lost
-    """
-
-    case: Case
-    si: Resolved
-    verdict: Verdict
-    status: Status
-    x: float | None
-    x_below: float | None
-    x_as_read: float | None
-    x_without_kinetic: float | None
-    T_exhaust: float
-    T_saturation: float
-    superheat: float
-    x_exhaust: float
-    x_least: float
-    least_readable: float
-    margin: float
-    line_superheat: float
-    terms: Terms
-    line: Saturated
-    velocities: Velocities
-    path: Path
-    reach_path: Path | None
-    bore_path: Path | None
-    states: tuple[StatePoint, ...]
-    read_state: StatePoint | None
-    separation: Separation | None = None
-    heating: Heating | None = None
-
-    @property
-    def expected(self) -> bool:
-        """Whether the case asks what must be seen, rather than what was read."""
-        return self.case["question"] == EXPECTED
-
-    @property
-    def heat_loss_undecided(self) -> bool:
-        if self.heating is not None:
-            return self.case["power_loss"] is None
-        return self.case["heat_loss_method"] == UNDECIDED
-
-    @property
-    def p_thermometer(self) -> float:
-        """Pressure where the deciding temperature is taken [Pa]."""
-        return self.heating.p if self.heating is not None else self.si["p_exhaust"]
-
-    def in_quality(self, energy: float) -> float:
-        """What an energy [J/kg of the steam at the thermometer] is worth in the quality of the line."""
-        kept = 1.0 - self.separation.drain_fraction if self.separation is not None else 1.0
-        return kept * energy / (self.line.h_g - self.line.h_f)
 
 
 def assess(case: Case) -> Assessment:

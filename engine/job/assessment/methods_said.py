@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from engine.job.assessment.assessment import Assessment
+from engine.job.assessment.assessed import Assessment
 from engine.job.case import Case, describe
 from engine.job.case.fields_modes import ELECTRIC, SEPARATING, THROTTLING
 from engine.job.case.fields_path import EXPECTED

@@ -2,9 +2,8 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from types import MappingProxyType
-from typing import TYPE_CHECKING
 
 from engine.calorimeter import (
     MassBasis,
@@ -16,6 +15,7 @@ from engine.calorimeter import (
     separated_reading,
     wet_steam,
 )
+from engine.job.assessment.assessed import Assessment, Separation, StatePoint
 from engine.job.assessment.verdict import Verdict
 from engine.job.case import Case, Resolved
 from engine.job.case.fields import FIELDS
@@ -24,27 +24,7 @@ from engine.job.case.fields_path import EXPECTED
 from engine.steam import saturated
 from engine.steam.errors import Fault, InputError
 
-if TYPE_CHECKING:
-    from engine.job.assessment.assessment import Assessment, StatePoint
-
 _MOST = 1.999  # a throttled quality this far above 1 only says that nothing can be read
-
-
-@dataclass(frozen=True)
-class Separation:
-    """What the separator does to the sample, SI.
-
-    ``drain_fraction`` of the whole sample is drained at pressure ``p``, which is ``water_share`` of the water
-    there (None where that cannot be told); ``drain_least`` of the sample would have to be, so that the rest
-    can be read (None where no draining helps); ``x_throttled`` is the quality left to the throttle.
-    """
-
-    p: float
-    vessel_loss: float
-    drain_fraction: float
-    water_share: float | None = None
-    x_throttled: float | None = None
-    drain_least: float | None = None
 
 
 def stage_of(case: Case, si: Resolved) -> tuple[Resolved, Separation]:

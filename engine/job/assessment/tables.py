@@ -8,7 +8,8 @@ from collections.abc import Callable, Sequence
 from functools import partial
 
 from engine.job.assessment.answer import SHAPES, percent_points, quality_text
-from engine.job.assessment.assessment import Assessment, Verdict
+from engine.job.assessment.assessed import Assessment
+from engine.job.assessment.verdict import Verdict
 from engine.job.case import Value, describe
 from engine.job.case.fields import FIELDS
 from engine.job.case.rows import TEXT, Entry
