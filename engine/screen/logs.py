@@ -21,6 +21,7 @@ from engine.job.uncertainty import Check, check
 from engine.measurement.logbook import Log, read_log
 from engine.measurement.logbook_mapping import Mapping
 from engine.screen import session
+from engine.screen.style import escaped
 from engine.steam.errors import InputError
 
 DRAWS = 1_000_000
@@ -117,7 +118,7 @@ def read_in(name: str) -> Held:
     one = held()[name]
     if not one.confirmed or one.log is not None or one.refused or one.mapping.questions:
         return one
-    bar = st.progress(0.0, f"Reading {name}") if len(one.data) > 1_000_000 else None
+    bar = st.progress(0.0, f"Reading {escaped(name)}") if len(one.data) > 1_000_000 else None
     try:
         log = read_log(one.file(), one.mapping, progress=_now_and_then(bar.progress) if bar else None)
         held()[name] = replace(one, log=replace(log, name=name))

@@ -1,7 +1,7 @@
 """A real browser in front of a real server.
 
 Every test in this folder is marked ``browser`` and skipped, with the reason, where there is no browser.
-A page that writes an error to its console, throws, or asks for anything outside this machine fails its test;
+A page that writes an error to its console, throws, or asks for anything but from its own server fails its test;
 so does a server that logs a traceback.
 """
 
@@ -133,10 +133,15 @@ def visit(windows):
 
         page = windows(width, height, dark, phone).new_page()
         pages.append(page)
+
+        def asked(url: str) -> None:
+            if astray(url, address):
+                complain(f"leaves its server: {url}")
+
         page.on("console", lambda message: message.type == "error" and complain(f"console: {message.text}"))
         page.on("pageerror", lambda error: complain(f"thrown: {error}"))
-        page.on("request", lambda request: _leaves(request.url) and complain(f"leaves the machine: {request.url}"))
-        page.on("websocket", lambda channel: _leaves(channel.url) and complain(f"leaves the machine: {channel.url}"))
+        page.on("request", lambda request: asked(request.url))
+        page.on("websocket", lambda channel: asked(channel.url))
         if prepare:
             prepare(page)
         page.goto(address)
@@ -150,8 +155,31 @@ def visit(windows):
     assert not complaints, "\n".join(complaints)
 
 
-def _leaves(url: str) -> bool:
-    return urlsplit(url).scheme in ("http", "https", "ws", "wss") and urlsplit(url).hostname != "127.0.0.1"
+def astray(url: str, opened: str) -> bool:
+    """Whether a page opened at one address goes anywhere but to the server, or the file, that it came from."""
+    asked, own = urlsplit(url), urlsplit(opened)
+    if asked.scheme in ("data", "blob", "about"):  # made in the page itself
+        return False
+    if own.scheme == "file":
+        return (asked.scheme, asked.path) != (own.scheme, own.path)
+    return (asked.scheme.replace("ws", "http"), asked.netloc) != (own.scheme, own.netloc)
+
+
+PAGES = {  # by name in the navigation: words that only this page has
+    "Path": "What the answer takes for granted", "Reach": "What the reach takes for granted",
+    "Rig": "Every effect with its cause", "Readings": "Readings: logs and typed sets",
+    "Run sheet": "When it is otherwise", "Record": "what was done otherwise"}
+
+
+def turn_to(page, name: str) -> None:
+    """Another page, by the navigation as a reader goes there; a phone has it behind the menu."""
+    link = page.get_by_role("link", name=name, exact=True)
+    menu = page.get_by_test_id("stExpandSidebarButton")
+    if not link.is_visible() and menu.count():
+        menu.click()
+    link.click()
+    page.get_by_text(PAGES[name]).first.wait_for()
+    settle(page)
 
 
 def settle(page) -> None:

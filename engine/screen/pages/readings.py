@@ -196,7 +196,7 @@ def _runs(found: Result) -> None:
     chosen = names[0]
     if len(names) > 1:
         chosen = st.segmented_control("Run", names, key="run shown", default=names[0], required=True,
-                                      label_visibility="collapsed") or names[0]
+                                      format_func=escaped, label_visibility="collapsed") or names[0]
     run = found.runs[names.index(chosen)] if chosen in names else found.runs[0]
     run_view.run_view(run, found)
     with st.expander("What counts as settled"):

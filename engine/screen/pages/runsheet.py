@@ -189,7 +189,8 @@ def _step(step: Step, sheet: RunSheet, held: bool) -> None:
     ticked = sheet.ticks.get(step.key)
     with mark:
         if ticked:
-            with st.popover(f"✓ {ticked.time[-5:]} {ticked.initials}", width="stretch", key=f"ticked {step.key}"):
+            with st.popover(escaped(f"✓ {ticked.time[-5:]} {ticked.initials[:12]}"), width="stretch",
+                            key=f"ticked {step.key}"):
                 _correct(step, sheet)
         else:
             st.button("○ Tick", key=f"tick {step.key}", width="stretch", on_click=_tick, args=(step.key,),
@@ -352,7 +353,7 @@ def _paper(sheet: RunSheet) -> None:
                                  required=True) or usual_paper(units)
     st.download_button(f"Save the run sheet to print on {paper}", lambda: runsheet_html(case, units, paper),
                        "run-sheet.html", "text/html", key="sheet html", on_click="ignore",
-                       help=f"{title_of(case)}: one page of HTML; open it in any browser and print.")
+                       help=escaped(title_of(case)) + ": one page of HTML; open it in any browser and print.")
 
 
 if __name__ == "__main__":
