@@ -14,9 +14,9 @@ from engine.job.assessment import Assessment, Verdict, assess
 from engine.job.assessment.answer import SHAPES, quality_text
 from engine.job.assessment.methods_said import in_short
 from engine.job.case import Case
-from engine.job.case.casefile import to_json
+from engine.job.case.casefile import MAX_RECORD, to_json
 from engine.job.case.examples import EXAMPLES
-from engine.screen import address, entries, session, style
+from engine.screen import address, entries, numbers, session, style
 from engine.steam.errors import InputError
 from engine.steam.units import SYSTEMS
 
@@ -47,6 +47,7 @@ def run(pages: Sequence) -> None:
         _notice()
     page.run()
     address.keep(page.url_path, case=session.link())
+    numbers.listen()
     session.listen()
     _settle(len(sys.modules))
 
@@ -129,6 +130,7 @@ def _case_tools() -> None:
         else:
             st.caption("The case file can be saved once every entry can be used.")
         st.file_uploader("Open a case file, or a record", type=["json", *session.RECORDS], key="open",
+                         max_upload_size=MAX_RECORD // 1_000_000,
                          on_change=session.open_file, args=("open",))
         st.selectbox("Invented examples", list(EXAMPLES), index=None, placeholder="Choose one to open it",
                      key="example", on_change=session.open_example, args=("example",))

@@ -56,6 +56,7 @@ def test_rows_are_added_changed_and_taken_out():
     ({"p_line": "9 bar"}, "Readings typed, row 1, line pressure: got 9 bar, needs a number, in bar gauge"),
     ({"p_line": "1e9"}, "Readings typed, row 1, line pressure: got 1e+09 bar gauge, needs"),
     ({"sample_flow": "1.013,5"}, "got 1.013,5, needs a number"),
+    ({"p_line": "9,017"}, "got 9,017, needs a number, in bar gauge\n  - the comma may be a decimal one"),
     ({"time": "nan"}, "got nan, needs a number, in min"),
 ])
 def test_a_cell_that_cannot_be_is_refused_and_stays_empty(cells, message):

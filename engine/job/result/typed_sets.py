@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Mapping, Sequence
 from typing import Any, NamedTuple
 
@@ -17,6 +18,9 @@ _UNITS = {"time": {"SI": "min", "US": "min"}, "p_barometer": {"SI": "kPa", "US":
 _SHORT = {"run": "Run", "time": "Time", "p_line": "Line pressure", "p_exhaust": "Exhaust pressure",
           "T_exhaust": "Temperature", "p_barometer": "Barometer", "sample_flow": "Sample flow",
           "T_ambient": "Ambient", "remark": "Remark"}
+_AMBIGUOUS = re.compile(r"[+-]?[1-9][0-9]{0,2},[0-9]{3}")
+_TWO_MEANINGS = ("the comma may be a decimal one, or stand between thousands",
+                 "type it with a point, or without the comma")
 
 
 class GridColumn(NamedTuple):
@@ -111,7 +115,8 @@ def _value(field: Field, column: GridColumn, typed: Any,
         return None, None
     number = as_number(text)
     if number is None:
-        return None, Fault(field.label, text[:40], "", f"a number, in {column.unit} {column.basis}".rstrip(),
+        because = _TWO_MEANINGS if _AMBIGUOUS.fullmatch(text) else ()
+        return None, Fault(field.label, text[:40], "", f"a number, in {column.unit} {column.basis}".rstrip(), *because,
                            name=field.name)
     entry = Entry(number, column.unit, column.basis)
     fault = entry_fault(field, entry, p_air)
@@ -121,11 +126,15 @@ def _value(field: Field, column: GridColumn, typed: Any,
 def as_number(text: str) -> float | None:
     """A number as people type it, with a decimal point or comma; None for anything else.
 
-    >>> as_number("9,01"), as_number(" 121.3 "), as_number("1.013,5"), as_number("n/a")
-    (9.01, 121.3, None, None)
+    Three figures after a comma could be thousands, and are not taken.
+
+    >>> as_number("9,01"), as_number(" 121.3 "), as_number("0,972"), as_number("9.017")
+    (9.01, 121.3, 0.972, 9.017)
+    >>> as_number("1,234"), as_number("1.013,5"), as_number("n/a")
+    (None, None, None)
     """
     plain = text.strip().replace("−", "-")
-    if plain.count(",") == 1 and "." not in plain:
+    if plain.count(",") == 1 and not _AMBIGUOUS.fullmatch(plain) and "." not in plain:
         plain = plain.replace(",", ".")
     try:
         value = float(plain) if plain.isascii() and "_" not in plain else float("nan")
