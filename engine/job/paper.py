@@ -11,6 +11,10 @@ from engine.steam.errors import Fault, InputError
 from engine.steam.units import UnitSystem
 
 PAPERS = ("A4", "Letter")
+TURNS = dict.fromkeys((*range(0x202A, 0x202F), *range(0x2066, 0x206A)))
+"""Marks that turn round whatever is written after them, figures too: taken out of users' words (str.translate)."""
+_HEAD = 52  # signs of a title at the head of a sheet
+_LONG = re.compile(r"\S{24}(?=\S)")  # a word that needs a place to be broken at
 
 _STYLE = """
 @page { size: %(paper)s; margin: 17mm 13mm 15mm;
@@ -31,6 +35,8 @@ ul { margin: 0 0 2mm; padding-left: 5mm; }
 table { border-collapse: collapse; width: 100%%; margin: 0 0 2.5mm; font-variant-numeric: tabular-nums; }
 thead { display: table-header-group; }
 tr { break-inside: avoid; }
+tbody tr:first-child:not(:last-child), tr:nth-last-child(2) { break-after: avoid; }
+p:has(+ ul), p:has(+ .scroll) { break-after: avoid; }
 th, td { border: 0.2mm solid #999; padding: 0.7mm 1.4mm; text-align: left; vertical-align: top; font-size: 9pt; }
 th { background: #eee; font-weight: 600; }
 h1, h2, h3, p, li, td.words, table.words td { overflow-wrap: anywhere; }
@@ -82,13 +88,19 @@ def usual_paper(units: UnitSystem) -> str:
 def document(title: str, body: str, paper: str, *, foot: str = "", style: str = "", data: str = "") -> str:
     """A whole page. ``title`` and ``foot`` are plain text and stand on every sheet; ``body`` is HTML; ``data``
     are blocks that nobody sees."""
-    css = _STYLE % {"paper": check_paper(paper), "left": css_text(title), "foot": css_text(foot)}
+    css = _STYLE % {"paper": check_paper(paper), "left": css_text(_short(title)), "foot": css_text(foot)}
     return ('<!DOCTYPE html>\n<html lang="en"><head><meta charset="utf-8">'
             '<meta name="viewport" content="width=device-width, initial-scale=1">'
             '<meta http-equiv="Content-Security-Policy" '
             "content=\"default-src 'none'; style-src 'unsafe-inline'; base-uri 'none'; form-action 'none'\">\n"
             f"<title>{escaped_line(title)}</title>\n<style>{css}{style}</style></head>\n"
             f"<body>\n{body}\n{data}</body></html>\n")
+
+
+def _short(title: str) -> str:
+    """A title that leaves room for the number of the page beside it, however wide its letters."""
+    line = one_line(title)
+    return line if len(line) <= _HEAD else f"{line[:_HEAD - 1].rstrip()}…"
 
 
 def one_line(text: str) -> str:
@@ -103,7 +115,12 @@ def escaped_line(text: str) -> str:
 
 def lines(text: str) -> str:
     """Escaped text that keeps its lines."""
-    return "<br>".join(escape(line) for line in _plain(text).split("\n"))
+    return "<br>".join(map(_breakable, _plain(text).split("\n")))
+
+
+def _breakable(line: str) -> str:
+    """Escaped, with places in words of any length at which they may be broken."""
+    return "<wbr>".join(escape(part) for part in _LONG.sub(r"\g<0>\n", line).split("\n"))
 
 
 def paragraph(text: str, kind: str = "") -> str:
@@ -128,5 +145,7 @@ def css_text(text: str) -> str:
 
 
 def _plain(text: str) -> str:
-    """Without the control characters that HTML does not know; tabulators and line ends stay."""
-    return re.sub(r"[\x00-\x08\x0b-\x1f\x7f-\x9f]", " ", text.replace("\r\n", "\n").replace("\r", "\n"))
+    """Without the control characters that HTML does not know, and without those that turn the direction of what
+    follows; tabulators and line ends stay."""
+    text = text.replace("\r\n", "\n").replace("\r", "\n").translate(TURNS)
+    return re.sub(r"[\x00-\x08\x0b-\x1f\x7f-\x9f]", " ", text)

@@ -7,6 +7,7 @@ import re
 
 import streamlit as st
 
+from engine.job.paper import TURNS
 from engine.screen.charts.diagram import COLOURS
 
 _CSS = """
@@ -54,7 +55,7 @@ def apply() -> None:
 
 def escaped(text: str) -> str:
     """User's words inside Markdown: shown as typed, on one line, meaning nothing."""
-    return _MARKDOWN.sub(r"\\\1", _LINKS.sub(_JOINER, " ".join(text.split())))
+    return _MARKDOWN.sub(r"\\\1", _LINKS.sub(_JOINER, " ".join(text.translate(TURNS).split())))
 
 
 def escaped_lines(text: str) -> str:

@@ -5,7 +5,7 @@ from html.parser import HTMLParser
 
 HOSTILE = ('</style></title></script><script>alert(1)</script><img src=x onerror=alert(2)> & "quoted" \'single\' '
            '"; } body { display: none } /* ${1+1} {0} %s \u2028 \x00')
-VOID = {"meta", "br", "rect", "path", "circle"}
+VOID = {"meta", "br", "wbr", "rect", "path", "circle"}
 
 
 class Page(HTMLParser):

@@ -1,6 +1,7 @@
 """Run sheet and record from the command line: files written whole, statuses and reasons for scripts."""
 
 import io
+import json
 import zipfile
 
 import pytest
@@ -14,6 +15,8 @@ from engine.job.commands import main
 from engine.job.record import record_html
 from engine.job.record.data import reopened
 from engine.job.rehearsal.demo_log import demo_log
+from engine.job.result import reduce
+from engine.job.result.runs import run_of_log
 from engine.job.runsheet.print import runsheet_html
 from engine.job.runsheet.readings import with_reading
 from engine.steam.units import SI, US
@@ -96,6 +99,22 @@ def test_logs_may_stand_before_between_and_after_the_options(run, tmp_path, orde
 def test_what_no_command_knows_is_still_refused(run, tmp_path, capsys, command, more):
     assert run(command, DEMO, "--out", tmp_path / "x.html", *more)[0] == 2
     assert f"unrecognized arguments: {more[-1]}" in capsys.readouterr().err
+
+
+def test_a_record_is_retraced_from_itself_alone(run, tmp_path):
+    log, file, again = tmp_path / "run1.csv", tmp_path / "record.html", tmp_path / "again.html"
+    demo_log(log, DEMO, seed=4, x=0.972, duration=4200.0, every=30.0)
+    run("record", DEMO, log, "--out", file, "--made", "2025-03-04 14:20")
+    log.unlink()
+    said = []
+    for arguments in (["record", file, "--out", again, "--made", "2025-03-04 14:20"],
+                      ["reduce", "--case", file, "--json", "-", "--draws", "0"], ["quality", file]):
+        out, err = io.StringIO(), io.StringIO()
+        assert main([*map(str, arguments)], out, err) == 0, err.getvalue()
+        said.append(out.getvalue())
+    assert again.read_bytes() == file.read_bytes()
+    result = reduce(DEMO, tuple(map(run_of_log, reopened(file.read_bytes()).logs)))
+    assert json.loads(said[1])["x"] == result.x
 
 
 def test_what_is_undecided_is_named_and_nothing_is_written(run, tmp_path):

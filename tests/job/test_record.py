@@ -39,7 +39,7 @@ from engine.steam.errors import InputError
 from engine.steam.units import SI, US
 
 TAGS = {"html", "head", "meta", "title", "style", "body", "h1", "h2", "h3", "p", "div", "table", "thead", "tbody", "tr",
-        "th", "td", "br", "ul", "li", "script", "figure", "figcaption", "svg", "defs", "clippath", "rect", "g",
+        "wbr", "th", "td", "br", "ul", "li", "script", "figure", "figcaption", "svg", "defs", "clippath", "rect", "g",
         "polyline", "circle", "text", "path"}
 MADE = "2025-03-04 14:20"
 STATED = {"sampling_kind": HALF_WIDTH, "sampling": Entry(0.5, "%pt")}
@@ -400,6 +400,31 @@ def test_nothing_written_by_a_user_does_anything():
     assert page.text.count("<script>alert(1)</script>") > 8  # shown as typed
     assert json.loads(page.blocks["case"])["values"]["title"] == HOSTILE
     assert from_record(html) == case
+
+
+def test_no_word_turns_a_figure_round_or_runs_off_the_paper():
+    turn, long = "\u202e", "W" * 200
+    case = DEMO.with_(title=f"{turn}{long}", deviations=long)
+    case = with_reading(case, run=f"{turn}1", T_exhaust=Entry(121.1, "°C"))
+    case = with_reading(case, run=f"{turn}1", T_exhaust=Entry(121.2, "°C"), remark=long)
+    html = record_html(case, reduce(case, runs_typed(case)), SI, "A4", made=MADE)
+    printed = html[:html.index("<script")]
+    assert turn not in printed and turn in from_record(html)["title"]
+    body = re.sub(r"<(style|title|h1|svg).*?</\1>|<meta[^>]*>", "", printed, flags=re.DOTALL)  # the heading breaks itself
+    assert not re.search(r"[^\s<>]{60}", body)
+
+
+def test_units_of_a_log_stay_in_what_was_read(log):
+    page = harmless(record_html(DEMO, reduce(DEMO, (run_of_log(log),)), US, "Letter", made=MADE, logs=[log]), TAGS)
+    headings = next(table[0] for table in page.tables if table[0][:1] == ["Row"])
+    assert any(heading.startswith("p₁, bar") for heading in headings) and any("°C" in h for h in headings)
+
+
+def test_only_what_the_method_asks_for_is_listed(case):
+    page = harmless(record_html(HEATED.with_(**STATED), None, SI, "A4", made=MADE), TAGS)
+    assert "Electric power" in page.text and "Exhaust pressure" not in page.text and "Orifice" not in page.text
+    page = harmless(record_html(case, reduce(case, runs_typed(case)), SI, "A4", made=MADE), TAGS)
+    assert "Drained water" not in page.text and "Electric power" not in page.text and "Orifice bore" in page.text
 
 
 def test_a_hostile_log_stays_text(log):

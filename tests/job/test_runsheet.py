@@ -29,7 +29,7 @@ from engine.steam.errors import InputError
 from engine.steam.units import SI, US, to_si
 
 TAGS = {"html", "head", "meta", "title", "style", "body", "h1", "h2", "h3", "p", "div", "table", "thead", "tbody", "tr",
-        "th", "td", "br", "ul", "li"}
+        "wbr", "th", "td", "br", "ul", "li"}
 ASKED = DEMO.with_(question=EXPECTED)
 
 

@@ -46,3 +46,8 @@ MODE_FIELDS = (
     _known("power_tolerance", "Electric power known to ±"),
     _known("power_loss_tolerance", "Heater loss known to ±"),
 )
+
+OF_SEPARATOR = ("p_separator", "water_by", "water_mass", "water_volume", "T_water", "weighed_basis", "weighed_mass",
+                "vessel_loss", "water_share", "water_tolerance", "weighed_tolerance", "vessel_loss_tolerance")
+OF_HEATER = ("p_heater", "T_heater", "power", "power_loss", "power_tolerance", "power_loss_tolerance")
+"""Entries that only one of the methods asks for."""

@@ -17,10 +17,16 @@ from engine import __version__
 from engine.job.assessment import assess
 from engine.job.assessment.verdict import Verdict
 from engine.job.case import Case
-from engine.job.case.casefile import from_json
+from engine.job.case.casefile import from_json, from_record
 from engine.job.commands.console import ANSWERED, UNUSABLE, Console, as_text
 from engine.job.commands.console import OPEN as NO_ANSWER
-from engine.job.commands.documents import record_arguments, record_command, runsheet_arguments, runsheet_command
+from engine.job.commands.documents import (
+    is_record,
+    record_arguments,
+    record_command,
+    runsheet_arguments,
+    runsheet_command,
+)
 from engine.job.commands.reduce import reduce_arguments, reduce_command
 from engine.job.commands.rehearse import rehearse_arguments, rehearse_command
 from engine.job.uncertainty import forecast_or_why
@@ -68,9 +74,9 @@ def _quality(options: argparse.Namespace, console: Console) -> int:
 
 
 def read_case(path: Path) -> Case:
-    """A case from a file; InputError also where there is no such file."""
+    """A case from its file or from a record; InputError also where there is no such file."""
     try:
-        return from_json(path.read_bytes())
+        return from_record(path.read_bytes()) if is_record(path) else from_json(path.read_bytes())
     except OSError as error:
         raise InputError(Fault("case file", str(path), "", "a file that can be read", error.strerror or str(error),
                                "check the path")) from error
@@ -102,6 +108,9 @@ examples:
   python -m engine rehearse case.json --fault "wet lagging" --seed 7 --log practice.csv
   python -m engine runsheet case.json --out run-sheet.html --paper A4
   python -m engine record case.json --out record.zip run1.csv run2.csv
+
+A record stands for its case, and for the logs in it, so that it can be retraced:
+  python -m engine record record.html --out again.html
 
 A result says that a number could be measured. It is never permission to open a valve."""
 

@@ -11,6 +11,7 @@ from engine.job.case.fields_modes import ELECTRIC
 from engine.job.commands.console import ANSWERED, OPEN, Console
 from engine.job.paper import PAPERS, usual_paper
 from engine.job.record import reasons_against, record_html, record_zip
+from engine.job.record.data import reopened
 from engine.job.result import Result, reduce
 from engine.job.result.intake import read
 from engine.job.result.runs import run_of_log, runs_typed
@@ -47,6 +48,7 @@ def record_command(case: Case, options: argparse.Namespace, console: Console) ->
     units, paper = _shown(options)
     logs = tuple(read(case, file, progress=lambda done, name=file.name: console.progress(f"reading {name}", done))
                  for file in options.logs)
+    logs = logs or kept_logs(options.case)
     result = reduced(case, logs)
     if faults := reasons_against(case, result):
         for fault in faults:
@@ -60,6 +62,16 @@ def record_command(case: Case, options: argparse.Namespace, console: Console) ->
     else:
         console.write(options.out, record_html(case, result, units, paper, made=made, logs=logs))
     return ANSWERED
+
+
+def is_record(path: Path) -> bool:
+    """Whether a file is named like a record."""
+    return path.suffix.lower() in (".html", ".htm")
+
+
+def kept_logs(path: Path) -> tuple[Log, ...]:
+    """The logs in a record; none where the case comes from its own file. InputError where they cannot be used."""
+    return reopened(path.read_bytes()).logs if is_record(path) else ()
 
 
 def reduced(case: Case, logs: tuple[Log, ...] = ()) -> Result | None:

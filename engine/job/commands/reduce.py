@@ -12,6 +12,7 @@ from engine.job.case import Case
 from engine.job.case.fields import FIELDS
 from engine.job.case.rows import Entry
 from engine.job.commands.console import ANSWERED, OPEN, Console
+from engine.job.commands.documents import kept_logs
 from engine.job.result import Result, reduce
 from engine.job.result.data import as_json, run_table, write_rows
 from engine.job.result.intake import read
@@ -57,7 +58,7 @@ def reduce_command(case: Case, options: argparse.Namespace, console: Console) ->
     files = _files(options.logs)
     logs = [read(case, file, lambda mapping: _answered(mapping, options),
                  lambda done, name=file.name: console.progress(f"reading {name}", done)) for file in files]
-    logs = _apart(logs, files)
+    logs = _apart(logs, files) or list(kept_logs(options.case))
     runs = [run_of_log(log) for log in logs] or list(runs_typed(case))
     case = _with_window(case, runs, options)
     result = reduce(case, runs, progress=lambda done: console.progress("reducing", done))

@@ -6,7 +6,6 @@ from collections.abc import Iterator, Mapping, Sequence
 
 import numpy as np
 
-from engine.job.assessment.answer import percent_points
 from engine.job.case import Case
 from engine.job.case.fields import FIELDS
 from engine.job.paper import Table, bullets, escaped_line, paragraph
@@ -69,7 +68,7 @@ def heated_windows(found: HeatedResult) -> str:
         x, drift, name = run.assessment.x, run.drift, upper_first(run.run.name)
         rows.append({"Run": name, "Quality of the means": "" if x is None else f"{x:.5f}",
                      "Sets": str(int(run.used.sum())), "Scatter of the sets": points(run.s),
-                     "Drift over the run": "" if drift is None else percent_points(drift.slope * drift.duration)})
+                     "Drift over the run": "" if drift is None else f"{100 * drift.slope * drift.duration:+z.3f} %pt"})
         lines += [f"{name}: {line}." for line in run.cautions]
     if found.repeatability is not None:
         lines.append("The runs differ by more than their own scatter explains; their spread stands in the budget."

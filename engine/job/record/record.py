@@ -38,8 +38,9 @@ from engine.steam.units import UnitSystem
 FORMULATION = "IAPWS-IF97 (R7-97, 2012), regions 1, 2 and 4"
 
 _STYLE = """
-table.facts td:first-child, table.blanks td:first-child { width: 46mm; font-weight: 600; }
+table.facts td:first-child, table.blanks td:first-child, table.blanks th:first-child { width: 46mm; font-weight: 600; }
 table.facts, table.blanks, table.entries { overflow-wrap: anywhere; }
+table.blanks { table-layout: fixed; }
 table.blanks td { height: 9mm; }
 table.entries { table-layout: fixed; }
 table.entries td:nth-child(odd) { width: 31%; color: #333; }

@@ -12,7 +12,7 @@ from engine.job.assessment.answer import Answer, percent_points
 from engine.job.assessment.tables import state_rows
 from engine.job.case import Case, describe
 from engine.job.case.fields import FIELDS
-from engine.job.case.fields_modes import NOT_STATED
+from engine.job.case.fields_modes import ELECTRIC, NOT_STATED, OF_HEATER, OF_SEPARATOR, SEPARATING
 from engine.job.case.rows import QUANTITY, TABLE, Row
 from engine.job.paper import Table, bullets, paragraph
 from engine.job.record.figures import diagrams_svg
@@ -46,7 +46,7 @@ from engine.job.uncertainty.instruments import GROUPS
 from engine.measurement import Budget, Verdict
 from engine.measurement.logbook import Log
 from engine.steam.quantities import QUANTITIES
-from engine.steam.units import UnitSystem, from_si
+from engine.steam.units import UNITS, UnitSystem, from_si
 
 READING = "reading of the case"  # the name of a run that is the single reading in the case
 MOST_PRINTED = 240  # rows of readings that a reader goes through on paper
@@ -132,6 +132,11 @@ def _verdict(name: str, v: Verdict) -> dict[str, str]:
 
 # ---- rig and instruments
 
+# what a heater does without, beside all of orifice, exhaust pipe and nozzle
+_OF_THROTTLE = ("p_exhaust", "T_exhaust", "line_velocity", "line_bore", "exhaust_bore", "recovery",
+                "recovery_tolerance", "heat_loss_method", "conductance", "heat_loss", "heat_loss_tolerance", "T_normal",
+                "second_flow", "T_second", "p_second", "steady_rate", "steady_scatter", "steady_p_exhaust")
+
 _GROUPS = (("Line, exhaust, site", ("reading", "velocities", "modes")),
            ("Rig", ("orifice", "exhaust", "nozzle", "heat", "thermometer", "warm-up")),
            ("Corrections, limits, what counts as settled", ("corrections", "limits", "steadiness")),
@@ -152,7 +157,12 @@ def entries(f: Facts) -> str:
 
 
 def _idle(case: Case, name: str) -> bool:
-    """Whether an entry belongs to an instrument that is not stated at all."""
+    """Whether an entry belongs to another method, or to an instrument that is not stated at all."""
+    mode = case["mode"]
+    if (mode != ELECTRIC and name in OF_HEATER) or (mode != SEPARATING and name in OF_SEPARATOR):
+        return True
+    if mode == ELECTRIC and (name in _OF_THROTTLE or FIELDS[name].group in ("orifice", "exhaust", "nozzle")):
+        return True
     return any(name.startswith(f"{stem}_") and name != f"{stem}_kind" and not name.endswith("_correction")
                and case[f"{stem}_kind"] == NOT_STATED for stem in GROUPS)
 
@@ -218,7 +228,10 @@ def _title(run: RunResult) -> str:
 
 
 def _unit(run: RunResult, name: str, f: Facts) -> tuple[str, str]:
-    """The unit in which a channel was written down where it was typed, else the reader's; and its kind."""
+    """The unit in which a channel was written down, by a logger or a hand, else the reader's; and its kind."""
+    logged = next((log.mapping.used.get(name) for log in f.logs if log.name == run.run.name), None)
+    if logged is not None and logged.unit in UNITS[QUANTITIES[name].kind]:
+        return logged.unit, QUANTITIES[name].kind
     if name not in FIELDS:  # a channel that only logs have
         return f.units.unit(QUANTITIES[name].kind), QUANTITIES[name].kind
     typed = {row[name].unit for run_name, rows in _typed_names(f.case) for row in rows

@@ -26,7 +26,8 @@ table.steps th:nth-child(4) { width: 19mm; }
 table.readings td { height: 6.2mm; padding-top: 0; padding-bottom: 0; vertical-align: middle; }
 table.readings td:last-child { width: 36mm; overflow-wrap: anywhere; }
 table.weighed td { height: 8mm; }
-table.blanks { overflow-wrap: anywhere; }
+table.blanks { overflow-wrap: anywhere; table-layout: fixed; }
+table.blanks th:first-child { width: 46mm; }
 table.blanks td:first-child { width: 46mm; font-weight: 600; }
 table.blanks td { height: 7mm; }
 """
