@@ -410,7 +410,7 @@ def test_no_word_turns_a_figure_round_or_runs_off_the_paper():
     html = record_html(case, reduce(case, runs_typed(case)), SI, "A4", made=MADE)
     printed = html[:html.index("<script")]
     assert turn not in printed and turn in from_record(html)["title"]
-    body = re.sub(r"<(style|title|h1|svg).*?</\1>|<meta[^>]*>", "", printed, flags=re.DOTALL)  # the heading breaks itself
+    body = re.sub(r"<(style|title|h1|svg).*?</\1>|<meta[^>]*>", "", printed, flags=re.DOTALL)
     assert not re.search(r"[^\s<>]{60}", body)
 
 

@@ -23,6 +23,8 @@ table.steps th:first-child { width: 9mm; }
 table.steps td:first-child { font-size: 14pt; line-height: 1; text-align: center; }
 table.steps th:nth-child(3) { width: 27mm; }
 table.steps th:nth-child(4) { width: 19mm; }
+table.gauges td.n { white-space: normal; }
+table.gauges td:first-child, table.gauges td.n { width: 22mm; }
 table.readings td { height: 6.2mm; padding-top: 0; padding-bottom: 0; vertical-align: middle; }
 table.readings td:last-child { width: 36mm; overflow-wrap: anywhere; }
 table.weighed td { height: 8mm; }
@@ -93,7 +95,7 @@ def gauge_table(sheet: RunSheet, units: UnitSystem) -> Table:
     """What every gauge must show."""
     rows = [(g.name, *(said.text(units) for said in (g.before, g.settled, g.low, g.high, g.note)))
             for g in sheet.gauges]
-    return Table(("Gauge", "Before steam", "Settled", "From", "To", ""), rows, frozenset((1, 2, 3, 4)))
+    return Table(("Gauge", "Before steam", "Settled", "From", "To", ""), rows, frozenset((1, 2, 3, 4)), "gauges")
 
 
 def mark_table(sheet: RunSheet, units: UnitSystem) -> Table:
