@@ -327,12 +327,12 @@ def _looks(r: Rehearsal) -> None:
 
 
 def _readings(r: Rehearsal) -> None:
-    every = r.rig.point.si["read_every"]
+    sets, every = practice.stretch(r)
     st.markdown("**Readings**")
     with st.container(key="rehearsal-readings", horizontal=True):
         st.button("Take a set now", key="take one", type="primary", on_click=_do, args=(practice.take_reading,))
-        st.button(f"Take 10 sets, one every {every / 60:g} min", key="take ten", on_click=_do,
-                  args=(practice.take_readings, 10, every), disabled=r.now + 10 * every > LONGEST)
+        st.button(f"Take {sets} sets, one every {every / 60:g} min", key="take many", on_click=_do,
+                  args=(practice.take_readings, sets, every), disabled=r.now + sets * every > LONGEST)
     if r.readings:
         st.table(rehearsal_end.reading_rows(r, session.units())[-SETS_SHOWN:])
 

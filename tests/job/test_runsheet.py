@@ -306,6 +306,13 @@ def test_a_plan_that_cannot_be_read_says_so_first():
     assert headline(sheet, SI).startswith("Nothing of the expected")
 
 
+def test_runs_too_short_to_settle_are_told():
+    assert not any("too short" in line for line in notices(run_sheet(DEMO), SI))
+    short = run_sheet(DEMO.with_(duration=Entry(20.0, "min")))
+    assert short.plan.sets == 10 and any("Runs of 10 sets are too short" in line and "10.0 min" in line
+                                         for line in notices(short, SI))
+
+
 def test_what_no_result_can_do_without_is_named():
     said = " ".join(notices(run_sheet(DEMO.with_(heat_loss_method=UNDECIDED, sampling=None)), SI))
     assert "how the heat loss is accounted for" in said and "sampling representativeness" in said

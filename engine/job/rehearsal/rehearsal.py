@@ -9,6 +9,7 @@ from __future__ import annotations
 from dataclasses import dataclass, replace
 from enum import StrEnum
 from functools import lru_cache
+from math import ceil
 
 from engine.job.rehearsal.faults import rig_of
 from engine.job.rehearsal.looks import DEED_SIGHTS, LOOKING, TAKES, Look, seen
@@ -158,6 +159,17 @@ def take_readings(r: Rehearsal, number: int, every: float) -> Rehearsal:
     for _ in range(number):
         r = take_reading(advance(r, every))
     return r
+
+
+def stretch(r: Rehearsal) -> tuple[int, float]:
+    """How many sets at the interval of the case make a stretch that can be called settled, and the interval [s].
+
+    >>> from engine.job.case.demo import DEMO
+    >>> stretch(begin(Scenario(DEMO)))  # the first and the last of them are ten minutes apart
+    (11, 60.0)
+    """
+    si = r.rig.point.si
+    return max(10, ceil(si["steady_window"] / si["read_every"] - 1e-9) + 1), si["read_every"]
 
 
 def state(r: Rehearsal, statement: Statement) -> Rehearsal:

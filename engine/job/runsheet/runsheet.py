@@ -141,6 +141,11 @@ def notices(sheet: RunSheet, units: UnitSystem) -> tuple[str, ...]:
                      f"± {100 * found.budget.U:.2f} %pt with the sampling.")
     if open_points := [*(found.missing if found is not None else ()), *_undecided(plan)]:
         lines.append("Not stated yet, and no result without it: " + ", ".join(open_points) + ".")
+    si = plan.a.si
+    if not plan.electric and (plan.sets - 1) * si["read_every"] < si["steady_window"]:
+        lines.append(f"Runs of {plan.sets} sets are too short: from the first to the last of them less than "
+                     f"{units.text(si['steady_window'], 'time')} pass, so none can be called settled. Plan fewer runs, "
+                     "or a longer test.")
     if plan.rig and not plan.electric:
         lines += plan.rig.value.notes
     return tuple(lines)

@@ -43,6 +43,9 @@ _CSS = """
 .st-key-parts button, .st-key-onward button {min-height: 3rem;}
 [class*="st-key-step-"] {border-bottom: 1px solid var(--st-border-color-light, rgba(128,128,128,.3));
   padding-bottom: .7rem;}
+@media (max-width: 640px) {  /* one below the other: read first, then tick */
+  .st-key-steps [data-testid="stHorizontalBlock"] {flex-wrap: wrap-reverse;}
+}
 </style>
 """
 SHEET, REHEARSAL = "Run sheet", "Rehearsal"
