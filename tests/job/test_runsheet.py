@@ -3,10 +3,17 @@
 import re
 from dataclasses import replace
 
+import numpy as np
 import pytest
 from documents import HOSTILE, harmless
 
-from engine.calorimeter import WEATHER_HALF_WIDTH, exhaust_temperature
+from engine.calorimeter import (
+    WEATHER_HALF_WIDTH,
+    body_heat_capacity,
+    exhaust_temperature,
+    time_to_within,
+    warm_up,
+)
 from engine.job.assessment import assess
 from engine.job.case import Case
 from engine.job.case.casefile import from_json, from_link, to_json, to_link
@@ -241,6 +248,20 @@ def test_the_keys_of_the_steps_do_not_change(sheet):
         "settle.rate settle.line settle.pressure settle.superheat settle.dry read.sets read.remarks read.run1 "
         "read.flow1 read.between1 read.run2 read.flow2 normal.read close.shut close.dead close.orifice close.after "
         "close.saved close.site")
+
+
+def test_behind_a_heater_the_warm_up_is_that_of_its_body():
+    bare = run_sheet(HEATED)
+    assert "mass of the body" in bare.step("warm.wait").missing
+    case = HEATED.with_(body_mass=Entry(3.0, "kg"), body_length=Entry(400.0, "mm"), T_ambient=Entry(20.0, "°C"),
+                        body_inner_diameter=Entry(26.6, "mm"))
+    sheet = run_sheet(case)
+    a, si = sheet.plan.a, sheet.plan.a.si
+    run = warm_up(body_heat_capacity(3.0), np.pi * 0.0266 * 0.4, si["sample_flow"], a.heating.p, a.T_exhaust, 293.15,
+                  293.15, film=100.0)
+    said = sheet.step("warm.wait").said.text(SI)
+    assert said.startswith(f"Wait {time_to_within(run, si['warmup_error']) / 60:.0f} min.")
+    assert f"time constant of {run.time_constant / 60:.1f} min" in said and not sheet.step("warm.wait").missing
 
 
 def test_a_heater_is_never_on_without_flow():

@@ -238,8 +238,8 @@ def _computed(facts: Facts, rows: bytes | None) -> list[str]:
              f"Energy balance: {_BALANCES[facts.case['mode']]}; quality x = (h_line − h_f)/(h_g − h_f) at the line "
              "pressure.",
              *(["Uncertainty by JCGM 100 (GUM), decision by JCGM 106."] if facts.sure.budget is not None else []),
-             "This page holds the case file. To have the same digits again, open the page itself in the dashboard, under "
-             "Case, or give it to the command line: python -m engine record THIS.html --out AGAIN.html"]
+             "This page holds the case file. To have the same digits again, open the page itself in the dashboard, "
+             "under Case, or give it to the command line: python -m engine record THIS.html --out AGAIN.html"]
     if facts.logs:
         lines.append("The logs as read are in this page too." if fits(facts.logs) else
                      "The logs are too long for this page: keep them with it, and bring them again to recompute.")
