@@ -31,6 +31,7 @@ from engine.screen.style import escaped, escaped_lines, legend
 from engine.steam.units import to_si
 
 ALL, WINDOW = "All of the run", "The window used"
+AT_ONCE = 5  # rows of a table of readings that lie apart
 LONGEST, BY_HAND = "The longest settled window", "By hand"
 LEGEND = (("green", "solid", "settled stretches, shaded"), ("blue", "solid", "frame: the window used"),
           ("text", "dotted", "saturation at the exhaust"), ("vermilion", "solid", "quality of every row"),
@@ -123,8 +124,11 @@ def _apart(run: RunResult) -> None:
     units, name = session.units(), run.run.name
     shown, count = flagged(run, units)
     if rows := outlier_rows(run, units):
-        with st.container(height=260, border=False) if len(rows) > 5 else st.container():
-            st.table([{k: escaped(v) for k, v in row.items()} for row in rows])
+        rows = [{k: escaped(v) for k, v in row.items()} for row in rows]
+        st.table(rows[:AT_ONCE])
+        if len(rows) > AT_ONCE:
+            with st.expander(f"{len(rows) - AT_ONCE} more that lie apart"):
+                st.table(rows[AT_ONCE:])
     if count > len(shown):
         st.caption(f"{count - len(shown)} more are flagged and not listed.")
     if not count:

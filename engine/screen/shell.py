@@ -16,7 +16,7 @@ from engine.job.assessment.methods_said import in_short
 from engine.job.case import Case
 from engine.job.case.casefile import MAX_RECORD, to_json
 from engine.job.case.examples import EXAMPLES
-from engine.screen import address, entries, numbers, session, style
+from engine.screen import address, entries, everywhere, session, style
 from engine.steam.errors import InputError
 from engine.steam.units import SYSTEMS
 
@@ -47,7 +47,7 @@ def run(pages: Sequence) -> None:
         _notice()
     page.run()
     address.keep(page.url_path, case=session.link())
-    numbers.listen()
+    everywhere.listen()
     session.listen()
     _settle(len(sys.modules))
 

@@ -16,6 +16,7 @@ _CSS = """
 .st-key-answer {min-height: 8.5rem;}
 .st-key-answer h3 {padding: 0 0 .3rem 0;}
 [data-testid="stMainBlockContainer"] {padding-top: 4.5rem; padding-bottom: 3rem;}
+[data-testid="stCaptionContainer"] {color: inherit; opacity: .8;} /* Streamlit's grey is too faint on white */
 .legends {font-size: .9rem; line-height: 1.7;}
 .legend {white-space: nowrap; margin-right: 1.6em;}
 .legend i {display: inline-block; width: 2.2em; vertical-align: middle; margin-right: .5em;}
@@ -25,6 +26,7 @@ _CSS = """
 }
 @media (min-width: 1800px) {
   html {font-size: 19px;}
+  [class*="answer"] h3 {font-size: 2.15rem;} /* letters of 25 mm on a wall 1.9 m wide, for five metres */
 }
 </style>
 """

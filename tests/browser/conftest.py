@@ -37,11 +37,11 @@ def pytest_collection_modifyitems(items: list[pytest.Item]) -> None:
 
 
 @contextmanager
-def served(app: Path, log: Path, **environment: str) -> Iterator[str]:
-    """The address of the app, run by a server of its own with the project's settings."""
+def served(app: Path, log: Path, *, port: int = 0, **environment: str) -> Iterator[str]:
+    """The address of the app, run by a server of its own with the project's settings, at a port if one is given."""
     with socket.socket() as probe:
         probe.bind(("127.0.0.1", 0))
-        port = probe.getsockname()[1]
+        port = port or probe.getsockname()[1]
     base = environment.pop("base", "")
     address = f"http://127.0.0.1:{port}/{base}"
     command = [sys.executable, "-m", "streamlit", "run", str(app), f"--server.port={port}", "--server.headless=true"]
@@ -172,13 +172,14 @@ PAGES = {  # by name in the navigation: words that only this page has
 
 
 def turn_to(page, name: str) -> None:
-    """Another page, by the navigation as a reader goes there; a phone has it behind the menu."""
-    link = page.get_by_role("link", name=name, exact=True)
+    """Another page, by the navigation as a reader goes there; a phone has it behind the menu, which then goes away."""
+    page.wait_for_function("document.documentElement.dataset.everywhere")
     menu = page.get_by_test_id("stExpandSidebarButton")
-    if not link.is_visible() and menu.count():
+    if menu.count():
         menu.click()
-    link.click()
+    page.get_by_role("link", name=name, exact=True).click()
     page.get_by_text(PAGES[name]).first.wait_for()
+    page.wait_for_function("() => document.querySelector('#stSidebar')?.dataset.collapsed !== 'false'")
     settle(page)
 
 

@@ -11,7 +11,7 @@ def field(app_address, visit):
     """The exact entry of the line pressure, which shows 9; and the page it is on."""
     page = visit(app_address)
     page.wait_for_selector(".diagrams[data-drawn]")
-    page.wait_for_function("document.documentElement.dataset.numbers")
+    page.wait_for_function("document.documentElement.dataset.everywhere")
     return page, page.get_by_role("spinbutton", name=FIELD)
 
 

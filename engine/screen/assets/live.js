@@ -218,7 +218,8 @@ class Plot {
     this.board = board;
     this.key = key;
     this.choice = { view: "process" };
-    this.section = document.createElement("section");
+    this.section = document.createElement("div");
+    this.section.className = "diagram";
     this.section.setAttribute("role", "figure");
     this.section.innerHTML = `
       <header><h4></h4>

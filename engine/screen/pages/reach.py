@@ -185,7 +185,7 @@ def _table(plan: ReachAssessment, chart: InstrumentChart) -> None:
     if not chart.T.size:
         st.caption("Not even dry steam can be read here, so there is no temperature to read a quality from.")
         return
-    with st.container(height=400, border=False):
+    with st.expander("The same as a table"):
         st.table(chart_rows(chart))
 
 

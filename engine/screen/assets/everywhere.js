@@ -1,18 +1,32 @@
-// Number fields that understand a decimal comma.
+// What every page needs and Streamlit's own elements lack. Everything listens at the window: it is set up once.
 //
-// A browser's own number field drops a comma as it is typed: 9,5 becomes 95 without a word. Here a comma becomes
-// the point it stands for, in sight of whoever types. What could mean two things (1,234), has two decimal signs
-// (1.234,5) or is no number is not taken: a message says why, and a field that is left shows its last value again.
+// Numbers. A browser's own number field drops a comma as it is typed: 9,5 becomes 95 without a word. Here a comma
+// becomes the point it stands for, in sight of whoever types. What could mean two things (1,234), has two decimal
+// signs (1.234,5) or is no number is not taken: a message says why, and a field that is left shows its last value
+// again.
+//
+// Scrolling. A wide table or a long word in a box scrolls sideways; without a mouse it must be reached to be read.
+//
+// The menu of a phone. It covers the page that was chosen in it, and so goes out of the way.
 
 const AMBIGUOUS = /^[+-]?[1-9][0-9]{0,2}\.[0-9]{3}$/; // as shown, the comma having become a point
 const COMMA = "comma", TWO = "two signs";
 const marks = new WeakMap(); // of a field in which a sign was typed that calls for a second look
 const taken = new WeakMap(); // the value of a field before it was typed into
 
-export function numbers({ parentElement }) {
+export function everywhere({ parentElement }) {
   parentElement.closest("[data-testid=stElementContainer]").style.display = "none"; // it shows nothing
-  if (document.documentElement.dataset.numbers) return; // one set of listeners for all pages
-  document.documentElement.dataset.numbers = "heard";
+  const { dataset } = document.documentElement;
+  if (dataset.everywhere) return;
+  dataset.everywhere = "set up";
+  numbers();
+  scrolling();
+  menu();
+}
+
+// ---- numbers
+
+function numbers() {
   for (const kind of ["pointerdown", "keydown"]) window.addEventListener(kind, () => say(null), true);
   hear("focusin", (field) => taken.set(field, field.value));
   hear("beforeinput", sign);
@@ -93,4 +107,35 @@ function say(field, words = "") {
     boxSizing: "border-box", border: "1px solid", borderLeftWidth: "4px", fontSize: "0.95rem" });
   box.textContent = words;
   if (!box.matches(":popover-open")) box.showPopover();
+}
+
+// ---- scrolling
+
+const BOXES = "[data-testid=stTable] div, [data-testid=stTable], [data-testid=stCode] pre";
+
+function scrolling() {
+  let waiting = null;
+  const soon = () => {
+    clearTimeout(waiting);
+    waiting = setTimeout(() => document.querySelectorAll(BOXES).forEach(reachable), 300); // things at rest again
+  };
+  new MutationObserver(soon).observe(document.body, { childList: true, subtree: true });
+  window.addEventListener("resize", soon);
+  soon();
+}
+
+function reachable(box) {
+  const scrolls = box.scrollWidth > box.clientWidth + 1 || box.scrollHeight > box.clientHeight + 1;
+  const cut = getComputedStyle(box).overflow !== "visible";
+  if (scrolls && cut) box.tabIndex = 0;
+  else if (box.hasAttribute("tabindex")) box.removeAttribute("tabindex");
+}
+
+// ---- the menu of a phone
+
+function menu() {
+  window.addEventListener("click", ({ target }) => {
+    if (innerWidth >= 768 || !target.closest?.("[data-testid=stSidebarNavLink]")) return;
+    setTimeout(() => document.querySelector("[data-testid=stSidebarCollapseButton] button")?.click());
+  });
 }
