@@ -13,7 +13,7 @@ from engine.screen.charts.diagram import COLOURS
 _CSS = """
 <style>
 .st-key-casebar {border-bottom: 1px solid var(--st-border-color-light, rgba(128,128,128,.3)); padding-bottom: .4rem;}
-.st-key-answer {min-height: 8.5rem;}
+.st-key-answer {min-height: 12.9rem;}
 .st-key-answer h3 {padding: 0 0 .3rem 0;}
 [data-testid="stMainBlockContainer"] {padding-top: 4.5rem; padding-bottom: 3rem;}
 [data-testid="stCaptionContainer"] {color: inherit; opacity: .8;} /* Streamlit's grey is too faint on white */
