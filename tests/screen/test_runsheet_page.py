@@ -15,6 +15,7 @@ from engine.job.case.rows import Entry
 from engine.job.rehearsal import begin
 from engine.job.rehearsal.link import to_link as to_rehearsal
 from engine.job.rehearsal.scenario import Scenario
+from engine.job.result.heated import reduce_heated
 from engine.job.runsheet import headline, run_sheet, tick, ticks_of
 from engine.job.runsheet.readings import with_reading
 from engine.screen.style import escaped
@@ -205,6 +206,10 @@ def test_a_heater_has_sets_of_its_own(at):
     app = write(at(HEATED), **{"T_heater °C": 178.8, "power W": 861.0}, table="heater_readings")
     (row,) = case_of(app)["heater_readings"]
     assert row["T_heater"] == Entry(178.8, "°C") and row["power"] == Entry(861.0, "W") and row["run"] == "1"
+    found = reduce_heated(case_of(app))
+    assert f"By these sets: ● Quality in the line {found.assessment.x:.4f}" in words(app).replace("\\", "")
+    app = ran(app.button(key="take means").click())
+    assert case_of(app)["power"] == Entry(861.0, "W") and not keyed(app, "take means")
     app = ran(app.button(key="drop set").click())
     assert case_of(app)["heater_readings"] == ()
 

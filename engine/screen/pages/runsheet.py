@@ -10,6 +10,7 @@ from engine.job.case.fields_modes import ELECTRIC
 from engine.job.case.fields_runsheet import GAS_NONE, GAS_NOTED
 from engine.job.case.rows import Entry
 from engine.job.paper import PAPERS, Table, usual_paper
+from engine.job.result.heated import reduce_heated
 from engine.job.runsheet import RunSheet, headline, notices, tick, untick
 from engine.job.runsheet.print import (
     deviation_table,
@@ -27,6 +28,7 @@ from engine.job.runsheet.readings import (
     with_reading,
 )
 from engine.job.runsheet.steps import Section, Step
+from engine.job.uncertainty.answer_with import answer_with
 from engine.screen import clock, entries, rehearsal_view, session
 from engine.screen.sheets import sheet_of
 from engine.screen.style import escaped, escaped_lines
@@ -284,6 +286,24 @@ def _readings(sheet: RunSheet) -> None:
         _table(reading_table(rows, sheet.plan, session.units()))
     if typed.get(run):
         st.button(f"Take out the last set of run {run}", key="drop set", on_click=_drop, args=(run,))
+    if sheet.plan.electric:
+        _heated(sheet)
+
+
+def _heated(sheet: RunSheet) -> None:
+    """What the sets with a heater say so far, and their means for the reading of the case: no other page has them."""
+    try:
+        found = reduce_heated(sheet.case)
+    except InputError as error:
+        st.error(escaped_lines(str(error)))
+        return
+    if found is None:
+        return
+    said = answer_with(found.forecast, session.units())
+    st.markdown(f"By these sets: {said.shape} {escaped(said.headline)}")
+    if found.assessment.case != sheet.case:
+        st.button("Take the means for the reading of the case", key="take means", on_click=session.change,
+                  args=(found.assessment.case,))
 
 
 def _take(sheet: RunSheet) -> str:
