@@ -324,7 +324,7 @@ def _take(sheet: RunSheet) -> str:
         for place, column in zip(grid[1:], columns, strict=False):
             place.number_input(column.heading, value=None, step=0.1, format="%.7g",
                                key=f"{key} {column.name} {column.unit}")
-        grid[-1].text_input("Remark", max_chars=200, key=f"{key} remark")
+        grid[len(columns) + 1].text_input("Remark", max_chars=200, key=f"{key} remark")
         st.button("Write this set down", key="write set", type="primary", width="stretch", on_click=_write,
                   args=(run, key, columns))
     _refused("readings")
