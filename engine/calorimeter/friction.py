@@ -14,9 +14,10 @@ from fluids.friction import friction_factor as _one_friction_factor
 
 from engine.calorimeter.rig_inputs import admit
 from engine.steam import viscosity
-from engine.steam.arrays import give_back
+from engine.steam.arrays import give_back, shortened
 from engine.steam.errors import Fault, InputError
 
+MOST_FITTINGS = 1000  # of one kind
 STEEL_ROUGHNESS = 46e-6  # m, new commercial steel pipe (Moody, Trans. ASME 66 (1944) 671, 0.00015 ft)
 
 # Our name -> entry of the three-constant method (Darby, Chem. Eng. 106(7), July 1999, 101) in ``fluids``.
@@ -74,10 +75,14 @@ def fittings_loss(fittings: Mapping[str, int], reynolds, bore):
     >>> fittings_loss({"elbow 90°, threaded": 2}, 3e4, 0.0266)
     1.44
     """
-    faults = [Fault("fitting", repr(name), "", "one of " + ", ".join(FITTINGS), name="fittings")
+    if not isinstance(fittings, Mapping):
+        raise InputError(Fault("fittings", shortened(fittings), "", "a number for each fitting, by name",
+                               name="fittings"))
+    faults = [Fault("fitting", shortened(name), "", "one of " + ", ".join(FITTINGS), name="fittings")
               for name in fittings if name not in FITTINGS]
-    faults += [Fault(f"number of '{name}'", count, "", "0 or more", name="fittings")
-               for name, count in fittings.items() if not count >= 0]
+    faults += [Fault(f"number of '{name}'", shortened(count), "", f"0 to {MOST_FITTINGS}", name="fittings")
+               for name, count in fittings.items()
+               if not (isinstance(count, int | float) and 0 <= count <= MOST_FITTINGS)]
     if faults:
         raise InputError(*faults)
     (Re, D), scalar = admit(reynolds=reynolds, bore=bore)

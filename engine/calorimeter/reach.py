@@ -274,7 +274,11 @@ def reach_map(p_line, p_exhaust, superheat=5.0, *, heat_loss=0.0, line_velocity=
     needed, = in_blocks(lambda *values: (_needed(dict(zip(rows, values, strict=True))),), 1, *rows.values())
     _, h_f, h_g = in_blocks(saturation_enthalpies, 3, line["p_line"])
     x_least = (needed - h_f) / (h_g - h_f)
-    flows = np.broadcast_to(p_exhaust[:, None] < line["p_line"], x_least.shape)
+    shape = (p_exhaust.size, line["p_line"].size)
+    if x_least.shape != shape:
+        raise InputError(Fault("array shapes", f"{x_least.shape} of all arguments together", "",
+                               f"{shape} of the two axes, or what broadcasts to it"))
+    flows = p_exhaust[:, None] < line["p_line"]
     status = np.select([~flows, x_least > 1.0], [Status.OUT_OF_RANGE, Status.NOT_SUPERHEATED],
                        Status.OK).astype(np.int8)
     wetness = np.where(status == Status.OK, np.clip(1.0 - x_least, 0.0, 1.0), 0.0)

@@ -13,11 +13,12 @@ from engine.steam.errors import Fault, InputError
 from engine.steam.quantities import QUANTITIES
 
 INF = float("inf")
+LEAST, MOST = 1e-15, 1e15  # SI: no size of a rig lies beyond, and what is computed from sizes within stays a number
 
 
 @dataclass(frozen=True)
 class Limits:
-    """An interval in engine units; infinite ends are always open, so what is admitted is finite."""
+    """An interval in engine units. An open end at 0 begins with ``LEAST``, infinite ends reach to ``MOST``."""
 
     low: float = -INF
     high: float = INF
@@ -27,9 +28,13 @@ class Limits:
 
     def hold(self, values: np.ndarray) -> np.ndarray:
         """True where inside; NaN never is."""
-        above = values > self.low if self.low_open or self.low == -INF else values >= self.low
-        below = values < self.high if self.high_open or self.high == INF else values <= self.high
-        return above & below
+        above = values > self.low if self.low_open else values >= self.low
+        below = values < self.high if self.high_open else values <= self.high
+        return above & below & (np.abs(values) <= MOST) & ~self.tiny(values)
+
+    def tiny(self, values: np.ndarray) -> np.ndarray:
+        """True for what is above 0 by less than a size can be, where 0 itself is refused."""
+        return (values > 0) & (values < LEAST) if self.low_open and self.low == 0 else np.zeros(np.shape(values), bool)
 
     def text(self, unit: str) -> str:
         """Worded to follow "needs"."""
@@ -111,7 +116,10 @@ def limits_of(name: str) -> Limits:
 def faults_of(name: str, values: np.ndarray) -> list[Fault]:
     """Faults for the elements of ``values`` outside the limits of quantity ``name``."""
     limits = limits_of(name)
-    return refuse_outside(name, values, limits.hold(values), limits.text(QUANTITIES[name].unit), hint=limits.hint)
+    text = limits.text(QUANTITIES[name].unit)
+    if (limits.tiny(values) | (np.isfinite(values) & (np.abs(values) > MOST))).any():
+        text += f", of a size from {LEAST:g} to {MOST:g}"
+    return refuse_outside(name, values, limits.hold(values), text, hint=limits.hint)
 
 
 def admit(**named) -> tuple[list[np.ndarray], bool]:

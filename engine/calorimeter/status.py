@@ -11,6 +11,9 @@ from enum import IntEnum
 
 import numpy as np
 
+from engine.steam.arrays import shortened
+from engine.steam.errors import Fault, InputError
+
 
 class Status(IntEnum):
     """One verdict on one reading; arrays of results carry it as int8 beside the numbers."""
@@ -44,7 +47,9 @@ def reasons(status) -> list[tuple[Status, str, int, np.ndarray]]:
     >>> [(kind.name, count) for kind, _, count, _ in reasons([0, 2, 2, 5])]
     [('OK', 1), ('NOT_SUPERHEATED', 2), ('MISSING', 1)]
     """
-    flat = np.asarray(status, dtype=np.int8).ravel()
+    flat = np.asarray(status).ravel()
+    if not np.isin(flat, list(Status)).all():
+        raise InputError(Fault("status", shortened(status), "", "statuses of readings, 0 to 5"))
     rows = []
     for kind in Status:
         places = np.flatnonzero(flat == kind)

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 
+from engine.calorimeter.rig_inputs import LEAST, MOST
 from engine.calorimeter.throttle import saturation_enthalpies
 from engine.steam import T_MAX, if97
 from engine.steam.arrays import at_the_door, give_back, in_blocks, refuse_outside
@@ -17,8 +18,11 @@ def _positive(*optional: str, **named):
     faults = []
     for name, values in zip(named, arrays, strict=True):
         zero = name in optional
-        inside = np.isfinite(values) & ((values >= 0) if zero else (values > 0))
-        faults += refuse_outside(name, values, inside, f"{'0 or more' if zero else 'more than 0'}, and finite",
+        inside = (values <= MOST) & ((values >= 0) if zero else (values >= LEAST))
+        limit = f"{'0 or more' if zero else 'more than 0'}, and finite"
+        if (np.isfinite(values) & (values > 0) & ~inside).any():
+            limit += f", of a size from {LEAST:g} to {MOST:g}"
+        faults += refuse_outside(name, values, inside, limit,
                                  why="it is the size of something that is there", hint="check the value and its unit")
     if faults:
         raise InputError(*faults)

@@ -114,7 +114,8 @@ def warm_up(heat_capacity, area, sample_flow, p_exhaust, T_exhaust, T_start, T_a
     condensate = C * (T_2 - T_0) / np.asarray(sat.h_g - sat.h_f)
     final = T_in - effectiveness * (T_in - steady)
     fields = (T_s, steady, final, t_2, 1 / rate, effectiveness, condensate, m, m_cp / m)
-    return WarmUp(*(give_back(f, scalar) for f in fields), stages)
+    return WarmUp(*(give_back(f, scalar) for f in fields),
+                  tuple(Stage(*(give_back(f, scalar) for f in stage)) for stage in stages))
 
 
 def body_temperature(run: WarmUp, time):

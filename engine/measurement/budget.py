@@ -11,12 +11,13 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
-from math import floor, inf, log10, sqrt
+from math import floor, inf, isfinite, log10, sqrt
 from typing import NamedTuple
 
 import numpy as np
 from scipy.special import stdtrit
 
+from engine.measurement.given import number, shown, size, whole
 from engine.measurement.inputs import Component, Input
 from engine.measurement.sources import Correlations, Model, evaluate, gather, linked
 from engine.steam.errors import Fault, InputError
@@ -24,6 +25,7 @@ from engine.steam.errors import Fault, InputError
 # The step of the differences: a hundredth of the uncertainty, so that the slope is the one at the
 # estimate, but never so small against the value that rounding shows.
 _STEP_OF_U, _STEP_OF_VALUE, _LEAST_STEP = 1e-2, 1e-5, 1e-5
+MOST_COVERAGE = 1 - 1e-12  # beyond it no interval is wide enough to be known
 _STENCIL = np.array([1.0, -1.0, 2.0, -2.0])
 _WEIGHTS = np.array([8.0, -8.0, -1.0, 1.0]) / 12.0
 
@@ -88,8 +90,8 @@ class Budget:
 
     def improved(self, group: str, factor: float = 0.5) -> Budget:
         """The same result with every cause of the group multiplied by ``factor``."""
-        if not 0 <= factor < inf:
-            raise InputError(Fault("factor", factor, "", "a finite number, zero or more"))
+        if not 0 <= number(factor) < inf:
+            raise InputError(Fault("factor", shown(factor), "", "a finite number, zero or more"))
         if group not in self.groups:
             raise InputError(Fault("group", group, "", "one of: " + ", ".join(self.groups)))
         return self._scaled((group,), factor)
@@ -165,7 +167,9 @@ def coverage_factor(coverage: float, dof: float = inf) -> float:
     2.23
     """
     _check_coverage(coverage)
-    return float(stdtrit(dof, (1 + coverage) / 2))
+    if not number(dof) >= 1e-3:
+        raise InputError(Fault("degrees of freedom", shown(dof), "", "a number from 0.001"))
+    return float(stdtrit(number(dof), (1 + coverage) / 2))
 
 
 def numerical_tolerance(u: float, digits: int = 2) -> float:
@@ -174,7 +178,8 @@ def numerical_tolerance(u: float, digits: int = 2) -> float:
     >>> numerical_tolerance(0.00291)
     5e-05
     """
-    return 0.5 * 10.0 ** -decimals_of(u, digits) if u > 0 else 0.0
+    decimals = decimals_of(u, digits)
+    return 0.5 * 10.0 ** -decimals if u > 0 else 0.0
 
 
 def decimals_of(u: float, digits: int = 2) -> int:
@@ -183,7 +188,10 @@ def decimals_of(u: float, digits: int = 2) -> int:
     >>> decimals_of(0.0029), decimals_of(31.7)
     (4, 0)
     """
-    return digits - 1 - floor(log10(float(f"{u:.{digits - 1}e}"))) if 0 < u < inf else 0
+    u = size("uncertainty", u)
+    if not (whole(digits) and 1 <= digits <= 15):
+        raise InputError(Fault("digits", shown(digits), "", "a whole number from 1 to 15"))
+    return digits - 1 - floor(log10(float(f"{u:.{digits - 1}e}"))) if u > 0 else 0
 
 
 def _differences(model: Model, inputs: Sequence[Input], u: np.ndarray) -> tuple[float, np.ndarray]:
@@ -211,11 +219,16 @@ def _differences(model: Model, inputs: Sequence[Input], u: np.ndarray) -> tuple[
 def _combine(value: float, rows: Sequence[BudgetRow], correlation: np.ndarray, coverage: float,
              sensitivity: dict[str, float]) -> Budget:
     part = np.array([row.contribution for row in rows], dtype=float)
+    largest = float(np.abs(part).max(initial=0.0))
+    if not isfinite(largest * sqrt(len(part))):
+        raise InputError(Fault("uncertainty of the result", largest, "", "a finite number",
+                               hint="check the uncertainties of the inputs, and their units"))
+    part = part / (largest or 1.0)  # so that no square runs out of the numbers
     variances = part * (correlation @ part)
     variance = max(float(variances.sum()), 0.0)
     shares = variances / variance if variance > 0 else np.zeros_like(variances)
     dof = _effective_dof(variances, np.array([row.dof for row in rows], dtype=float), linked(correlation))
-    u, k = sqrt(variance), coverage_factor(coverage, dof)
+    u, k = largest * sqrt(variance), coverage_factor(coverage, dof)
     rows = tuple(row._replace(share=float(s)) for row, s in zip(rows, shares, strict=True))
     correlation = correlation.copy()
     correlation.flags.writeable = False
@@ -232,7 +245,8 @@ def _effective_dof(variances: np.ndarray, dof: np.ndarray, leader: np.ndarray) -
 
 
 def _check_coverage(coverage: float) -> None:
-    if not 0 < coverage < 1:
-        raise InputError(Fault("coverage probability", coverage, "", "a number between 0 and 1, such as 0.95"))
+    if not 0 < number(coverage) <= MOST_COVERAGE:
+        raise InputError(Fault("coverage probability", shown(coverage), "",
+                               "a number between 0 and 1, such as 0.95; at most 1 - 1e-12"))
 
 

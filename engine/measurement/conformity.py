@@ -16,6 +16,7 @@ import numpy as np
 from scipy.special import stdtr, stdtrit
 
 from engine.measurement.budget import Budget
+from engine.measurement.given import finite, number, series, shown, size
 from engine.measurement.inputs import SAMPLING
 from engine.steam.arrays import give_back
 from engine.steam.errors import Fault, InputError
@@ -35,11 +36,14 @@ class Limits:
     upper: float = inf
 
     def __post_init__(self):
-        if not self.lower < self.upper or not (isfinite(self.lower) or isfinite(self.upper)):
-            raise InputError(Fault("limits", f"{self.lower} to {self.upper}", "", "at least one limit, the lower below "
-                                   "the upper", hint="leave the limit that does not exist out"))
+        lower, upper = number(self.lower), number(self.upper)
+        if not lower < upper or not (isfinite(lower) or isfinite(upper)):
+            raise InputError(Fault("limits", f"{shown(self.lower)} to {shown(self.upper)}", "",
+                                   "at least one limit, the lower below the upper",
+                                   hint="leave the limit that does not exist out"))
 
 
+_UNREAD = "what could not be read cannot be judged"
 RULES = ("simple", "guarded by risk", "guarded by U")
 
 
@@ -59,10 +63,11 @@ class Rule:
 
     def __post_init__(self):
         faults = []
-        if self.kind not in RULES:
-            faults.append(Fault("decision rule", self.kind, "", "one of: " + ", ".join(RULES)))
-        if not 0 < self.risk < 0.5:
-            faults.append(Fault("risk of a wrong decision", self.risk, "", "a number above 0 and below 0.5",
+        if not isinstance(self.kind, str) or self.kind not in RULES:
+            faults.append(Fault("decision rule", shown(self.kind), "", "one of: " + ", ".join(RULES)))
+        if not 1e-12 <= number(self.risk) < 0.5:
+            faults.append(Fault("risk of a wrong decision", shown(self.risk), "",
+                                "a number above 0 and below 0.5, 1e-12 at least",
                                 why="at one half the guard band is gone: that is the simple rule"))
         if faults:
             raise InputError(*faults)
@@ -116,17 +121,23 @@ def conformance_probability(value, u, limits: Limits, dof: float = inf):
     >>> round(conformance_probability(-5.47, 0.05, Limits(upper=-5.40)), 2)  # JCGM 106, 7.3.3
     0.92
     """
-    value, u = np.asarray(value, dtype=float), np.asarray(u, dtype=float)
     faults = []
-    if not np.isfinite(value).all():
-        faults.append(Fault("result", "not a finite number", "", "finite numbers",
-                            why="what could not be read cannot be judged"))
-    if not (np.isfinite(u) & (u >= 0)).all():
-        faults.append(Fault("standard uncertainty", float(np.min(u)), "", "finite numbers, zero or more"))
-    if not dof > 0:
-        faults.append(Fault("degrees of freedom", dof, "", "a number above 0"))
+    try:
+        value = finite("result", value, why=_UNREAD)
+    except InputError as error:
+        faults += error.faults
+    try:
+        u = series("standard uncertainty", u)
+        if not (np.isfinite(u) & (u >= 0)).all():
+            faults.append(Fault("standard uncertainty", float(np.min(u)), "", "finite numbers, zero or more"))
+    except InputError as error:
+        faults += error.faults
+    if not number(dof) > 0:
+        faults.append(Fault("degrees of freedom", shown(dof), "", "a number above 0"))
     if faults:
         raise InputError(*faults)
+    if not _go_together(value, u):
+        raise InputError(Fault("shapes", f"{value.shape} and {u.shape}", "", "shapes that broadcast together"))
     chance = _up_to(limits.upper, value, u, dof) - _below(limits.lower, value, u, dof)
     return give_back(np.maximum(chance, 0.0), chance.ndim == 0)
 
@@ -140,8 +151,10 @@ def decide(value: float, u: float, limits: Limits, rule: Rule, *, U: float | Non
     >>> verdict.outcome.value, round(verdict.probability, 2), round(verdict.accept_from, 4)
     ('undecided', 0.75, 0.9748)
     """
-    if rule.kind == "guarded by U" and U is None:
-        raise InputError(Fault("expanded uncertainty", U, "", "a number", why="the rule's guard band is U"))
+    value = float(finite("result", number(value), why=_UNREAD))
+    u = size("standard uncertainty", u)
+    if U is not None or rule.kind == "guarded by U":
+        U = _guard_band(U)
     probability = float(conformance_probability(value, u, limits, dof))
     guard = rule.guard(u, U or 0.0, dof)
     accept_from, accept_to = limits.lower + guard, limits.upper - guard
@@ -160,6 +173,21 @@ def decide_both(budget: Budget, limits: Limits, rule: Rule) -> Verdicts:
                       for b in (budget, budget.without(SAMPLING))))
 
 
+def _guard_band(U: float | None) -> float:
+    if not 0 <= number(U) < inf:
+        raise InputError(Fault("expanded uncertainty", shown(U), "", "a number, zero or more",
+                               why="the rule's guard band is U"))
+    return number(U)
+
+
+def _go_together(*arrays: np.ndarray) -> bool:
+    try:
+        np.broadcast_shapes(*(a.shape for a in arrays))
+    except ValueError:
+        return False
+    return True
+
+
 def _up_to(limit: float, value: np.ndarray, u: np.ndarray, dof: float) -> np.ndarray:
     """Probability of a true value at or below the limit."""
     return np.where(u > 0, stdtr(dof, _scaled(limit, value, u)), (value <= limit).astype(float))
@@ -171,4 +199,5 @@ def _below(limit: float, value: np.ndarray, u: np.ndarray, dof: float) -> np.nda
 
 
 def _scaled(limit: float, value: np.ndarray, u: np.ndarray) -> np.ndarray:
-    return (limit - value) / np.where(u > 0, u, 1.0)
+    with np.errstate(over="ignore"):  # infinitely far away is meant so
+        return (limit - value) / np.where(u > 0, u, 1.0)

@@ -10,6 +10,7 @@ from typing import NamedTuple
 
 import numpy as np
 
+from engine.measurement.given import series as numbers
 from engine.steam.errors import Fault, InputError
 
 _LONG = 50  # readings from which the whole correlation function can be trusted beside its first value
@@ -50,14 +51,15 @@ def effective_number(series) -> Independence:
     >>> bool(effective_number(y).n_eff < 10)
     True
     """
-    y = np.asarray(series, dtype=float).ravel()
+    y = numbers("series", series).ravel()
     y = y[np.isfinite(y)]
     n = len(y)
     if n < 3:
         raise InputError(Fault("number of readings", n, "", "3 or more",
                                why="a shorter series says nothing about its correlation", hint="take more readings"))
+    largest = np.abs(y).max()
     y = y - y.mean()
-    if np.abs(y).max() <= 1e-12 * np.abs(series).max():
+    if np.abs(y).max() <= 1e-12 * largest:
         return Independence(n, 1.0, 1.0, 1.0, 1.0)
     rho = _correlations(y)
     r1 = float(np.clip(rho[1] + (1 + 4 * rho[1]) / n, -1.0, 1.0))

@@ -9,8 +9,9 @@ pressures) is written in both with the same ``source``: it is then one error, no
 from __future__ import annotations
 
 from dataclasses import dataclass
-from math import inf, isfinite, sqrt
+from math import hypot, inf, isfinite, sqrt
 
+from engine.measurement.given import MOST, number, shown, size, size_fault
 from engine.steam.errors import Fault, InputError
 
 DISTRIBUTIONS = ("normal", "rectangular", "triangular", "t")
@@ -40,17 +41,16 @@ class Component:
     sign: int = 1
 
     def __post_init__(self):
-        faults = []
-        if not _is_number(self.u) or not 0 <= self.u < inf:
-            faults.append(Fault(f"standard uncertainty of '{self.name}'", self.u, "", "a finite number, zero or more"))
-        if not _is_number(self.dof) or not self.dof > 0:
-            faults.append(Fault(f"degrees of freedom of '{self.name}'", self.dof, "", "a number above 0",
+        unusable = size_fault(f"standard uncertainty of '{self.name}'", self.u)
+        faults = [unusable] if unusable else []
+        if not number(self.dof) > 0:
+            faults.append(Fault(f"degrees of freedom of '{self.name}'", shown(self.dof), "", "a number above 0",
                                 hint="a single reading has none: give its uncertainty from the instrument instead"))
-        if self.distribution not in DISTRIBUTIONS:
-            faults.append(Fault(f"distribution of '{self.name}'", self.distribution, "",
+        if not isinstance(self.distribution, str) or self.distribution not in DISTRIBUTIONS:
+            faults.append(Fault(f"distribution of '{self.name}'", shown(self.distribution), "",
                                 "one of: " + ", ".join(DISTRIBUTIONS)))
-        if self.sign not in (1, -1):
-            faults.append(Fault(f"sign of '{self.name}'", self.sign, "", "1 or -1"))
+        if number(self.sign) not in (1.0, -1.0):
+            faults.append(Fault(f"sign of '{self.name}'", shown(self.sign), "", "1 or -1"))
         if faults:
             raise InputError(*faults)
         object.__setattr__(self, "u", float(self.u))
@@ -68,8 +68,8 @@ class Input:
     def __post_init__(self):
         object.__setattr__(self, "components", tuple(self.components))
         faults = []
-        if not _is_number(self.value) or not isfinite(self.value):
-            faults.append(Fault(f"value of '{self.name}'", self.value, "", "a finite number"))
+        if not abs(number(self.value)) <= MOST:
+            faults.append(Fault(f"value of '{self.name}'", shown(self.value), "", "a finite number"))
         names = [c.name for c in self.components]
         faults += [Fault(f"component of '{self.name}'", name, "", "a name used once",
                          why="two causes of one name would be taken for one",
@@ -86,7 +86,7 @@ class Input:
         for c in self.components:
             key = c.source or "\0" + c.name
             shared[key] = shared.get(key, 0.0) + c.sign * c.u
-        return sqrt(sum(u * u for u in shared.values()))
+        return hypot(*shared.values())
 
 
 def normal(name: str, u: float, *, dof: float = inf, **labels) -> Component:
@@ -100,9 +100,10 @@ def expanded(name: str, U: float, k: float = 2.0, *, dof: float = inf, **labels)
     >>> expanded("certificate", 0.06, k=2.0).u
     0.03
     """
-    if not _is_number(k) or not 0 < k < inf:
-        raise InputError(Fault(f"coverage factor of '{name}'", k, "", "a number above 0"))
-    return Component(name, U / k, "normal", dof, **labels)
+    U, factor = size(f"expanded uncertainty of '{name}'", U), number(k)
+    if not (0 < factor < inf and isfinite(U / factor)):
+        raise InputError(Fault(f"coverage factor of '{name}'", shown(k), "", "a number above 0"))
+    return Component(name, U / factor, "normal", dof, **labels)
 
 
 def rectangular(name: str, half_width: float, *, dof: float = inf, **labels) -> Component:
@@ -111,12 +112,12 @@ def rectangular(name: str, half_width: float, *, dof: float = inf, **labels) -> 
     >>> round(rectangular("class A", 0.35).u, 4)
     0.2021
     """
-    return Component(name, half_width / sqrt(3), "rectangular", dof, **labels)
+    return Component(name, size(f"half-width of '{name}'", half_width) / sqrt(3), "rectangular", dof, **labels)
 
 
 def triangular(name: str, half_width: float, *, dof: float = inf, **labels) -> Component:
     """Limits ± ``half_width``, values near the middle likelier: u = a/√6 (GUM 4.3.9)."""
-    return Component(name, half_width / sqrt(6), "triangular", dof, **labels)
+    return Component(name, size(f"half-width of '{name}'", half_width) / sqrt(6), "triangular", dof, **labels)
 
 
 def type_a(name: str, s: float, n: int, n_eff: float | None = None, **labels) -> Component:
@@ -134,18 +135,13 @@ def type_a(name: str, s: float, n: int, n_eff: float | None = None, **labels) ->
     0.726
     """
     n_eff = n if n_eff is None else n_eff
-    if not (_is_number(n) and 2 <= n < inf):
-        raise InputError(Fault(f"number of readings of '{name}'", n, "", "2 or more",
+    s = size(f"standard deviation of '{name}'", s)
+    if not 2 <= number(n) < inf:
+        raise InputError(Fault(f"number of readings of '{name}'", shown(n), "", "2 or more",
                                why="one reading says nothing about its own scatter",
                                hint="take more readings, or give the scatter known from elsewhere with 'normal'"))
-    if not (_is_number(n_eff) and 1 <= n_eff <= n):
-        raise InputError(Fault(f"number of independent readings of '{name}'", n_eff, "", f"1 to {n}, the readings"))
-    n_eff = max(n_eff, 2.0)
-    return Component(name, s * sqrt((n - 1) / (n * (n_eff - 1))), "t", n_eff - 1, **labels)
-
-
-def _is_number(value) -> bool:
-    try:
-        return float(value) == value
-    except (TypeError, ValueError):
-        return False
+    if not 1 <= number(n_eff) <= n:
+        raise InputError(Fault(f"number of independent readings of '{name}'", shown(n_eff), "",
+                               f"1 to {n}, the readings"))
+    n, n_eff = number(n), max(number(n_eff), 2.0)
+    return Component(name, s * sqrt((n - 1) / n / (n_eff - 1)), "t", n_eff - 1, **labels)

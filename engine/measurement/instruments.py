@@ -12,6 +12,7 @@ from typing import NamedTuple
 
 import numpy as np
 
+from engine.measurement.given import finite, is_span, number, shown, size
 from engine.measurement.inputs import Component, expanded, rectangular
 from engine.measurement.tolerances import (
     ASME_B40_100,
@@ -21,7 +22,6 @@ from engine.measurement.tolerances import (
     IEC_60584,
     IEC_60751,
     gauge_tolerance,
-    is_span,
     pt100_tolerance,
     row_of,
     thermocouple_tolerance,
@@ -36,7 +36,7 @@ _READ_ANEW = ("resolution", "scale reading")  # errors of reading off: new each 
 
 def resolution(step: float, **labels) -> Component:
     """The last digit of a display: half-width step/2 (JCGM 100, F.2.2.1)."""
-    return rectangular("resolution", step / 2, **labels)
+    return rectangular("resolution", size("step of the display", step) / 2, **labels)
 
 
 def scale_reading(division: float, told_apart: float = 0.5, **labels) -> Component:
@@ -45,20 +45,22 @@ def scale_reading(division: float, told_apart: float = 0.5, **labels) -> Compone
     >>> round(scale_reading(0.5e5).u)  # half divisions on a scale of 0.5 bar
     7217
     """
-    return rectangular("scale reading", division * told_apart / 2, **labels)
+    part = size("part of a division told apart", told_apart)
+    return rectangular("scale reading", size("division of the scale", division) * part / 2, **labels)
 
 
 def gauge_temperature(span: tuple[float, float], T_ambient: float, **labels) -> Component:
     """What EN 837-1 allows a gauge that is not at 20 °C: 0.4 % of span for each 10 K."""
-    if not 173.15 < T_ambient < 473.15:
-        raise InputError(fault("T_ambient", T_ambient, "173.15 K to 473.15 K", hint="temperatures are in kelvin here"))
+    if not 173.15 < number(T_ambient) < 473.15:
+        raise InputError(fault("T_ambient", shown(T_ambient), "173.15 K to 473.15 K",
+                               hint="temperatures are in kelvin here"))
     away = abs(T_ambient - GAUGE_REFERENCE)
-    return rectangular("gauge temperature", EN_837_AMBIENT / 100 * away * (span[1] - span[0]), **labels)
+    return rectangular("gauge temperature", EN_837_AMBIENT / 100 * away * _width(span), **labels)
 
 
 def stability(percent: float, span: tuple[float, float], **labels) -> Component:
     """Drift since the last calibration, as a limit in % of span."""
-    return rectangular("stability", percent / 100 * (span[1] - span[0]), **labels)
+    return rectangular("stability", size("stability in % of span", percent) / 100 * _width(span), **labels)
 
 
 def cold_junction(half_width: float, **labels) -> Component:
@@ -114,17 +116,19 @@ class Instrument:
 
     def __post_init__(self):
         object.__setattr__(self, "extra", tuple(self.extra))
-        if self.span is not None:
-            object.__setattr__(self, "span", tuple(self.span))
+        if is_span(self.span):
+            object.__setattr__(self, "span", tuple(map(number, self.span)))
         row_of(KINDS, self.kind, "kind of instrument")
         faults = []
         if self.kind in _WITH_SPAN and not is_span(self.span):
-            faults.append(Fault(f"span of the {self.kind} instrument", self.span, "",
+            faults.append(Fault(f"span of the {self.kind} instrument", shown(self.span), "",
                                 "two finite numbers, low then high", hint="give both ends of the scale"))
-        if KINDS[self.kind] and self.grade not in KINDS[self.kind]:
-            faults.append(Fault(f"class by {self.kind}", self.grade, "", "one of: " + ", ".join(KINDS[self.kind])))
-        if self.kind == "transmitter" and not _percent(self.grade) > 0:
-            faults.append(Fault("accuracy of the transmitter", self.grade, "% of span", "a number above 0"))
+        if KINDS[self.kind] and not (isinstance(self.grade, str) and self.grade in KINDS[self.kind]):
+            faults.append(Fault(f"class by {self.kind}", shown(self.grade), "",
+                                "one of: " + ", ".join(KINDS[self.kind])))
+        if self.kind == "transmitter" and not 0 < _percent(self.grade) <= 100:
+            faults.append(Fault("accuracy of the transmitter", shown(self.grade), "% of span",
+                                "a number above 0, up to 100"))
         if self.kind == "certificate" and not self.extra:
             faults.append(Fault("instrument with a certificate", "no terms", "", "its certificate among the terms",
                                 why="without it nothing is known of its error"))
@@ -146,8 +150,8 @@ class Instrument:
             return zoned_gauge_tolerance(reading, self.grade, self.span)
         if self.kind == "transmitter":
             return transmitter_tolerance(reading, _percent(self.grade), self.span)
-        array, scalar = _numbers(reading)
-        return give_back(np.zeros_like(array), scalar)
+        array = finite("reading", reading, hint="leave missing readings out")
+        return give_back(np.zeros_like(array), array.ndim == 0)
 
     def standard_uncertainty(self, reading) -> Doubt:
         """Standard uncertainty at ``reading`` (scalar or array) with its terms by name."""
@@ -202,10 +206,8 @@ def _percent(text: str) -> float:
         return 0.0
 
 
-def _numbers(reading) -> tuple[np.ndarray, bool]:
-    """A reading of any quantity, finite."""
-    array = np.asarray(reading, dtype=float)
-    if not np.isfinite(array).all():
-        raise InputError(Fault("reading", "not a finite number", "", "finite numbers",
-                               hint="leave missing readings out"))
-    return array, array.ndim == 0
+def _width(span: tuple[float, float]) -> float:
+    """From end to end of a scale."""
+    if not is_span(span):
+        raise InputError(Fault("span", shown(span), "", "two finite numbers, low then high"))
+    return number(span[1]) - number(span[0])

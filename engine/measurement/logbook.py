@@ -13,6 +13,7 @@ from dataclasses import dataclass, field, replace
 
 import numpy as np
 
+from engine.measurement.given import whole
 from engine.measurement.logbook_cells import Worked, work
 from engine.measurement.logbook_checks import Checked, suspicions
 from engine.measurement.logbook_mapping import Mapping, is_dated, refuse_open
@@ -34,7 +35,7 @@ from engine.measurement.logbook_text import (
     text_blocks,
 )
 from engine.measurement.logbook_words import CHANNELS, PRESSURES
-from engine.steam.arrays import at_the_door, refuse_outside
+from engine.steam.arrays import at_the_door, refuse_outside, shortened
 from engine.steam.errors import Fault, InputError
 from engine.steam.units import absolute_from_gauge
 
@@ -102,9 +103,14 @@ def propose_mapping(path_or_bytes, *, delimiter: str = "", encoding: str = "", s
     'gauge'
     """
     for name, value, allowed in (("delimiter", delimiter, ("", *DELIMITERS)), ("encoding", encoding, ("", *ENCODINGS))):
-        if value not in allowed:
-            raise InputError(Fault(f"{name} of a log", repr(value), "", "one of: " + ", ".join(map(repr, allowed)),
+        if not isinstance(value, str) or value not in allowed:
+            raise InputError(Fault(f"{name} of a log", shortened(value), "", "one of: " + ", ".join(map(repr, allowed)),
                                    name=name))
+    if not isinstance(sheet, str):
+        raise InputError(Fault("sheet of a log", shortened(sheet), "", "the name of a sheet", name="sheet"))
+    if header_line is not None and not (whole(header_line) and header_line >= 0):
+        raise InputError(Fault("heading line of a log", shortened(header_line), "", "a line number, or 0 for none",
+                               name="header_line"))
     return _propose(source_of(path_or_bytes), Layout(delimiter, encoding, sheet, header_line))
 
 
@@ -165,14 +171,14 @@ def absolute(log: Log, p_barometer=None) -> Log:
     return replace(log, channels=channels, basis={**log.basis, **dict.fromkeys(gauge, "absolute")})
 
 
-def fit_mapping(mapping: Mapping, source: Source) -> Mapping:
+def fit_mapping(mapping: Mapping, path_or_bytes) -> Mapping:
     """A remembered mapping laid on a file: columns by their headings, lines where this file has them.
 
     What was decided (channels, units, bases, decimal sign, date order) stays as decided. The layout
     remembered is tried first, then the one this file shows. Raises InputError for a column that is
     in neither.
     """
-    return _fitted(mapping, source).mapping
+    return _fitted(mapping, source_of(path_or_bytes)).mapping
 
 
 def _fitted(mapping: Mapping, source: Source) -> Proposal:

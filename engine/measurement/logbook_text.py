@@ -72,6 +72,8 @@ class Source:
 def source_of(path_or_bytes) -> Source:
     """A path (str or Path), bytes, or a binary file object -> Source; refuses what is none or is empty."""
     given = path_or_bytes
+    if isinstance(given, Source):
+        return given
     if isinstance(given, (str, os.PathLike)):
         source = _from_path(Path(given))
     elif isinstance(given, (bytes, bytearray, memoryview)):

@@ -13,10 +13,12 @@ from typing import NamedTuple
 import numpy as np
 from scipy.special import stdtrit
 
+from engine.measurement.given import number, series, shown
 from engine.steam.arrays import give_back
 from engine.steam.errors import Fault, InputError
 
 SIDES = ("both", "high", "low")
+MOST_READINGS = 1e9
 
 
 class Outliers(NamedTuple):
@@ -80,7 +82,7 @@ def flag_outliers(readings, risk: float = 0.05, *, side: str = "both") -> Outlie
     >>> got.by_grubbs.nonzero()[0], round(float(got.distance.max()), 6)
     (array([7]), 2.468765)
     """
-    y = np.array(readings, dtype=float).ravel()
+    y = series("readings", readings).ravel()
     used = np.isfinite(y)
     n = int(used.sum())
     tau, grubbs = thompson_tau(n, risk), grubbs_critical(n, risk, side=side)
@@ -101,18 +103,20 @@ def flag_outliers(readings, risk: float = 0.05, *, side: str = "both") -> Outlie
 
 
 def _counts(n, risk: float) -> tuple[np.ndarray, bool]:
-    n = np.asarray(n, dtype=float)
-    faults = []
-    if not (n >= 3).all():
-        faults.append(Fault("number of readings", int(np.nanmin(n)), "", "3 or more",
+    n = series("number of readings", n)
+    faults, enough = [], (n >= 3) & (n <= MOST_READINGS)
+    if not enough.all():
+        few = float(n[~enough].flat[0])
+        limit = "3 or more" if few < 3 else f"3 to {MOST_READINGS:g}"
+        faults.append(Fault("number of readings", int(few) if few.is_integer() else few, "", limit,
                             why="of two readings neither can be called the wrong one", hint="take more readings"))
-    if not 0 < risk < 1:
-        faults.append(Fault("risk", risk, "", "a number between 0 and 1, such as 0.05"))
+    if not 1e-12 <= number(risk) < 1:
+        faults.append(Fault("risk", shown(risk), "", "a number between 0 and 1, such as 0.05; 1e-12 at least"))
     if faults:
         raise InputError(*faults)
     return n, n.ndim == 0
 
 
 def _check_side(side: str) -> None:
-    if side not in SIDES:
-        raise InputError(Fault("side", side, "", "one of: " + ", ".join(SIDES)))
+    if not isinstance(side, str) or side not in SIDES:
+        raise InputError(Fault("side", shown(side), "", "one of: " + ", ".join(SIDES)))

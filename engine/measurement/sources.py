@@ -12,6 +12,7 @@ from typing import NamedTuple
 
 import numpy as np
 
+from engine.measurement.given import MOST, number, series, shown
 from engine.measurement.inputs import Component, Input
 from engine.steam.errors import Fault, InputError
 
@@ -76,7 +77,7 @@ def correlations_from_matrix(names: Sequence[str], matrix) -> dict[tuple[str, st
     >>> correlations_from_matrix(["V", "I"], [[1, -0.36], [-0.36, 1]])
     {('V', 'I'): -0.36}
     """
-    r = np.asarray(matrix, dtype=float)
+    r = series("correlation matrix", matrix)
     n = len(names)
     if r.shape != (n, n) or not (np.array_equal(r, r.T) and np.array_equal(np.diag(r), np.ones(n))):
         raise InputError(Fault("correlation matrix", f"shape {r.shape}", "",
@@ -104,6 +105,8 @@ def evaluate(model: Model, arguments: Mapping[str, np.ndarray]) -> tuple[np.ndar
     shape = np.broadcast_shapes(*(np.shape(a) for a in arguments.values()))
     if values.shape != shape:
         raise InputError(Fault("model result", f"shape {values.shape}", "", f"the shape of its arguments, {shape}"))
+    if (np.isfinite(values) & (np.abs(values) > MOST)).any():
+        raise InputError(Fault("model result", float(np.nanmax(np.abs(values))), "", f"sizes up to {MOST:g}"))
     return values, None if status is None else np.asarray(status)
 
 
@@ -120,8 +123,8 @@ def _correlation_matrix(found: Mapping, names: Sequence[str], correlations: Corr
         if len(places) != 2 or places[0] == places[1]:
             faults.append(Fault("correlation", " and ".join(map(str, pair)), "", "two different causes of the budget",
                                 hint="its causes are: " + ", ".join(labels)))
-        elif not -1 <= value <= 1:
-            faults.append(Fault(f"correlation of {' and '.join(pair)}", value, "", "a number from -1 to 1"))
+        elif not -1 <= number(value) <= 1:
+            faults.append(Fault(f"correlation of {' and '.join(pair)}", shown(value), "", "a number from -1 to 1"))
         else:
             r[places[0], places[1]] = r[places[1], places[0]] = value
     if not faults and len(labels) and not np.linalg.eigvalsh(r)[0] > -1e-9:

@@ -16,6 +16,7 @@ from typing import NamedTuple
 import numpy as np
 from scipy.special import stdtr
 
+from engine.measurement.given import number, series, shown
 from engine.steam.errors import Fault, InputError
 
 _MOST_CORRELATED = 0.95  # a larger lag-1 correlation cannot be told from a trend in one window
@@ -53,13 +54,13 @@ class SteadyLimits:
     negligible: float | None = None
 
     def __post_init__(self):
-        faults = [Fault(f"limit of {name}", value, "", "a number above 0, or None")
+        faults = [Fault(f"limit of {name}", shown(value), "", "a number above 0, or None")
                   for name in ("change", "slope", "scatter") if (value := getattr(self, name)) is not None
-                  and not value > 0]
-        if self.risk is not None and not 0 < self.risk < 1:
-            faults.append(Fault("risk", self.risk, "", "a number between 0 and 1, or None"))
-        if self.negligible is not None and not self.negligible >= 0:
-            faults.append(Fault("negligible change", self.negligible, "", "a number, zero or more"))
+                  and not 0 < number(value) < np.inf]
+        if self.risk is not None and not 0 < number(self.risk) < 1:
+            faults.append(Fault("risk", shown(self.risk), "", "a number between 0 and 1, or None"))
+        if self.negligible is not None and not 0 <= number(self.negligible) < np.inf:
+            faults.append(Fault("negligible change", shown(self.negligible), "", "a finite number, zero or more"))
         if faults:
             raise InputError(*faults)
 
@@ -191,9 +192,9 @@ def measured(fit: Trend, limits: SteadyLimits, test: Unsettled, least: int) -> t
 
 def checked_log(time, channels: Mapping[str, object]) -> tuple[np.ndarray, dict[str, np.ndarray]]:
     """Time and channels as arrays of one length; time finite and running forward, else InputError."""
-    time = np.asarray(time, dtype=float)
-    columns = {name: np.asarray(values, dtype=float) for name, values in channels.items()}
-    faults = [Fault(f"channel '{name}'", f"shape {a.shape}", "", f"one value for each of the {len(time)} times")
+    time = series("time", time)
+    columns = {name: series(f"channel '{name}'", values) for name, values in channels.items()}
+    faults = [Fault(f"channel '{name}'", f"shape {a.shape}", "", f"one value for each of the {time.size} times")
               for name, a in columns.items() if a.shape != time.shape]
     if time.ndim != 1:
         faults.append(Fault("time", f"shape {time.shape}", "", "one dimension"))

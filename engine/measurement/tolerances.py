@@ -11,6 +11,7 @@ from typing import NamedTuple
 
 import numpy as np
 
+from engine.measurement.given import is_span, number, shown
 from engine.steam.arrays import at_the_door, give_back, refuse_outside
 from engine.steam.errors import Fault, InputError
 from engine.steam.units import ZERO_CELSIUS
@@ -68,6 +69,8 @@ def pt100_resistance(T, R0: float = 100.0):
     138.5055
     """
     (T,), scalar = at_the_door(T=T)
+    if not 0 < number(R0) <= 1e6:
+        raise InputError(Fault("resistance at 0 °C", shown(R0), "Ω", "a number above 0, up to 1e6"))
     t = T - ZERO_CELSIUS
     _refuse_temperature(T, t, (-200, 850), "the resistance formula")
     return give_back(R0 * (1 + t * (_PT_A + t * _PT_B) + _PT_C * (t - 100) * np.minimum(t, 0.0) ** 3), scalar)
@@ -130,8 +133,8 @@ def transmitter_tolerance(reading, percent: float, span: tuple[float, float]):
     >>> transmitter_tolerance(9e5, 0.1, (0, 16e5))
     1600.0
     """
-    if not 0 < percent < np.inf:
-        raise InputError(Fault("accuracy of the transmitter", percent, "% of span", "a number above 0"))
+    if not 0 < number(percent) < np.inf:
+        raise InputError(Fault("accuracy of the transmitter", shown(percent), "% of span", "a number above 0"))
     reading, scalar = _on_the_scale(reading, span)
     return give_back(np.full_like(reading, percent / 100 * (span[1] - span[0])), scalar)
 
@@ -139,18 +142,13 @@ def transmitter_tolerance(reading, percent: float, span: tuple[float, float]):
 def row_of(table: dict, key: str, what: str):
     """The row of a table, or an InputError that lists what there is."""
     if not isinstance(key, str) or key not in table:
-        raise InputError(Fault(what, key, "", "one of: " + ", ".join(table)))
+        raise InputError(Fault(what, shown(key), "", "one of: " + ", ".join(table)))
     return table[key]
-
-
-def is_span(span) -> bool:
-    """Two finite numbers, the first below the second."""
-    return span is not None and len(span) == 2 and -np.inf < span[0] < span[1] < np.inf
 
 
 def _on_the_scale(reading, span) -> tuple[np.ndarray, bool]:
     if not is_span(span):
-        raise InputError(Fault("span", span, "", "two finite numbers, low then high"))
+        raise InputError(Fault("span", shown(span), "", "two finite numbers, low then high"))
     (p,), scalar = at_the_door(p=reading)
     faults = refuse_outside("p", p, (p >= span[0]) & (p <= span[1]), f"{span[0]:g} to {span[1]:g} Pa, the scale",
                             why="an instrument says nothing beyond its scale",

@@ -13,6 +13,7 @@ from typing import NamedTuple
 
 import numpy as np
 
+from engine.measurement.given import number, shown, whole
 from engine.measurement.steadiness import (
     Reason,
     SteadyLimits,
@@ -123,8 +124,9 @@ def settled_windows(time, channels: Mapping[str, object], limits: Mapping[str, S
     (1110, ['DRIFT', 'SIGNIFICANT'])
     """
     log = _checked(time, channels, limits, length, least)
-    if step is not None and not step >= 1:
-        raise InputError(Fault("step", step, "", "1 or more", why="it is the number of rows from window to window"))
+    if step is not None and not (whole(step) and step >= 1):
+        raise InputError(Fault("step", shown(step), "", "1 or more, a whole number",
+                               why="it is the number of rows from window to window"))
     first, stop = _windows(log.time, length, step)
     flags = {name: np.empty(len(first), dtype=np.uint8) for name in limits}
     for part, rows in _stretches(first, stop):
@@ -242,13 +244,13 @@ def _checked(time, channels: Mapping[str, object], limits: Mapping[str, SteadyLi
               for name in limits if name not in columns]
     if not limits:
         faults.append(Fault("limits", "none", "", "at least one channel to test"))
-    if not least >= 3:
-        faults.append(Fault("least number of readings in a window", least, "", "3 or more"))
+    if not number(least) >= 3:
+        faults.append(Fault("least number of readings in a window", shown(least), "", "3 or more"))
     if not len(time):
         faults.append(Fault("log", "no rows", "", "at least one reading"))
     elif length is not None:
-        if not 0 < length < np.inf:
-            faults.append(Fault("length of the window", length, "s", "a time above 0"))
+        if not 0 < number(length) < np.inf:
+            faults.append(Fault("length of the window", shown(length), "s", "a time above 0"))
         elif length > (lasts := float(time[-1] - time[0])) * (1 + 1e-9):
             faults.append(Fault("length of the window", float(length), "s", f"no more than {lasts:g} s, the whole log",
                                 hint="log for longer, or judge with a shorter window"))

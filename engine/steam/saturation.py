@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from functools import lru_cache
+from functools import cache
 from typing import NamedTuple
 
 import numpy as np
@@ -122,10 +122,10 @@ class Dome(NamedTuple):
     v_g: np.ndarray
 
 
-@lru_cache(maxsize=2)
-def dome(points: int = 160) -> Dome:
+@cache
+def dome() -> Dome:
     """The whole dome for a diagram: regions 1 and 2 here, region 3 (above 623.15 K) from ``iapws``."""
-    T = np.linspace(T_TRIPLE, T_SAT_MAX, points)
+    T = np.linspace(T_TRIPLE, T_SAT_MAX, 160)
     p = np.clip(if97.saturation_p(T), P_TRIPLE, P_SAT_MAX)
     lower = np.vstack([p, *saturated_kernel(p)])
     upper = []

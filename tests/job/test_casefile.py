@@ -8,13 +8,14 @@ import pytest
 from hypothesis import assume, given, settings
 from hypothesis import strategies as st
 
-from engine.job.case import BLANK, Case, as_entered, faults_of
+from engine.job.case import BLANK, Case, faults_of
 from engine.job.case.casefile import FORMAT, LISTED, MAX_BYTES, MAX_TEXT, SCHEMA, from_json, from_link, to_json, to_link
 from engine.job.case.demo import DEMO
 from engine.job.case.fields import FIELDS
-from engine.job.case.rows import CHOICE, QUANTITY, TABLE, TEXT, Entry
+from engine.job.case.rows import Entry
 from engine.steam.errors import InputError
 from engine.steam.units import UNITS
+from tests.job.any_case import CASES
 
 
 def document(**values):
@@ -37,22 +38,6 @@ def word_of(thing):
 
 
 # ---- there and back
-
-
-def _entries(field):
-    def entered(share, unit, basis):
-        return as_entered(field, field.low + share * (field.high - field.low), Entry(0.0, unit, basis), 101_325.0)
-
-    bases = st.sampled_from(("gauge", "absolute")) if field.kind == "pressure" else st.just("")
-    entry = st.builds(entered, st.floats(0.001, 0.999), st.sampled_from(list(UNITS[field.kind])), bases)
-    return entry if field.blank is not None else st.none() | entry
-
-
-_PRINTED = st.text(st.characters(exclude_categories=["Cs"]), max_size=40)
-_VALUES = {QUANTITY: _entries, CHOICE: lambda field: st.sampled_from(field.options), TEXT: lambda field: _PRINTED,
-           TABLE: lambda field: st.lists(st.builds(field.row, **{
-               column.name: _VALUES[column.form](column) for column in field.columns}), max_size=3).map(tuple)}
-CASES = st.fixed_dictionaries({}, optional={name: _VALUES[field.form](field) for name, field in FIELDS.items()})
 
 
 @settings(max_examples=15, deadline=None)
