@@ -17,6 +17,8 @@ from engine.steam.errors import InputError
 from engine.steam.units import UNITS
 from tests.job.any_case import CASES
 
+SAVED = "open the file as it was saved, or save the case once more"
+
 
 def document(**values):
     """The demo case as a document, with some of its values replaced."""
@@ -109,20 +111,24 @@ def test_a_file_that_is_not_json(data, got):
     lines = refused(data)
     assert lines[0].startswith(f"case file: got {got}")
     assert lines[0].endswith(", needs a JSON file as saved by this program")
-    assert lines[1:] == []
+    assert lines[1:] == [f"  - {SAVED}"]
 
 
-@pytest.mark.parametrize("data", [b"\xff\xfe\x00\x01", to_json(DEMO).encode("utf-16"), b"PK\x03\x04\x80\x81"],
-                         ids=["bytes", "UTF-16", "zip"])
-def test_a_file_that_is_not_text(data):
-    assert refused(data) == ["case file: got bytes that are not text, needs a JSON file in UTF-8"]
+@pytest.mark.parametrize(("data", "got", "hint"), [
+    (b"\xff\xfe\x00\x01", "text in UTF-16", "save it as UTF-8"),
+    (b"\x89\x80", "bytes that are not text", SAVED),
+    (b"PK\x03\x04\x80\x81", "a ZIP archive or a workbook",
+     "unpack it, and open the case or the record in it; logs go to the Readings page"),
+], ids=["UTF-16", "bytes", "zip"])
+def test_a_file_that_is_not_text(data, got, hint):
+    assert refused(data) == [f"case file: got {got}, needs a JSON file in UTF-8", f"  - {hint}"]
 
 
 @pytest.mark.parametrize("thing", [None, 3, "case", [], {}, [DEMO["title"]], document() | {"format": "other"},
                                    document() | {"format": None}], ids=repr)
 def test_json_of_another_kind(thing):
     assert refused(json.dumps(thing)) == ["case file: got a JSON document of another kind, needs a document with "
-                                          '"format": "steam quality case"']
+                                          '"format": "steam quality case"', f"  - {SAVED}"]
 
 
 @pytest.mark.parametrize("schema", [0, -1, 1.0, "1", True, None, [1]], ids=repr)
@@ -147,7 +153,7 @@ def test_values_that_are_no_object(values):
 
 @pytest.mark.parametrize("size", [MAX_BYTES + 1, 3 * MAX_BYTES])
 def test_a_file_too_large_is_not_even_read(size):
-    assert refused(b"[" * size) == [f"case file: got {size} bytes, needs at most 5000000 bytes"]
+    assert refused(b"[" * size) == [f"case file: got {size} bytes, needs at most 5000000 bytes", f"  - {SAVED}"]
 
 
 # ---- nonsense inside a case
@@ -224,8 +230,9 @@ def test_entries_that_do_not_go_together_are_refused():
 
 def test_a_great_many_faults_are_counted_not_listed():
     lines = refused(document(**{f"z{k}": k for k in range(2000)}))
-    assert len(lines) == LISTED + 1
-    assert lines[-1] == f"case: got {2000 - LISTED} more entries like these, needs none"
+    said = [line for line in lines if not line.startswith("  -")]
+    assert len(said) == LISTED + 1
+    assert said[-1] == f"case: got {2000 - LISTED} more entries like these, needs none"
 
 
 # ---- links

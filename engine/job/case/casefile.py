@@ -6,6 +6,7 @@ import base64
 import json
 import math
 import zlib
+from collections import Counter
 
 from engine import __version__
 from engine.job.case.case import BLANK, Case, Value, entry_faults, faults_of
@@ -45,15 +46,48 @@ def to_json(case: Case) -> str:
 def from_json(data: bytes | str) -> Case:
     """Read a case file. InputError with the reason for anything that is not a case this program can use."""
     if len(data) > MAX_BYTES:
-        raise _refusal("case file", f"{len(data)} bytes", f"at most {MAX_BYTES} bytes")
+        raise _refusal("case file", f"{len(data)} bytes", f"at most {MAX_BYTES} bytes", _SAVED)
     try:
         text = data.decode() if isinstance(data, bytes) else data
-        document = json.loads(text.removeprefix("\ufeff"), parse_constant=_no_constant)
+        document = _parsed(text.removeprefix("\ufeff"))
     except UnicodeDecodeError as error:
-        raise _refusal("case file", "bytes that are not text", "a JSON file in UTF-8") from error
+        kind, hint = _kind_of(data)
+        raise _refusal("case file", kind or "bytes that are not text", "a JSON file in UTF-8", hint) from error
     except (ValueError, RecursionError) as error:
-        raise _refusal("case file", _first_line(error), "a JSON file as saved by this program") from error
+        kind, hint = _kind_of(data)
+        raise _refusal("case file", kind or _first_line(error), "a JSON file as saved by this program",
+                       hint) from error
     return _from_document(document, "case file")
+
+
+_SAVED = "open the file as it was saved, or save the case once more"
+_KINDS = {  # first bytes of what is taken for a case now and then
+    b"PK\x03\x04": ("a ZIP archive or a workbook", "unpack it, and open the case or the record in it; logs go to the "
+                    "Readings page"),
+    b"\x1f\x8b": ("a gzip archive", "unpack it, and open the case in it"),
+    b"\xff\xfe": ("text in UTF-16", "save it as UTF-8"), b"\xfe\xff": ("text in UTF-16", "save it as UTF-8"),
+    b"%PDF": ("a PDF document", "open the case file or the HTML record instead"),
+    b"<": ("a web page", "if it is a record of this program, its name must end in .html"),
+}
+
+
+def _kind_of(data: bytes | str) -> tuple[str, str]:
+    """What a file that is no case looks like, and what to do with it."""
+    start = data[:64].encode(errors="replace") if isinstance(data, str) else data[:64]
+    return next((told for first, told in _KINDS.items() if start.lstrip().startswith(first)), ("", _SAVED))
+
+
+def _parsed(text: str):
+    """JSON in which every name stands once, and every number is one."""
+    return json.loads(text, parse_constant=_no_constant, object_pairs_hook=_once)
+
+
+def _once(pairs: list[tuple[str, object]]) -> dict[str, object]:
+    read = dict(pairs)
+    if len(read) < len(pairs):
+        twice = Counter(name for name, _ in pairs).most_common(1)[0][0]
+        raise ValueError(f"“{twice[:40]}” twice in one place")
+    return read
 
 
 BLOCK = '<script type="application/json" id="{}">'  # of a record; a browser neither shows nor runs it
@@ -67,16 +101,21 @@ def from_record(data: bytes | str) -> Case:
 def block_of(data: bytes | str, name: str) -> str:
     """The text of a named block of data in a record. InputError where there is none."""
     if len(data) > MAX_RECORD:
-        raise _refusal("record", f"{len(data)} bytes", f"at most {MAX_RECORD} bytes")
+        raise _refusal("record", f"{len(data)} bytes", f"at most {MAX_RECORD} bytes", _RECORDED)
     try:
         text = data.decode() if isinstance(data, bytes) else data
     except UnicodeDecodeError as error:
-        raise _refusal("record", "bytes that are not text", "a record in UTF-8, as saved by this program") from error
+        raise _refusal("record", "bytes that are not text", "a record in UTF-8, as saved by this program",
+                       _RECORDED) from error
     _, found, rest = text.partition(BLOCK.format(name))
     block, closed, _ = rest.partition("</script>")
     if not (found and closed):
-        raise _refusal("record", "a page of another kind", f"a record as saved by this program, with its {name} in it")
+        raise _refusal("record", "a page of another kind", f"a record as saved by this program, with its {name} in it",
+                       _RECORDED)
     return block
+
+
+_RECORDED = "open the record as it was saved: one printed, or saved by a browser, has lost its data"
 
 
 def as_block(name: str, text: str) -> str:
@@ -101,16 +140,16 @@ def _no_constant(name: str):
 
 def _from_document(document: object, source: str) -> Case:
     if not isinstance(document, dict) or document.get("format") != FORMAT:
-        raise _refusal(source, "a JSON document of another kind", f'a document with "format": "{FORMAT}"')
+        raise _refusal(source, "a JSON document of another kind", f'a document with "format": "{FORMAT}"', _SAVED)
     schema = document.get("schema")
     if not isinstance(schema, int) or isinstance(schema, bool) or schema < 1:
-        raise _refusal(f"schema of the {source}", schema, f"a whole number from 1 to {SCHEMA}")
+        raise _refusal(f"schema of the {source}", schema, f"a whole number from 1 to {SCHEMA}", _SAVED)
     if schema > SCHEMA:
         raise _refusal(f"schema of the {source}", schema, f"at most {SCHEMA}", "open it with the version that saved it",
                        "it was saved by a newer version of this program")
     values = document.get("values")
     if not isinstance(values, dict):
-        raise _refusal(f"values of the {source}", type(values).__name__, "a JSON object of entries")
+        raise _refusal(f"values of the {source}", type(values).__name__, "a JSON object of entries", _SAVED)
     faults, read = [], {}
     for name, raw in values.items():
         try:
@@ -128,13 +167,15 @@ def _shortened(faults: list[Fault]) -> list[Fault]:
     others = len(faults) - LISTED
     if others <= 0:
         return faults
-    return [*faults[:LISTED], Fault("case", f"{others} more entries like these", "", "none")]
+    return [*faults[:LISTED], Fault("case", f"{others} more entries like these", "", "none",
+                                    hint="mend those above first")]
 
 
 def _value(name: str, raw: object) -> Value:
     field = FIELDS.get(name)
     if field is None:
-        raise _refusal("entry of the case", name, "an entry that this version knows")
+        raise _refusal("entry of the case", name, "an entry that this version knows",
+                       "open it with the version that saved it, or take the entry out")
     return _table(field, raw) if field.form == TABLE else _single(field, raw)
 
 
@@ -202,7 +243,7 @@ def from_link(word: str) -> Case:
         text = unpacker.decompress(packed, _LINK_BYTES)
         if unpacker.unconsumed_tail or not unpacker.eof:
             raise ValueError("too long or cut off")
-        schema, values = json.loads(text, parse_constant=_no_constant)
+        schema, values = _parsed(text)
     except (ValueError, TypeError, zlib.error, RecursionError) as error:
         raise _refusal("case in the link", f"“{word[:40]}”", "a link made by this program, copied whole",
                        "copy it once more from where it came, from the first to the last letter") from error
