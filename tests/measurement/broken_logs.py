@@ -62,6 +62,17 @@ REFUSED = [
             ("another workbook format",)),
     Refused("zip bomb", _zip(**{"xl/workbook.xml": "<a/>", "xl/worksheets/sheet1.xml": b"0" * (40 << 20)}),
             ("unpacks to 40 MiB", "fill the memory")),
+    Refused("path tricks in an archive", _zip(**{"../../xl/workbook.xml": "<a/>", "/etc/passwd": "x"}),
+            ("a ZIP archive", "no XLSX workbook in it")),
+    Refused("path tricks beside a workbook", _zip(**{"xl/workbook.xml": "<a/>", "../../escaped.xml": "<a/>"}),
+            ("a workbook that cannot be opened", "save it again")),
+    Refused("bomb of a thousand parts", _zip(**{"xl/workbook.xml": "<a/>", **{f"xl/{k}.xml": "" for k in range(5001)}}),
+            ("a workbook of 5002 parts", "CSV")),
+    Refused("bomb in a bomb", _zip(**{"xl/workbook.xml": "<a/>", "xl/media.zip": _zip(a=b"0" * (40 << 20)) * 300}),
+            ("a workbook that", "save")),
+    Refused("script as a log", b"<script>alert(1)</script>\n", ("delimiter", "export")),
+    Refused("formulas alone", b"time [s],p1 [bar g]\n0,=B1\n5,=B2\n", ("a formula without a stored value",)),
+    Refused("pickle", b"\x80\x04\x95\x1a\x00\x00\x00\x00\x00\x00\x00\x8c\x08builtins", ("binary",)),
     Refused("entity bomb", _zip(**{"xl/workbook.xml": '<!DOCTYPE a [<!ENTITY b "c">]><a>&b;</a>'}), ("document type",)),
     Refused("hidden entity bomb", _zip(**{"xl/workbook.xml": "<!--" + " " * 9000 + "--><!DOCTYPE a><a/>"}),
             ("document type",)),
@@ -170,3 +181,12 @@ REPORTED = [
              4, "p1 [bar g]", "9\ufffd", NOT_A_NUMBER),
     Reported("cut in the last row", (GOOD + "10,9.0").encode(), 4, "", "10,9.0", "the file ends within this row"),
 ]
+
+# Wicked, but a log: words are words, and the readings are read.
+WICKED = ("<script>alert(1)</script>", "=cmd|' /C calc'!A0", "../../../etc/passwd", "{{7*7}} ${7*7} %s %n",
+          "@SUM(A1)", "\u202etxt.exe", "javascript:alert(1)")
+HARMLESS = [(f"{kind}: {text}", data) for text in WICKED for kind, data in (
+    ("remark", f'time [s],p1 [bar g],T2 [degC],remark\n0,9.01,121.3,"{text}"\n5,9.02,121.4,\n'.encode()),
+    ("heading", f'time [s],p1 [bar g],T2 [degC],"{text}"\n0,9.01,121.3,1\n5,9.02,121.4,2\n'.encode()),
+    ("preamble", f'"{text}"\n\n{GOOD}'.encode()),
+)]
