@@ -20,7 +20,7 @@ from typing import NamedTuple
 import numpy as np
 
 from engine.calorimeter.flux import critical_flow
-from engine.calorimeter.rig_inputs import admit, require
+from engine.calorimeter.rig_inputs import LEAST, admit, require
 from engine.calorimeter.wet import wet_steam
 from engine.steam import state_ps
 from engine.steam.arrays import give_back
@@ -128,7 +128,7 @@ def weighed_flow(mass, duration):
     30.0
     """
     (M, t), scalar = admit(mass=mass, duration=duration)
-    require("duration", t, t > 0, "more than 0 s")
+    require("duration", t, t >= LEAST, "more than 0 s")
     return give_back(M / t, scalar)
 
 

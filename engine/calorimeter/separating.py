@@ -237,8 +237,8 @@ def separated_reading(p_line, x, p_exhaust, drain_fraction, *, p_separator=None,
     >>> round(separated_reading(8e5, 0.88, 101_325.0, 0.09).x_throttled, 3)
     0.967
     """
-    (p, x, p2, z, p_s, q_s), scalar = _line_inputs(p_line, x, p_exhaust, p_separator, vessel_loss,
-                                                   drain_fraction=drain_fraction)
+    (p, x, p2, z, p_s, q_s), terms, scalar = _line_inputs(p_line, x, p_exhaust, p_separator, vessel_loss, terms,
+                                                          drain_fraction=drain_fraction)
     h, sep = np.asarray(wet_steam(p, x).h) - q_s, saturated(p_s)
     x_t = ((h - z * sep.h_f) / (1 - z) - sep.h_f) / (sep.h_g - sep.h_f)
     require("drain_fraction", z, (x_t <= 1 + _ROUNDING) & (x_t >= -_ROUNDING), "no more than the water there is",
@@ -257,8 +257,8 @@ def drain_needed(p_line, x, p_exhaust, superheat=5.0, *, p_separator=None, vesse
     >>> round(drain_needed(8e5, 0.88, 101_325.0).drain_fraction, 4)
     0.0831
     """
-    (p, x, p2, wanted, p_s, q_s), scalar = _line_inputs(p_line, x, p_exhaust, p_separator, vessel_loss,
-                                                        superheat=superheat)
+    (p, x, p2, wanted, p_s, q_s), terms, scalar = _line_inputs(p_line, x, p_exhaust, p_separator, vessel_loss, terms,
+                                                               superheat=superheat)
     x_t = np.asarray(least_quality(p_s, p2, wanted, **terms))
     h, sep = np.asarray(wet_steam(p, x).h) - q_s, saturated(p_s)
     arriving = (h - sep.h_f) / (sep.h_g - sep.h_f)  # quality in the separator, after the vessel's loss
@@ -270,8 +270,12 @@ def drain_needed(p_line, x, p_exhaust, superheat=5.0, *, p_separator=None, vesse
     return DrainNeeded(*(give_back(c, scalar) for c in columns), Status(int(status)) if scalar else status)
 
 
-def _line_inputs(p_line, x, p_exhaust, p_separator, vessel_loss, **other):
-    arrays, scalar = admit(p_line=p_line, x=x, p_exhaust=p_exhaust, **other,
-                           p_separator=p_line if p_separator is None else p_separator, vessel_loss=vessel_loss)
+def _line_inputs(p_line, x, p_exhaust, p_separator, vessel_loss, terms, **other):
+    """Inputs and ``terms`` of one shape; the throttle itself looks at the values of the terms."""
+    named = {"p_line": p_line, "x": x, "p_exhaust": p_exhaust, **other,
+             "p_separator": p_line if p_separator is None else p_separator, "vessel_loss": vessel_loss}
+    whole, scalar = at_the_door(**named, **terms)
+    arrays, _ = admit(**dict(zip(named, whole, strict=False)))
     require("p_separator", arrays[-2], arrays[-2] <= arrays[0], "at most the line pressure")
-    return arrays, scalar
+    shaped = dict(zip(terms, whole[len(named):], strict=True))
+    return arrays, {name: float(a) for name, a in shaped.items()} if scalar else shaped, scalar

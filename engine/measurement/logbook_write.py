@@ -79,6 +79,9 @@ def _columns(channels, time, basis, units, texts) -> list[tuple[str, np.ndarray]
     columns = []
     for name, values in channels.items():
         (values,), _ = at_the_door(**{name: values})
+        if values.ndim > 1:
+            raise InputError(Fault(f"column of the {QUANTITIES[name].label}", f"shape {values.shape}", "",
+                                   "one value for each row", name="channels"))
         quantity = QUANTITIES[name]
         unit = units.get(quantity.kind, quantity.unit)
         said = f" {basis.get(name, 'absolute')}" if quantity.kind == "pressure" else ""
@@ -96,7 +99,7 @@ def _stamps(time, start: str) -> list[np.ndarray]:
     """The time column as text: stamps from the start, or elapsed seconds."""
     (time,), _ = at_the_door(time=time)
     time = np.atleast_1d(time)
-    if not (np.abs(time) <= MOST_SECONDS).all():
+    if time.ndim > 1 or not (np.abs(time) <= MOST_SECONDS).all():
         raise InputError(Fault("time", "not finite, or beyond all calendars", "s", "a finite time for every row",
                                name="time"))
     if not start:

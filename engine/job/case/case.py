@@ -123,6 +123,8 @@ def form_fault(field: Field, value: Value) -> Fault | None:
         fits, limit = field.blank is None, "a value with its unit"
     elif not isinstance(value, Entry):
         fits, limit = False, "a value with its unit"
+    elif not _is_number(value.value):
+        return Fault(field.label, _given(value.value), "", "a number", name=field.name)
     elif not (isinstance(value.unit, str) and value.unit in UNITS[field.kind]):
         return Fault(f"unit of {label}", _given(value.unit), "", "one of: " + ", ".join(UNITS[field.kind]),
                      name=field.name)
@@ -131,6 +133,10 @@ def form_fault(field: Field, value: Value) -> Fault | None:
         limit = " or ".join(BASES) if field.kind == "pressure" else "none"
         return None if fits else Fault(f"basis of {label}", _given(value.basis), "", limit, name=field.name)
     return None if fits else Fault(field.label, _given(value), "", limit, name=field.name)
+
+
+def _is_number(value: object) -> bool:
+    return isinstance(value, float) or type(value) is int and abs(value) < 10**300
 
 
 def _is_table(field: Field, value: object) -> bool:
