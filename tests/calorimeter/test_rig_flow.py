@@ -4,6 +4,7 @@ import numpy as np
 import pytest
 
 from engine.calorimeter import (
+    DISCHARGES,
     Status,
     aspiration_efficiency,
     bore_for_flow,
@@ -32,9 +33,15 @@ from engine.steam.errors import InputError
 
 # --- orifice ----------------------------------------------------------------------------------------
 
+def test_discharge_coefficients_for_want_of_a_weighed_flow():
+    """Common practice: the sharper the edge, the narrower the jet behind it."""
+    assert list(DISCHARGES.values()) == [0.60, 0.85, 0.97]
+
+
 def test_napier_joins_at_six_tenths():
     low, high = napier_mass_flux(1e6, 0.6e6 - 1e-3), napier_mass_flux(1e6, 0.6e6 + 1e-3)
     assert low == pytest.approx(high, rel=1e-8)
+    assert napier_mass_flux(1e6, 0.55e6) == napier_mass_flux(1e6, 1e5) == pytest.approx(low)  # choked up to there
     assert napier_mass_flux(1e6, 0.9e6) < low
     assert napier_mass_flux(1e6, 1e6 - 1e-3) < 1.0
 
@@ -196,6 +203,8 @@ def test_isokinetic_area_and_flow_are_inverse_and_equalise_velocities():
 
 
 def test_fine_drops_follow_coarse_drops_fly_straight():
+    assert aspiration_efficiency(2.0, 1.0) == pytest.approx(1 + (1 - 1 / 3.3085))  # k = 2 + 0.617/2
+    assert aspiration_efficiency(0.5, 0.5) == pytest.approx(1 - 0.5 * (1 - 1 / 2.617))  # k = 2 + 0.617/0.5
     assert aspiration_efficiency(2.0, 0.0) == 1
     assert aspiration_efficiency(0.5, 0.0) == 1
     assert aspiration_efficiency(np.array([0.5, 2.0]), 1e9) == pytest.approx([0.5, 2.0])

@@ -220,6 +220,14 @@ def test_without_a_power_the_comfortable_superheat_sets_it():
     assert "No power was chosen" in words(expecting(HOT, 0.1, power=None))
 
 
+@pytest.mark.parametrize(("superheat", "verdict"), [
+    (4.99, Verdict.CANNOT), (5.01, Verdict.THIN), (9.99, Verdict.THIN), (10.01, Verdict.READS)])
+def test_the_verdict_behind_a_heater_follows_the_superheat(superheat, verdict):
+    T_saturation = assess(HOT).T_saturation
+    a = assess(HOT.with_(T_heater=Entry(T_saturation + superheat, "K")))
+    assert a.verdict is verdict and a.superheat == pytest.approx(superheat)
+
+
 def test_too_little_power_cannot_read():
     case = expecting(HOT, 0.12)
     a = assess(case)

@@ -24,7 +24,7 @@ from engine.job.case.rows import Entry
 from engine.job.uncertainty import forecast, prepare, reading_of
 from engine.job.uncertainty.instruments import grade_of, rests_on_barometer
 from engine.measurement import SAMPLING, monte_carlo
-from engine.steam import saturation_temperature
+from engine.steam import saturated, saturation_temperature
 from engine.steam.errors import InputError
 
 METHODS = {
@@ -48,6 +48,18 @@ def test_the_balance_over_arrays_is_that_of_the_assessment(method):
                                      sample_flow=si["sample_flow"], recovery=si["recovery"], T_normal=si["T_normal"])
     assert x == pytest.approx(assess(case).x, abs=1e-12)
     assert (status == Status.OK).all()
+
+
+def test_a_surrounding_read_with_the_rest_counts_before_that_of_the_case():
+    """Colder surroundings take more heat, so the same reading means drier steam."""
+    si = resolve(FACTORY)
+    readings = (si["p_line"], si["p_exhaust"], np.full(2, si["T_exhaust"]))
+    x, _ = balance_of(FACTORY, si)(*readings, sample_flow=si["sample_flow"], recovery=0.7,
+                                   T_ambient=np.array([si["T_ambient"], si["T_ambient"] - 20.0]))
+    own, _ = balance_of(FACTORY, si)(*readings, sample_flow=si["sample_flow"], recovery=0.7)
+    h_fg = saturated(si["p_line"]).h_g - saturated(si["p_line"]).h_f
+    assert x[0] == own[0]
+    assert x[1] - x[0] == pytest.approx(si["conductance"] * 20.0 / si["sample_flow"] / h_fg)
 
 
 def test_quality_above_one_keeps_its_distribution_and_its_status():

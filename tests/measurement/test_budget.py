@@ -132,6 +132,12 @@ def test_welch_satterthwaite():
     assert uncertainty_budget(lambda a, b: a + 0 * b, inputs).dof == pytest.approx(4.0)
 
 
+def test_correlated_causes_are_no_surer_than_the_one_known_least():
+    inputs = [Input(n, 1.0, (normal("readings", 1.0, dof=dof),)) for n, dof in (("a", 4.0), ("b", 50.0))]
+    tied = uncertainty_budget(lambda a, b: a + b, inputs, correlations={("a", "b"): 0.5})
+    assert tied.dof == pytest.approx(4.0)
+
+
 def test_coverage_widens_the_interval():
     assert [round(uncertainty_budget(product, INPUTS, coverage=c).k, 1) for c in (0.6827, 0.95, 0.9973)] == sorted(
         round(uncertainty_budget(product, INPUTS, coverage=c).k, 1) for c in (0.6827, 0.95, 0.9973))

@@ -6,7 +6,16 @@ from math import inf, nan, sqrt
 import numpy as np
 import pytest
 
-from engine.measurement import Component, Input, correlations_from_matrix, expanded, normal, rectangular, type_a
+from engine.measurement import (
+    Component,
+    Input,
+    correlations_from_matrix,
+    expanded,
+    normal,
+    rectangular,
+    triangular,
+    type_a,
+)
 from engine.measurement.sources import gather
 from engine.steam import InputError
 
@@ -47,6 +56,13 @@ def test_input_adds_causes_in_squares_and_a_shared_cause_in_line():
     assert Input("p", 1.0, (normal("a", 3.0), normal("b", 4.0))).u == pytest.approx(5.0)
     assert Input("p", 1.0, (normal("a", 3.0, source="s"), normal("b", 4.0, source="s"))).u == pytest.approx(7.0)
     assert Input("p", 1.0).u == 0.0
+
+
+def test_limits_and_certificates_become_standard_uncertainties():
+    """JCGM 100, 4.3.7 and 4.3.9: a/√3 and a/√6; 4.3.3: U/k."""
+    assert rectangular("class", 0.6).u == pytest.approx(0.6 / 3**0.5)
+    assert triangular("class", 0.6).u == pytest.approx(0.6 / 6**0.5)
+    assert [expanded("certificate", 0.6, k).u for k in (1.0, 2.0, 3.0)] == pytest.approx([0.6, 0.3, 0.2])
 
 
 def test_expanded_needs_a_coverage_factor():
