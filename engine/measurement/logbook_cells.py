@@ -177,13 +177,16 @@ def _numbers(done: Worked, column: Column, mapping: Mapping) -> np.ndarray:
     cells = done.block.cells[column.position]
     if cells.dtype.kind != "f":
         return _careful_numbers(done, column, mapping, cells)
-    unread = done.block.unread.get(column.position)
-    if unread is not None and unread.size:
-        cells = cells.copy()
-        for i in map(int, unread[done.alive[unread]]):
-            cells[i], reason = _read(done.block.content(i, column.position), column, mapping)
+    if unread := done.block.unread.get(column.position):
+        cells, known = cells.copy(), {}
+        for i, text in unread.items():
+            if not done.alive[i]:
+                continue
+            if text not in known:  # a logger has few words, and writes them often
+                known[text] = _read(text, column, mapping)
+            cells[i], reason = known[text]
             if reason:
-                done.faults.append((i, column, reason, None))
+                done.faults.append((i, column, reason, text))
     if not cells.size or (np.fmin.reduce(cells) > max(NO_VALUE_CODES) and np.fmax.reduce(cells) < np.inf):
         return cells
     strange = np.isinf(cells) | np.isin(cells, NO_VALUE_CODES)

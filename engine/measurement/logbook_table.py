@@ -36,6 +36,7 @@ class Block(NamedTuple):
     ``rows`` are line numbers counted from the block's first line, of which the block has ``lines``.
     ``spoiled`` are rows that cannot be used as rows: (index, content, reason).
     ``content(index, position)`` is the text of one cell as it stands in the file, with None of the row.
+    ``unread`` has by position the texts by row of cells in which a known word stands for a number.
     """
 
     rows: np.ndarray
@@ -45,7 +46,7 @@ class Block(NamedTuple):
     content: Callable[[int, int | None], str]
     fraction: float
     undecoded: int = 0
-    unread: dict[int, np.ndarray] = {}  # by position, the rows where a known word stands for a number
+    unread: dict[int, dict[int, str]] = {}
 
 
 class Words:
@@ -105,11 +106,10 @@ def _fast(block: TextBlock, mapping: Mapping, words: frozenset[str] = frozenset(
     content = _content(block.data, mapping.delimiter)
     spoiled = _over_wide(frame, mapping, content) + _cut_off(block, lines - 1, content, mapping)
     holes = {k: np.flatnonzero(np.isnan(cells[k])) for k in numbers - dirty} if words else {}
-    if sum(map(len, holes.values())) < lines * FEW_HOLES:
-        unread = {k: np.array([i for i in rows.tolist() if content(i, k)], dtype=int) for k, rows in holes.items()}
-    else:
+    if sum(map(len, holes.values())) >= lines * FEW_HOLES:  # most are empty: only those that are not get looked at
         marks = _parse(block.data, mapping, len(first), set(), {})
-        unread = {k: rows[_bytes(marks[k])[rows] != 0] for k, rows in holes.items()}
+        holes = {k: rows[_bytes(marks[k])[rows] != 0] for k, rows in holes.items()}
+    unread = {k: {i: text for i in rows.tolist() if (text := content(i, k))} for k, rows in holes.items()}
     return Block(np.arange(lines, dtype=np.int64), lines, cells, spoiled, content, block.fraction, block.spoiled,
                  unread)
 
@@ -169,16 +169,18 @@ def _texts(column: pd.Series) -> np.ndarray:
 
 
 def _content(data: bytes, delimiter: str) -> Callable[[int, int | None], str]:
-    """Look up the text of a cell (or, with None, of the row); the block is only split when asked."""
-    lines: list[bytes] = []
+    """Look up the text of a cell (or, with None, of the row); where lines end is only looked for when asked."""
+    ends = None
 
     def content(index: int, position: int | None) -> str:
-        if not lines:
-            lines.extend(data.split(b"\n"))
-        line = lines[index].decode("utf-8", "replace").rstrip("\r")
+        nonlocal ends
+        if ends is None:
+            ends = np.append(np.flatnonzero(np.frombuffer(data, np.uint8) == 10), len(data))
+        start = int(ends[index - 1]) + 1 if index else 0
+        line = data[start:int(ends[index])].decode("utf-8", "replace").rstrip("\r")
         if position is None:
             return line
-        cells = next(split_rows([line], delimiter))[1] or [line]
+        cells = line.split(delimiter) if '"' not in line else next(split_rows([line], delimiter))[1] or [line]
         return cells[position].strip() if position < len(cells) else ""
 
     return content
