@@ -20,7 +20,7 @@ from engine.measurement.logbook_numbers import (
     plain_numbers,
     read_number,
 )
-from engine.measurement.logbook_sheet import UncomputedFormula
+from engine.measurement.logbook_sheet_rows import UncomputedFormula
 from engine.measurement.logbook_table import Block, Words
 from engine.measurement.logbook_time import (
     COUNTS,
@@ -38,6 +38,7 @@ IMPOSSIBLE = "outside what this channel can be"
 HEADING_AGAIN = "the heading again"
 COMMENT = "a comment line"
 NO_READING = "no reading in this row"
+_PLAIN = frozenset((float, int, type(None)))  # a truth value is no number
 _APOSTROPHE = re.compile(r"^'(?=[=+\-@])")  # written in front of text that must not become a formula
 
 
@@ -197,7 +198,10 @@ def _numbers(done: Worked, column: Column, mapping: Mapping) -> np.ndarray:
 
 def _careful_numbers(done: Worked, column: Column, mapping: Mapping, cells: np.ndarray) -> np.ndarray:
     """Together where no doubt is possible, the rest cell by cell."""
-    plain = plain_numbers(cells.tolist(), mapping.decimal) if mapping.delimiter else None
+    if mapping.delimiter:
+        plain = plain_numbers(cells.tolist(), mapping.decimal)
+    else:  # of a sheet: numbers as they are; numpy takes None for NaN
+        plain = cells.tolist() if _PLAIN.issuperset(map(type, cells)) else None
     numbers = np.full(cells.size, np.nan) if plain is None else np.array(plain, dtype=float)
     numbers[np.isin(numbers, NO_VALUE_CODES)] = np.nan
     for i in map(int, np.flatnonzero(np.isnan(numbers) & done.alive)):

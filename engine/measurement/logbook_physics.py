@@ -41,8 +41,8 @@ def physics_suspicions(rows: np.ndarray, channels: Channels, columns: Columns) -
                 for name in ("p_line", "p_exhaust") if name in middle}
     everywhere = ((int(rows[0]), int(rows[-1])),) if rows.size else ()
 
-    def suspect(kind: str, channel: str, sentence: str, remedy: str) -> Suspicion:
-        return Suspicion(kind, channel, sentence, everywhere, rows.size, remedy)
+    def suspect(kind: str, channel: str, sentence: str, remedy: str, *mend: str) -> Suspicion:
+        return Suspicion(kind, channel, sentence, everywhere, rows.size, remedy, mend)
 
     found = _basis(thin, middle, absolute, columns, p_air, suspect)
     found += _swapped(middle, absolute, suspect)
@@ -92,13 +92,14 @@ def _basis(thin: Channels, middle, absolute: Channels, columns: Columns, p_air: 
             found.append(suspect(
                 "gauge taken for absolute", "p_exhaust", f"the exhaust pressure is said to be absolute, but stands at "
                 f"{_shown(value, column)}: an exhaust to air reads about this on a gauge",
-                "say that the exhaust pressure is gauge, unless it discharges into a vacuum"))
+                "say that the exhaust pressure is gauge, unless it discharges into a vacuum", "basis", "gauge"))
         low, high = EXHAUST_ABSOLUTE_BAND
         if column.basis == "gauge" and low <= value <= high:
             found.append(suspect(
                 "absolute taken for gauge", "p_exhaust", f"the exhaust pressure is said to be gauge, but stands at "
                 f"{_shown(value, column)}, which is what the atmosphere itself measures",
-                "say that the exhaust pressure is absolute, unless there really is such a back pressure"))
+                "say that the exhaust pressure is absolute, unless there really is such a back pressure",
+                "basis", "absolute"))
     if "p_line" in absolute and "T_line" in middle:
         column = columns["p_line"]
         said = _median(_saturation(absolute["p_line"]) - thin["T_line"])
@@ -111,7 +112,8 @@ def _basis(thin: Channels, middle, absolute: Channels, columns: Columns, p_air: 
                 f"{right} taken for {wrong}", "p_line", f"taken as {wrong}, the line pressure saturates "
                 f"{abs(said):.1f} K {side} the line temperature; taken as {right}, it agrees within "
                 f"{max(abs(other), 0.1):.1f} K",
-                f"say that the line pressure is {right}, unless the line is superheated or its thermometer is wrong"))
+                f"say that the line pressure is {right}, unless the line is superheated or its thermometer is wrong",
+                "basis", right))
     return found
 
 
@@ -154,7 +156,7 @@ def _unit(name: str, middle, absolute: Channels, column: Column, suspect) -> lis
     usual = " to ".join(_digits(from_si(x, column.unit, channel.kind)) for x in channel.usual)
     fits = f"; in {' or '.join(fitting)} it would be an ordinary one" if fitting else ""
     return [suspect("unit", name, f"the {channel.label} stands at {_digits(written)} {column.unit}, where {usual} is "
-                    f"usual{fits}", "check the unit of this column")]
+                    f"usual{fits}", "check the unit of this column", *_only(fitting))]
 
 
 def _unit_by_temperature(middle, absolute: Channels, column: Column, suspect) -> list[Suspicion]:
@@ -170,7 +172,13 @@ def _unit_by_temperature(middle, absolute: Channels, column: Column, suspect) ->
     if not fitting:
         return []
     return [suspect("unit", "p_line", f"the line pressure of {_digits(written)} {column.unit} does not belong to the "
-                    f"line temperature; in {' or '.join(fitting)} it would", "check the unit of this column")]
+                    f"line temperature; in {' or '.join(fitting)} it would", "check the unit of this column",
+                    *_only(fitting))]
+
+
+def _only(fitting: list[str]) -> tuple[str, ...]:
+    """The mend, where one unit alone fits."""
+    return ("unit", fitting[0]) if len(fitting) == 1 else ()
 
 
 def _temperature_unit(name: str, values: np.ndarray, rows: np.ndarray, absolute: Channels,
@@ -195,11 +203,13 @@ def _temperature_unit(name: str, values: np.ndarray, rows: np.ndarray, absolute:
     if not best.any():
         return []
     where, count = ranges(rows, best)
-    part = "" if count > 0.5 * values.size else " in these rows"
+    whole = count > 0.5 * values.size
+    part = "" if whole else " in these rows"
     return [Suspicion(
         f"{best_unit} in a {column.unit} column", name, f"the {CHANNELS[name].label}, about "
         f"{_shown(_median(values[best]), column)}, does not fit the rest of the log{part}; read as {best_unit} it does",
-        where, count, f"check the unit of this column: {best_unit} rather than {column.unit}?")]
+        where, count, f"check whether the unit of this column is {best_unit} rather than {column.unit}",
+        ("unit", best_unit) if whole else ())]
 
 
 def _expected(name: str, absolute: Channels) -> tuple[float, float]:

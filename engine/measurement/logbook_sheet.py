@@ -1,9 +1,8 @@
 """A workbook (XLSX) as a log: guarded against what a small file can unpack to, values only.
 
-The workbook is read in openpyxl's streaming mode. Formulas are never computed: a formula cell gives
-the value that was stored with it, or is listed when none was. Before anything is unpacked the sizes
-that the archive states are checked, and a document type declaration, with which a few bytes of XML
-can grow without end, is refused.
+Formulas are never computed: a formula cell gives the value that was stored with it, or is listed when
+none was. Before anything is unpacked the sizes that the archive states are checked, and a document type
+declaration, with which a few bytes of XML can grow without end, is refused.
 """
 
 from __future__ import annotations
@@ -11,13 +10,14 @@ from __future__ import annotations
 import datetime as dt
 import itertools
 import zipfile
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from contextlib import contextmanager
 
 import numpy as np
 
 from engine.measurement.logbook_mapping import Mapping
 from engine.measurement.logbook_propose import Layout, Proposal, Row, propose
+from engine.measurement.logbook_sheet_rows import Formats, sheet_rows
 from engine.measurement.logbook_table import TOO_MANY_CELLS, Block
 from engine.measurement.logbook_text import HEAD_BYTES, Source, refuse
 from engine.steam.errors import InputError
@@ -28,15 +28,10 @@ MOST_RATIO = 300  # unpacked over packed; honest sheets stay below about 60
 MOST_PARTS = 5_000
 MOST_COLUMNS = 256
 SPARE_COLUMNS = 4  # beyond the heading, where cells too many are looked for
+_SPARE = [None] * SPARE_COLUMNS
 ROWS_AT_ONCE = 20_000
 SAMPLE_ROWS = 400
 ZIP_MAGIC = b"PK\x03\x04"
-
-
-class UncomputedFormula(str):
-    """The text of a formula cell that carries no stored value."""
-
-    __slots__ = ()
 
 
 def is_workbook(source: Source) -> bool:
@@ -91,43 +86,52 @@ def _check_sizes(source: Source, parts: list[zipfile.ZipInfo]) -> None:
 class Workbook:
     """An open workbook; use as a context manager."""
 
-    def __init__(self, source: Source, *, values: bool = True):
-        self._source, self._values = source, values
+    def __init__(self, source: Source):
+        self._source = source
 
     def __enter__(self):
-        import openpyxl  # only when a workbook is read: who reads none need not wait for it
+        # only when a workbook is read: who reads none need not wait for it
+        from openpyxl.reader.excel import ExcelReader
+        from openpyxl.styles.stylesheet import apply_stylesheet
 
         self._file = self._source.open()
         try:
             with _guarded(self._source, "a workbook that cannot be opened"):
-                self._book = openpyxl.load_workbook(self._file, read_only=True, data_only=self._values,
-                                                    keep_links=False)
+                book = ExcelReader(self._file, read_only=True, data_only=True, keep_links=False)
+                book.read_manifest()
+                book.read_strings()
+                book.read_workbook()
+                apply_stylesheet(book.archive, book.wb)
+                self._archive = book.archive
+                self._parts = {sheet.name: rel.target for sheet, rel in book.parser.find_sheets()
+                               if rel.target in book.valid_files and "chartsheet" not in rel.Type}
+                self._formats = Formats(book.shared_strings, frozenset(book.wb._date_formats),
+                                        frozenset(book.wb._timedelta_formats), book.wb.epoch)
         except InputError:
             self._file.close()
             raise
         return self
 
     def __exit__(self, *_):
-        self._book.close()
+        self._archive.close()
         self._file.close()
-
-    def stated_rows(self, sheet: str) -> int:
-        """The number of rows the sheet claims to have: good for a progress bar, for nothing else."""
-        return (self._book[sheet].max_row or 1) if sheet in self.sheets else 1
 
     @property
     def sheets(self) -> list[str]:
-        return [s.title for s in self._book.worksheets]
+        return list(self._parts)
 
-    def rows(self, sheet: str, first: int = 1, columns: int = MOST_COLUMNS) -> Iterator[tuple[int, tuple]]:
-        """(row number, values of that many columns) of a sheet's rows."""
-        if sheet not in self.sheets:
+    def rows(self, sheet: str, first: int = 1, columns: int = MOST_COLUMNS,
+             seen: Callable[[float], object] = lambda done: None) -> Iterator[tuple[int, list]]:
+        """(row number, values of that many columns) of a sheet's rows; ``seen`` is told the part read, 0 to 1."""
+        if sheet not in self._parts:
             raise refuse(self._source.name, f"no sheet {sheet!r}", hint="choose one of the workbook's sheets",
                          needs="one of: " + ", ".join(self.sheets))
-        with _guarded(self._source, f"a damaged sheet {sheet!r}"):
-            table = self._book[sheet]
-            table.reset_dimensions()  # the stated size of a sheet is not to be believed
-            yield from enumerate(table.iter_rows(first, None, 1, columns, values_only=True), first)
+        with _guarded(self._source, f"a damaged sheet {sheet!r}"), self._archive.open(self._parts[sheet]) as part:
+            size = max(self._archive.getinfo(self._parts[sheet]).file_size, 1)
+            for number, values in sheet_rows(part, self._formats, first, columns):
+                if number % ROWS_AT_ONCE == 0:
+                    seen(min(part.tell() / size, 1.0))
+                yield number, values
 
 
 def cell_text(value: object) -> str:
@@ -180,59 +184,33 @@ def propose_sheet(source: Source, layout: Layout) -> Proposal:
 
 def sheet_table(source: Source, mapping: Mapping) -> Iterator[Block]:
     """The rows of a workbook's sheet below its heading."""
+    done = 0.0
+
+    def seen(part: float) -> None:
+        nonlocal done
+        done = part
+
     with Workbook(source) as book:
-        total = book.stated_rows(mapping.sheet)
-        rows = book.rows(mapping.sheet, mapping.first_line, len(mapping.columns) + SPARE_COLUMNS)
-        formulas = _Formulas(source, mapping)
+        rows = book.rows(mapping.sheet, mapping.first_line, len(mapping.columns) + SPARE_COLUMNS, seen)
         while chunk := list(itertools.islice(rows, ROWS_AT_ONCE)):
-            yield _block(chunk, mapping, formulas, min(chunk[-1][0] / max(total, chunk[-1][0]), 1.0))
+            yield _block(chunk, mapping, done)
 
 
-def _block(chunk: list[tuple[int, tuple]], mapping: Mapping, formulas: _Formulas, fraction: float) -> Block:
+def _block(chunk: list[tuple[int, list]], mapping: Mapping, fraction: float) -> Block:
     rows = np.array([number for number, _ in chunk], dtype=np.int64)
     width = len(mapping.columns)
-    cells, blank = {}, np.array([all(v is None for v in values) for _, values in chunk])
+    cells = {}
     for column in mapping.used.values():
-        k = column.position
         values = np.empty(len(chunk), dtype=object)
-        values[:] = [v[k] if k < len(v) else None for _, v in chunk]
-        empty = np.array([v is None for v in values]) & ~blank
-        if empty.any():
-            formulas.fill(rows, k, values, empty)
-        cells[k] = values
+        values[:] = [v[column.position] for _, v in chunk]
+        cells[column.position] = values
     spoiled = [(i, cell_text(next(v for v in values[width:] if v is not None)), TOO_MANY_CELLS)
-               for i, (_, values) in enumerate(chunk) if any(v is not None for v in values[width:])]
+               for i, (_, values) in enumerate(chunk) if values[width:] != _SPARE]
 
     def content(index: int, position: int | None) -> str:
         values = chunk[index][1]
         if position is None:
             return " | ".join(map(cell_text, values)).rstrip(" |")
-        given = cells[position][index]
-        return str(given) if isinstance(given, UncomputedFormula) else cell_text(given)
+        return cell_text(values[position])
 
     return Block(rows, 0, cells, spoiled, content, fraction)
-
-
-class _Formulas:
-    """Finds out which empty cells hold a formula, by walking the sheet a second time where it is needed."""
-
-    def __init__(self, source: Source, mapping: Mapping):
-        self._source, self._mapping, self._known = source, mapping, None
-
-    def fill(self, rows: np.ndarray, position: int, values: np.ndarray, empty: np.ndarray) -> None:
-        if self._known is None:
-            self._known = self._all()
-        for i in np.flatnonzero(empty):
-            text = self._known.get((int(rows[i]), position))
-            if text is not None:
-                values[i] = UncomputedFormula(text)
-
-    def _all(self) -> dict[tuple[int, int], str]:
-        wanted = [c.position for c in self._mapping.used.values()]
-        found = {}
-        with Workbook(self._source, values=False) as book:
-            for number, values in book.rows(self._mapping.sheet, self._mapping.first_line, max(wanted) + 1):
-                for k in wanted:
-                    if k < len(values) and isinstance(values[k], str) and values[k].startswith("="):
-                        found[number, k] = values[k]
-        return found

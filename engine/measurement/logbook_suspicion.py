@@ -10,7 +10,11 @@ MOST_RANGES = 50
 
 
 class Suspicion(NamedTuple):
-    """Something that looks wrong: ``rows`` are (first, last) row numbers in the file, ``count`` all rows meant."""
+    """Something that looks wrong: ``rows`` are (first, last) row numbers in the file, ``count`` all rows meant.
+
+    ``mend`` is ("unit", …) or ("basis", …), what the whole column would have to be for nothing to look wrong;
+    empty where that is not known.
+    """
 
     kind: str
     channel: str
@@ -18,6 +22,7 @@ class Suspicion(NamedTuple):
     rows: tuple[tuple[int, int], ...]
     count: int
     remedy: str
+    mend: tuple[str, ...] = ()
 
     def __str__(self) -> str:
         return f"{self.sentence} ({self.where}): {self.remedy}" if self.rows else f"{self.sentence}: {self.remedy}"

@@ -8,10 +8,11 @@ from dataclasses import replace
 import streamlit as st
 
 from engine.job.result.intake import assigned
+from engine.job.result.runs import told_of
 from engine.measurement.logbook_mapping import Mapping
 from engine.measurement.logbook_words import BASES, CHANNELS, PRESSURES, recognise, units_of
 from engine.screen import logs, session
-from engine.screen.style import escaped
+from engine.screen.style import escaped, escaped_lines
 from engine.steam.errors import InputError
 
 _ALWAYS = ("time", "p_line", "p_exhaust", "T_exhaust")
@@ -19,41 +20,53 @@ _UNITS_SAID = {"clock": "h:min:s", "stamp": "date and time", "mm:ss": "min:s", "
                "unix": "seconds since 1970", "unix ms": "milliseconds since 1970", "": "choose"}
 _ORDERS = {"dmy": "day, month, year", "mdy": "month, day, year", "ymd": "year, month, day", "": "choose"}
 _DECIMALS = {".": "point", ",": "comma", "": "choose"}
+_WIDTHS = (2, 5, 2, 3)  # of what a channel is, its column, unit, gauge or absolute
 _SAMPLES = 3  # cells shown beside a heading
 
 
+def confirm(one: logs.Held) -> None:
+    """The button that takes the columns as they are; beside it the way back where others were taken before."""
+    st.button("Read with these columns", key=f"confirm {one.name}", type="primary", on_click=logs.confirm,
+              args=(one.name,), disabled=bool(one.mapping.questions), width="stretch",
+              help="What the columns are is remembered in the case, for this log and the next one like it.")
+    if told_of(session.case(), one.name) and one.data:
+        st.button("As they were", key=f"as before {one.name}", on_click=logs.as_told, args=(one.name,),
+                  width="stretch", help="Back to the columns with which this log was read.")
+
+
 def columns(one: logs.Held) -> None:
-    """The columns of one log, with the questions that only a person can answer, and the button that confirms."""
+    """The columns of one log: first what only a person can answer, then what each seems to be."""
     mapping = one.mapping
+    if mapping.questions:
+        st.warning(escaped_lines("\n".join(_upper_first(question.text) for question in mapping.questions)))
+    for note in one.layout.notes if one.layout else ():
+        st.caption(escaped(_upper_first(note)))
     used = [name for name in CHANNELS if name in mapping.used or name in _ALWAYS]
-    for channel in used:
-        _channel(one, channel)
+    with st.container(gap="xsmall"):
+        for channel in used:
+            _channel(one, channel)
+        _whole_file(one)
     others = [name for name in CHANNELS if name not in used]
     with st.expander("More channels: " + ", ".join(CHANNELS[name].label for name in others)):
         for channel in others:
             _channel(one, channel)
-    _whole_file(one)
-    for question in mapping.questions:
-        st.warning(escaped(_upper_first(question.text)))
-    for note in one.layout.notes if one.layout else ():
-        st.caption(escaped(_upper_first(note)))
-    with st.expander("First rows as they stand in the file"):
-        _preview(one)
-    st.button("Read with these columns", key=f"confirm {one.name}", type="primary", on_click=logs.confirm,
-              args=(one.name,), disabled=bool(mapping.questions) or one.confirmed,
-              help="What the columns are is remembered in the case, for this log and the next one like it.")
+    if one.layout and one.layout.preview:
+        with st.expander("First rows as they stand in the file"):
+            _preview(one)
 
 
 def _channel(one: logs.Held, channel: str) -> None:
     """Which column a channel is in, its unit, and for a pressure gauge or absolute."""
     mapping, column = one.mapping, one.mapping.used.get(channel)
     label = CHANNELS[channel].label.capitalize()
-    where, unit, basis = st.columns([5, 2, 3], vertical_alignment="bottom")
+    name, where, unit, basis = st.columns(_WIDTHS, vertical_alignment="center")
+    name.markdown(label)
     with where:
         key = f"column of {channel} in {one.name}"
         positions = [None, *range(len(mapping.columns))]
         session.mirror(key, column.position if column else None)
-        st.selectbox(label, positions, key=key, format_func=lambda k: _heading(one, k),
+        st.selectbox(label, positions, key=key, format_func=lambda k: _heading(one, k), label_visibility="collapsed",
+                     placeholder=_heading(one, None),
                      on_change=_changed(one, key, lambda value: _moved(mapping, channel, value)))
     if column is None:
         return
@@ -96,19 +109,19 @@ def _whole_file(one: logs.Held) -> None:
     mapping = one.mapping
     open_items = {question.item for question in mapping.questions}
     dated = any(c.unit in ("stamp", "date") for c in mapping.used.values())
-    left, right = st.columns(2)
-    with left:
-        _one_of(one, "decimal", "Decimal sign", _DECIMALS, "decimal" in open_items)
+    _one_of(one, "decimal", "Decimal sign", _DECIMALS, "decimal" in open_items)
     if dated:
-        with right:
-            _one_of(one, "date_order", "Order of dates", _ORDERS, "date_order" in open_items)
+        _one_of(one, "date_order", "Order of dates", _ORDERS, "date_order" in open_items)
 
 
 def _one_of(one: logs.Held, item: str, label: str, words: dict[str, str], asked: bool) -> None:
     key = f"{item} of {one.name}"
     session.mirror(key, getattr(one.mapping, item))
-    st.selectbox(label, [o for o in words if o or asked], key=key, format_func=lambda o: words[o],
-                 on_change=_changed(one, key, lambda value: replace(one.mapping, **{item: value})))
+    name, where, _ = st.columns((_WIDTHS[0], _WIDTHS[2], _WIDTHS[1] + _WIDTHS[3]), vertical_alignment="center")
+    name.markdown(label)
+    where.selectbox(label, [o for o in words if o or asked], key=key, format_func=lambda o: words[o],
+                    label_visibility="collapsed",
+                    on_change=_changed(one, key, lambda value: replace(one.mapping, **{item: value})))
 
 
 def _changed(one: logs.Held, key: str, new: Callable[[object], Mapping]) -> Callable[[], None]:

@@ -16,7 +16,7 @@ from engine.job.case import Case
 from engine.job.case.fields import FIELDS
 from engine.job.result import Result, reduce
 from engine.job.result.intake import Layout, layout_of
-from engine.job.result.runs import Run, remembered, run_of_log, runs_typed
+from engine.job.result.runs import Run, remembered, run_of_log, runs_typed, told_of
 from engine.job.uncertainty import Check, check
 from engine.measurement.logbook import Log, read_log
 from engine.measurement.logbook_mapping import Mapping
@@ -25,6 +25,7 @@ from engine.screen.style import escaped
 from engine.steam.errors import InputError
 
 DRAWS = 1_000_000
+_LONG, _LONG_SHEET = 1_000_000, 100_000  # bytes of a log that takes time to read; a workbook is packed
 _ASIDE = ("identity", "reach", "run sheet")  # groups of entries that no result rests on
 
 
@@ -32,7 +33,8 @@ _ASIDE = ("identity", "reach", "run sheet")  # groups of entries that no result 
 class Held:
     """A log as brought: its bytes, what its columns are taken for, and once that is confirmed what was read.
 
-    ``refused`` says why it cannot be read; "" where it can, or has not been tried.
+    ``refused`` says why it cannot be read; "" where it can, or has not been tried. ``told`` is what the case
+    remembered of its columns when they were taken.
     """
 
     name: str
@@ -42,6 +44,7 @@ class Held:
     confirmed: bool = False
     log: Log | None = None
     refused: str = ""
+    told: str = ""
 
     def file(self) -> BytesIO:
         """The bytes as a file that knows its name."""
@@ -76,7 +79,8 @@ def bring(name: str, data: bytes) -> None:
     log = Held(name, data, None, None)
     try:
         layout = layout_of(session.case(), log.file())
-        logs[name] = replace(log, layout=layout, mapping=layout.mapping, confirmed=layout.remembered)
+        logs[name] = replace(log, layout=layout, mapping=layout.mapping, confirmed=layout.remembered,
+                             told=told_of(session.case(), name))
     except InputError as error:
         logs[name] = replace(log, refused=str(error))
 
@@ -91,8 +95,40 @@ def upload(key: str) -> Callable[[], None]:
 
 
 def drop(name: str) -> None:
-    """Take a log out of the session; what the case says of it stays."""
-    held().pop(name, None)
+    """Take a log out of the session, for the time being; what the case says of it stays."""
+    st.session_state["dropped"] = held().pop(name, None)
+
+
+def dropped() -> Held | None:
+    """The log taken out last, while it can still be brought back."""
+    one = st.session_state.get("dropped")
+    return one if one is not None and one.name not in held() else None
+
+
+def bring_back() -> None:
+    """The log taken out last, as it was."""
+    one = dropped()
+    if one is not None:
+        held()[one.name] = one
+        st.session_state["dropped"] = None
+
+
+def as_told(name: str) -> None:
+    """The columns of a log as the case remembers them."""
+    one = held()[name]
+    layout = layout_of(session.case(), one.file())
+    held()[name] = replace(one, layout=layout, mapping=layout.mapping, confirmed=layout.remembered, log=None,
+                           refused="", told=told_of(session.case(), name))
+
+
+def _follow(name: str) -> None:
+    """Where the case says something else of a log's columns than when they were taken (undo), take that."""
+    one, told = held()[name], told_of(session.case(), name)
+    if told and told != one.told and one.data and one.layout is not None:
+        try:
+            as_told(name)
+        except InputError as error:
+            held()[name] = replace(one, refused=str(error), told=told)
 
 
 def change_mapping(name: str, mapping: Mapping) -> None:
@@ -103,9 +139,9 @@ def change_mapping(name: str, mapping: Mapping) -> None:
 def confirm(name: str) -> None:
     """Take the columns as they are now, and remember them in the case; logs of the same layout follow."""
     log = held()[name]
-    held()[name] = replace(log, confirmed=True, log=None, refused="")
     st.session_state["intake open"] = False  # what it was opened for is done
     session.change(remembered(session.case(), name, log.mapping))
+    held()[name] = replace(log, confirmed=True, log=None, refused="", told=told_of(session.case(), name))
     for other, one in held().items():
         if not one.confirmed and one.layout is not None and not one.layout.remembered and not one.refused:
             layout = layout_of(session.case(), one.file())
@@ -113,12 +149,20 @@ def confirm(name: str) -> None:
                 held()[other] = replace(one, layout=layout, mapping=layout.mapping, confirmed=True)
 
 
+def correct(name: str, mapping: Mapping) -> None:
+    """Read a log anew with other columns, and remember them: taken back by undo."""
+    change_mapping(name, mapping)
+    confirm(name)
+
+
 def read_in(name: str) -> Held:
     """Read a log that is confirmed and not read yet, with a progress bar where it is long."""
+    _follow(name)
     one = held()[name]
     if not one.confirmed or one.log is not None or one.refused or one.mapping.questions:
         return one
-    bar = st.progress(0.0, f"Reading {escaped(name)}") if len(one.data) > 1_000_000 else None
+    long = len(one.data) > (_LONG_SHEET if _is_sheet(one) else _LONG)
+    bar = st.progress(0.0, f"Reading {escaped(name)}") if long else None
     try:
         log = read_log(one.file(), one.mapping, progress=_now_and_then(bar.progress) if bar else None)
         held()[name] = replace(one, log=replace(log, name=name))
@@ -127,6 +171,10 @@ def read_in(name: str) -> Held:
     if bar:
         bar.empty()
     return held()[name]
+
+
+def _is_sheet(one: Held) -> bool:
+    return bool(one.mapping and one.mapping.sheet)
 
 
 def read_all() -> None:

@@ -33,6 +33,7 @@ from engine.steam.units import to_si
 ALL, WINDOW = "All of the run", "The window used"
 AT_ONCE = 5  # rows of a table of readings that lie apart
 LONGEST, BY_HAND = "The longest settled window", "By hand"
+MOST_OFFERED = 6  # settled stretches to choose among by hand
 LEGEND = (("green", "solid", "settled stretches, shaded"), ("blue", "solid", "frame: the window used"),
           ("text", "dotted", "saturation at the exhaust"), ("vermilion", "solid", "quality of every row"),
           ("blue", "solid", "line: quality of the means, band ± U"), ("pink", "solid", "× lies apart, ○ left out"))
@@ -111,10 +112,27 @@ def _by_hand(run: RunResult, chosen) -> None:
         session.mirror(keys[part], value)
         place.number_input("From, min" if part == "begin" else "To, min", value=None, step=1.0, format="%.7g",
                            key=keys[part], on_change=changed)
+    _settled_stretches(run, chosen["reason"])
     session.mirror(keys["reason"], chosen["reason"])
     st.text_input("Reason for this window", key=keys["reason"], max_chars=300, on_change=changed,
                   placeholder="needed: what was known of the plant")
     st.caption(f"The run lasts from {first:.4g} to {last:.4g} min.")
+
+
+def _settled_stretches(run: RunResult, reason: str) -> None:
+    """The longest settled stretches, each a click away."""
+    stretches = sorted(run.settling.found, key=lambda i: i.begin - i.end)[:MOST_OFFERED]
+    if not stretches:
+        return
+    st.caption("Settled stretches found:")
+    with st.container(horizontal=True):
+        for k, one in enumerate(sorted(stretches, key=lambda i: i.begin)):
+            st.button(f"{one.begin / 60:.1f} to {one.end / 60:.1f} min", key=f"stretch {k} of {run.run.name}",
+                      on_click=_take_stretch, args=(run.run.name, one.begin, one.end, reason))
+
+
+def _take_stretch(name: str, begin: float, end: float, reason: str) -> None:
+    session.change(with_window(session.case(), name, begin, end, reason))
 
 
 # ---- outliers

@@ -35,7 +35,8 @@ def sets() -> None:
     for fault in state[_FAULTS]:
         st.error(escaped_lines(str(fault)))
     st.caption("One set a row, all gauges read within a few seconds. Rows with the same word under Run are one run; "
-               "times are minutes from its start. A column can be pasted from a spreadsheet.")
+               "times are minutes from its start. A column can be pasted from a spreadsheet. Beside log files, "
+               "the sets count as further runs of the same test.")
 
 
 def _typed(key: str) -> None:

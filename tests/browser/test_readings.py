@@ -22,7 +22,7 @@ def readings(app_address, visit):
         if window.get("phone"):
             page.get_by_test_id("stExpandSidebarButton").click()
         page.get_by_role("link", name="Readings", exact=True).click()
-        page.wait_for_selector(".st-key-readings_answer h3")
+        page.wait_for_selector(".st-key-readings_headline h3")
         if window.get("phone"):
             page.get_by_test_id("stSidebarCollapseButton").locator("button").click()
         settle(page)
@@ -57,18 +57,18 @@ def confirm(page):
 
 
 def headline(page):
-    return page.locator(".st-key-readings_answer h3").first
+    return page.locator(".st-key-readings_headline h3").first
 
 
 def says(page, words):
-    page.locator(".st-key-readings_answer h3").get_by_text(re.compile(words)).first.wait_for()
+    page.locator(".st-key-readings_headline h3").get_by_text(re.compile(words)).first.wait_for()
 
 
 def test_a_clean_log_from_upload_to_decision(readings):
     page = readings()
     says(page, "No quality can be given yet")
     bring(page, "run1.csv", a_log())
-    page.get_by_text("columns to be confirmed").wait_for()
+    page.get_by_text("· columns to be confirmed").wait_for()
     confirm(page)
     says(page, r"Quality 0\.97\d\d ± 0\.0058, wetness 2\.\d\d ± 0\.58 %\.")
     page.get_by_role("heading", name="◇ undecided with sampling").wait_for()

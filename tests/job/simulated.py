@@ -84,7 +84,11 @@ def channels_of(case, x, *, minutes=60.0, step=10.0, warm_up=0.0, tau=360.0, lag
 
 def log_of(case, x, **how):
     """The same written as a file and read back."""
-    time, shown, basis = channels_of(case, x, **how)
+    return log_from(*channels_of(case, x, **how))
+
+
+def log_from(time, shown, basis):
+    """Channels written as a file and read back."""
     target = io.BytesIO()
     write_log(target, shown, time=time, basis=basis)
     return read_log(target.getvalue())

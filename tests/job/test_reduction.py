@@ -5,7 +5,7 @@ from dataclasses import replace
 import numpy as np
 import pytest
 from scenarios import BOILER, FACTORY, FULL, GEOTHERMAL, HIGH_SITE, TEN, sets, typed
-from simulated import channels_of, instrument_errors, log_of, noise
+from simulated import channels_of, instrument_errors, log_from, log_of, noise
 
 from engine.calorimeter import MassBasis, Status, exhaust_temperature
 from engine.job.assessment import assess
@@ -183,6 +183,15 @@ def test_a_window_by_hand_goes_before_what_was_found_and_needs_a_reason():
         reduce(FACTORY.with_(windows=nowhere), [run_of_log(log)])
 
 
+def test_a_window_kept_in_minutes_holds_its_first_and_last_reading():
+    log = log_of(FACTORY, 0.972, step=7.0)
+    for k in range(100, 300, 7):
+        begin, end = float(log.time[k]), float(log.time[k + 90])
+        chosen = row("windows", log=log.name, begin=Entry(begin / 60, "min"), end=Entry(end / 60, "min"))
+        run = reduce_run(FACTORY.with_(windows=chosen), resolve(FACTORY), run_of_log(log))
+        assert run.used.sum() == 91
+
+
 def test_a_creep_too_slow_for_one_window_shortens_what_is_used():
     """0.045 K/min passes every ten minutes, and over two hours the line pressure has left its limits."""
     log = log_of(FACTORY, 0.972, minutes=120.0, ramp=2.5e4, ramp_minutes=120.0)
@@ -320,6 +329,14 @@ def test_a_run_that_cannot_be_read_says_what_can_be_said(T, said):
 def test_a_run_with_many_wet_rows_is_not_averaged_over():
     result = typed(FACTORY, sets([121.0] * 8 + [100.0] * 2))
     assert result.x is None and "In 20% of the readings the exhaust was not superheated" in result.unable[0]
+
+
+def test_an_unsettled_run_with_a_wet_exhaust_says_so():
+    time, shown, basis = channels_of(FACTORY, 0.972, swing=5e4)
+    shown["T_exhaust"] = np.full(time.size, 372.9)
+    run = reduce(FACTORY, [run_of_log(log_from(time, shown, basis))]).runs[0]
+    assert run.unable == "No stretch of this run is settled."
+    assert "in 100% of all its readings the exhaust was not superheated" in run.cautions
 
 
 def test_no_readings_at_all():

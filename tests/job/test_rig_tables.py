@@ -181,3 +181,6 @@ def test_budget_rows_run_from_the_largest_and_add_up():
     shares = [float(row["Share of the variance"].split()[0]) for row in rows]
     assert shares == sorted(shares, reverse=True) and sum(shares) == pytest.approx(100.0, abs=0.5)
     assert rows[0]["From"] == "sampling"
+    alone = budget_rows(forecast(DEMO), SI, with_sampling=False)
+    assert [row["From"] for row in alone] == [row["From"] for row in rows[1:]]
+    assert sum(float(row["Share of the variance"].split()[0]) for row in alone) == pytest.approx(100.0, abs=0.5)

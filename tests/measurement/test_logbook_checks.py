@@ -125,6 +125,7 @@ def test_a_temperature_in_another_unit_than_said(name, meant, said):
     found = the_one(checked(channels, units={name: said}), f"{meant} in a {said} column")
     assert found.channel == name
     assert found.rows == ((2, N + 1),)
+    assert found.mend == ("unit", meant)
 
 
 def test_a_unit_switched_within_the_log():
@@ -133,6 +134,7 @@ def test_a_unit_switched_within_the_log():
     found = the_one(checked(channels), "°F in a °C column")
     assert found.rows == ((122, 181),)
     assert "in these rows" in found.sentence
+    assert found.mend == ()  # no one unit is that of the whole column
 
 
 def test_without_pressures_a_temperature_is_held_against_an_exhaust_to_air():
@@ -143,7 +145,7 @@ def test_without_pressures_a_temperature_is_held_against_an_exhaust_to_air():
 def test_a_gauge_exhaust_pressure_taken_for_absolute():
     found = the_one(checked(sound(), basis={"p_exhaust": "absolute"}), "gauge taken for absolute")
     assert found.channel == "p_exhaust"
-    assert "stands at 0.01" in found.sentence
+    assert "stands at 0.01" in found.sentence and found.mend == ("basis", "gauge")
     channels = sound()
     channels["p_exhaust"] = 0.2e5 + channels["p_exhaust"]
     channels["T_exhaust"] = channels["T_exhaust"] - 45.0

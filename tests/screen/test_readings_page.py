@@ -12,16 +12,18 @@ import pytest
 from streamlit.testing.v1 import AppTest
 
 from engine.job.case import BLANK
-from engine.job.case.casefile import to_link
+from engine.job.case.casefile import to_json, to_link
 from engine.job.case.demo import DEMO
 from engine.job.case.fields import FIELDS
 from engine.job.case.fields_modes import NOT_STATED
 from engine.job.case.fields_path import UNDECIDED
 from engine.job.case.rows import Entry
+from engine.job.commands import main
 from engine.job.result import reduce
+from engine.job.result.data import as_json
 from engine.job.result.intake import read
 from engine.job.result.runs import run_of_log
-from engine.job.result.said import headline
+from engine.job.result.said import check_lines, headline
 from engine.measurement.logbook_write import write_log
 from engine.screen import logs
 from engine.screen.style import escaped
@@ -205,6 +207,63 @@ def test_a_log_that_never_settles_says_why_and_a_hand_may_choose_with_a_reason()
     assert case_of(app)["windows"] == () and answer(app).startswith("### ○")
 
 
+def test_a_settled_stretch_is_taken_with_one_click_and_keeps_all_its_readings():
+    app = confirm(bring(opened(), ("run1.csv", a_log())), "run1.csv")
+    longest = app.session_state["reduced"][2].runs[0]
+    app = ran(app.segmented_control(key="window of run1.csv").set_value("By hand"))
+    app = ran(app.number_input(key="begin of the window of run1.csv").set_value(30.0))
+    assert app.session_state["reduced"][2].runs[0].used.sum() < longest.used.sum()
+    app = ran(app.button(key="stretch 0 of run1.csv").click())
+    taken = app.session_state["reduced"][2].runs[0]
+    assert taken.settling.by_hand and taken.used.sum() == longest.used.sum()
+    assert app.session_state["reduced"][2].x == pytest.approx(longest.quality, abs=1e-12)
+
+
+def test_a_column_in_another_unit_is_mended_with_one_click_and_undone():
+    time = np.arange(0, 1801, 10)
+    rows = [f"{t};9,0{t % 7};1,3;{250.0 + 0.1 * (t % 3):.1f}".replace(".", ",") for t in time]
+    app = bring(opened(), ("us.csv", ("t [s];p1 [bar g];p2 [kPa g];T2 [°C]\n" + "\n".join(rows)).encode()))
+    assert "us\\.csv waits for its columns to be confirmed" in told(app)
+    app = confirm(app, "us.csv")
+    assert answer(app).startswith("### ○") and "a unit, or gauge and absolute, looks wrong" in told(app)
+    mend = next(b for b in app.button if b.label == "Read the exhaust temperature as °F")
+    app = ran(mend.click())
+    assert answer(app).startswith("### ● Quality 0\\.97") and "looks wrong" not in told(app)
+    app = ran(app.button(key="undo").click())
+    assert answer(app).startswith("### ○") and "looks wrong" in told(app)
+    app = ran(app.button(key="redo").click())
+    assert answer(app).startswith("### ● Quality 0\\.97")
+
+
+def test_changed_columns_go_back_to_what_they_were_and_a_log_taken_out_comes_back():
+    app = confirm(bring(opened(), ("run1.csv", a_log())), "run1.csv")
+    before = answer(app)
+    app = ran(app.selectbox(key="unit of T_exhaust in run1.csv").set_value("°F"))
+    assert answer(app).startswith("### ○")
+    app = ran(app.button(key="as before run1.csv").click())
+    assert answer(app) == before and app.selectbox(key="unit of T_exhaust in run1.csv").value == "°C"
+    app = ran(app.button(key="drop run1.csv").click())
+    assert answer(app).startswith("### ○")
+    app = ran(app.button(key="bring back").click())
+    assert answer(app) == before and not any(b.key == "bring back" for b in app.button)
+
+
+def test_screen_and_command_give_the_same_digits(tmp_path):
+    """The whole result as JSON, to the last digit, and the sentences, from one log and the case of the screen."""
+    app = confirm(bring(opened(), ("run1.csv", a_log(spike=200))), "run1.csv")
+    (tmp_path / "case.json").write_text(to_json(case_of(app)), encoding="utf-8")
+    (tmp_path / "run1.csv").write_bytes(a_log(spike=200))
+    words = ["reduce", str(tmp_path / "run1.csv"), "--case", str(tmp_path / "case.json"), "--draws", "20000"]
+    by_command, text = io.StringIO(), io.StringIO()
+    assert main([*words, "--json", "-"], by_command, io.StringIO()) == 0
+    on_screen = as_json(app.session_state["reduced"][2], app.session_state["checked"][1])
+    assert json.loads(by_command.getvalue()) == json.loads(on_screen)
+    assert main(words, text, io.StringIO()) == 0
+    assert answer(app).removeprefix("### ") == escaped(text.getvalue().splitlines()[0].removesuffix(" (result)"))
+    for line in check_lines(app.session_state["checked"][1]):
+        assert line in text.getvalue() and escaped(line) in told(app)
+
+
 def test_an_outlier_is_left_out_only_once_it_has_a_reason():
     app = confirm(bring(opened(), ("run1.csv", a_log(spike=200))), "run1.csv")
     with_it = app.session_state["reduced"][2].x
@@ -308,7 +367,5 @@ def test_what_is_saved_is_the_result_on_screen():
     app = opened(DEMO.with_(readings=sets(*TEN)))
     keys = {b.proto.id.split("-")[-1] if hasattr(b, "proto") else "" for b in app.get("download_button")}
     assert {"result json", "runs csv", "rows csv"} <= keys
-    from engine.job.result.data import as_json
-
     data = json.loads(as_json(app.session_state["reduced"][2], app.session_state["checked"][1]))
     assert f"{data['x']:.4f}" in answer(app).replace("\\", "") and data["monte_carlo"]["draws"] == 20_000

@@ -89,9 +89,9 @@ def _as_log(raw: dict[str, Any]) -> Log:
         tuple(map(str, raw["notes"])))
 
 
-def _suspicion(kind, channel, sentence, rows, count, remedy) -> Suspicion:
+def _suspicion(kind, channel, sentence, rows, count, remedy, mend=()) -> Suspicion:
     return Suspicion(str(kind), str(channel), str(sentence), tuple((int(a), int(b)) for a, b in rows), int(count),
-                     str(remedy))
+                     str(remedy), tuple(map(str, mend)))
 
 
 def _column(values: list, size: int) -> np.ndarray:

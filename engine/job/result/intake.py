@@ -10,6 +10,7 @@ from engine.job.case import Case
 from engine.job.result.runs import recalled
 from engine.measurement.logbook import Log, fit_mapping, propose_mapping, read_log
 from engine.measurement.logbook_mapping import Column, Mapping
+from engine.measurement.logbook_suspicion import Suspicion
 from engine.measurement.logbook_text import source_of
 from engine.steam.errors import InputError
 
@@ -54,6 +55,16 @@ def assigned(mapping: Mapping, channel: str, position: int | None, unit: str = "
             column = Column(column.position, column.name)
         columns.append(column)
     return replace(mapping, columns=tuple(columns))
+
+
+def mended(mapping: Mapping, suspicion: Suspicion) -> Mapping | None:
+    """The mapping with the unit or basis by which nothing would look wrong; None where no answer would end it."""
+    column = mapping.used.get(suspicion.channel)
+    if column is None or not suspicion.mend:
+        return None
+    item, value = suspicion.mend
+    column = replace(column, **{item: value})
+    return assigned(mapping, column.channel, column.position, column.unit, column.basis)
 
 
 def read(case: Case, file, answers: Callable[[Mapping], Mapping] | None = None,

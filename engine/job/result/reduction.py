@@ -136,7 +136,8 @@ def reduce_run(case: Case, si: Resolved, run: Run, *, progress: Callable[[float]
     used = window & ~np.isin(run.rows, [number for number, reason in removed.items() if reason])
     common = (run, settling, window, used, removed, _outliers(run, window))
     if unable := _nothing_used(run, settling, window, used):
-        return RunResult(*common, {}, None, None, (), None, rows, x, status, None, unable, run.notes)
+        return RunResult(*common, {}, None, None, (), None, rows, x, status, None, unable,
+                         run.notes + _wet_throughout(run, status))
     means = {name: _mean(values[used]) for name, values in run.channels.items() if np.isfinite(values[used]).any()}
     shown = _shown(case, si, run, {name: m.mean for name, m in means.items()})
     true = corrected(case, si, shown, off)
@@ -259,6 +260,13 @@ def _cautions(run: Run, settling: Settling, means: dict[str, Mean], true: Correc
     if wet:
         said.append(f"in {wet:.1%} of the readings used the exhaust was not superheated")
     return tuple(said) + _by_line_temperature(means, true)
+
+
+def _wet_throughout(run: Run, status: np.ndarray) -> tuple[str, ...]:
+    """What can still be said of a run of which nothing is used."""
+    read = _complete(run)
+    wet = float(np.mean(status[read] == Status.NOT_SUPERHEATED)) if read.any() else 0.0
+    return (f"in {wet:.0%} of all its readings the exhaust was not superheated",) if wet > WET_ROWS else ()
 
 
 def _by_line_temperature(means: dict[str, Mean], true: Corrected) -> tuple[str, ...]:

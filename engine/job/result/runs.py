@@ -132,6 +132,11 @@ def remembered(case: Case, log: str, mapping: Mapping) -> Case:
     return case.with_(mappings=(*kept, column.row(log=log, columns=_brief(mapping))))
 
 
+def told_of(case: Case, log: str) -> str:
+    """What a case remembers of the columns of this very log, as it stands there; "" for nothing."""
+    return next((row["columns"] for row in case["mappings"] if row["log"] == log), "")
+
+
 def recalled(case: Case, log: str) -> Mapping | None:
     """What the case says the columns of a log are: by its name, else as in the log mapped last; None without any.
 

@@ -16,6 +16,7 @@ from engine.steam.units import to_si
 
 LEAST_READINGS = 5
 TESTED = ("T_exhaust", "p_line", "p_exhaust")
+_CLOSE = 1e-6  # s: a window kept in minutes still ends at its last reading
 _SHORTER = 0.85  # by how much an interval that is not settled as a whole gives way at a time
 
 
@@ -127,7 +128,7 @@ def _by_hand(run: Run, channels, limits, chosen: Row, search, unable: str) -> Se
     if run.time is None:  # without a clock, from which reading to which
         raise InputError(Fault("Windows chosen by hand", run.name, "", "a run with a time in every row",
                                hint="type the times, or leave out rows one by one with a reason", name="windows"))
-    used = run.usable & (run.time >= begin) & (run.time <= end)
+    used = run.usable & (run.time >= begin - _CLOSE) & (run.time <= end + _CLOSE)
     if not used.any():
         first, last = run.time[0] / 60, run.time[-1] / 60
         raise InputError(Fault(f"Window chosen by hand in {run.name}", f"{begin / 60:g} to {end / 60:g}", "min",

@@ -41,11 +41,13 @@ def forecast_advice(f: Forecast) -> tuple[str, ...]:
     return (*lines, *(f"{line[0].upper()}{line[1:].rstrip('.')}." for line in f.cautions if line))
 
 
-def budget_rows(f: Forecast | Result, units: UnitSystem) -> list[dict[str, str]]:
-    """The budget of a forecast or of a result line by line, largest first."""
+def budget_rows(f: Forecast | Result, units: UnitSystem, *, with_sampling: bool = True) -> list[dict[str, str]]:
+    """The budget of a forecast or of a result line by line, largest first; shares are of what is listed."""
+    terms = [t for t in largest_first(f) if with_sampling or t.group != SAMPLING]
+    whole = sum(t.share for t in terms) or 1.0
     return [{"From": t.group, "Cause": t.cause, "Standard uncertainty": _u(t, units),
-             "In the quality": points(abs(t.contribution)), "Share of the variance": f"{100 * t.share:.1f} %"}
-            for t in largest_first(f)]
+             "In the quality": points(abs(t.contribution)), "Share of the variance": f"{100 * t.share / whole:.1f} %"}
+            for t in terms]
 
 
 def largest_first(f: Forecast | Result) -> tuple[Term, ...]:

@@ -45,8 +45,9 @@ def decision_diagram(result: Result) -> Diagram | None:
               "xaxis": {"range": [min(points) - pad, max(points) + pad], "gridcolor": "var:grid", "zeroline": False,
                         "ticks": "outside", "nticks": 7, "title": {"text": "x", "standoff": 2}},
               "yaxis": {"range": [1.5, -0.7], "visible": False, "fixedrange": True},
-              "shapes": [{"type": "line", "xref": "x", "yref": "paper", "x0": limit, "x1": limit, "y0": 0, "y1": 1,
-                          "line": {"color": "var:text", "width": 2.5, "dash": "dash"}}],
+              "shapes": [{"type": "line", "xref": "x", "yref": "y", "x0": limit, "x1": limit, "y0": y0, "y1": y1,
+                          "line": {"color": "var:text", "width": 2.5, "dash": "dash"}}
+                         for y0, y1 in ((-0.7, -0.5), (-0.12, 0.5), (0.88, 1.5))],  # not through the words
               "annotations": [{"xref": "x", "yref": "paper", "x": limit, "y": 1.0, "yanchor": "bottom",
                                "text": f"limit {limit:g}", "showarrow": False, "font": {"color": "var:text"}}]}
     return Diagram("decision", "The decision", {"data": traces, "layout": layout}, (0, 1, 2),

@@ -15,8 +15,10 @@ from engine.job.rehearsal.demo_log import demo_log
 from engine.job.result import Result
 from engine.job.result.corrections import case_of, switched_off
 from engine.job.result.data import as_json, run_table, write_rows
+from engine.job.result.intake import mended
 from engine.job.result.said import check_lines, counted, decision_words, rule_text, run_rows, told, upper_first
 from engine.job.uncertainty.forecast_words import budget_rows
+from engine.measurement.logbook_words import CHANNELS
 from engine.screen import entries, live, log_columns, logs, run_view, session, typed
 from engine.screen.charts.decision import decision_diagram, draws_diagram
 from engine.screen.charts.forecast import budget_diagram
@@ -30,7 +32,12 @@ FILES = ["csv", "tsv", "txt", "dat", "log", "asc", "xlsx", "xlsm"]
 # as high with a result as without one, so that the grid stays where it is while sets are typed into it
 _CSS = """
 <style>
-.st-key-readings_answer {min-height: 19rem;}
+.st-key-readings_answer {min-height: 15rem;}
+.st-key-readings_headline h3 {padding: .3rem 0;}
+@media (min-width: 641px) and (min-height: 700px) {  /* what a switch far below does is seen at once */
+  [data-testid="stLayoutWrapper"]:has(> .st-key-readings_headline) {position: sticky; top: 3.75rem; z-index: 50;}
+  [data-testid="stApp"] :has(.st-key-readings_headline), .st-key-readings_headline {background: inherit;}
+}
 </style>
 """
 EVERYTHING, ALONE = "With sampling", "By the instruments alone"
@@ -39,9 +46,9 @@ EVERYTHING, ALONE = "With sampling", "By the instruments alone"
 def page() -> None:
     """The result first, then what it was made from, step by step."""
     st.html(_CSS)
-    top = st.container(key="readings_answer", border=True)
+    headline, top = st.container(key="readings_headline"), st.container(key="readings_answer", border=True)
     _intake()
-    found = _result(top)
+    found = _result(headline, top)
     if found is None:
         return
     _runs(found)
@@ -58,7 +65,7 @@ def page() -> None:
 # ---- the result
 
 
-def _result(top) -> Result | None:
+def _result(headline, top) -> Result | None:
     """The readings reduced; where an entry cannot be used, the refusal, and nothing below it."""
     with top:
         try:
@@ -67,18 +74,18 @@ def _result(top) -> Result | None:
             st.error(escaped_lines(str(error)))
             st.caption("Nothing is lost: correct the entry, or undo.")
             return None
-        _say(found)
+        _say(found, headline)
     return found
 
 
-def _say(found: Result) -> None:
+def _say(found: Result, headline) -> None:
     said = told(found)
     kind = "" if found.final or found.x is None else " Exploration, not a result."
-    st.markdown(f"### {said.shape} {escaped(said.headline)}{kind}")
+    headline.markdown(f"### {said.shape} {escaped(said.headline)}{kind}")
     decided = decision_words(found)
     for place, (word, reason) in zip(st.columns(2) if decided else (), decided, strict=True):
         place.markdown(f"##### {escaped(word)}  \n{escaped(reason)}")
-    for line in said.open_points:
+    for line in (*_waiting(), *said.open_points):
         st.markdown(f"▸ {escaped(line)}")
     st.markdown(escaped(" ".join(said.reasons)))
     for line in found.cautions:
@@ -86,6 +93,19 @@ def _say(found: Result) -> None:
     if found.x is not None and len(found.read) == 1:
         st.button("Take these means as the case's reading", key="take means", on_click=_take_means, args=(found,),
                   help="Line, exhaust and temperature of the case become the corrected means, for the other pages.")
+
+
+def _waiting() -> list[str]:
+    """Logs that do not count yet, and those in which something looks wrong that one answer would mend."""
+    lines = []
+    for one in logs.held().values():
+        if one.refused:
+            lines.append(f"{one.name} cannot be read: see below.")
+        elif not one.confirmed:
+            lines.append(f"{one.name} waits for its columns to be confirmed, below.")
+        elif one.log is not None and any(suspicion.mend for suspicion in one.log.suspicions):
+            lines.append(f"{one.name}: a unit, or gauge and absolute, looks wrong: see below.")
+    return lines
 
 
 def _take_means(found: Result) -> None:
@@ -122,8 +142,11 @@ def _upload() -> None:
     st.file_uploader("Log files, each one run of the test", type=FILES, accept_multiple_files=True, key=key,
                      on_change=logs.upload(key),
                      help="CSV, TSV, semicolons, decimal commas, XLSX. They stay in this session, on this machine.")
-    st.button("Bring an invented log", key="demo log", on_click=_demo_log,
-              help="A simulated test of the open case, with warm-up and noise, to see how this page works.")
+    with st.container(horizontal=True):
+        st.button("Bring an invented log", key="demo log", on_click=_demo_log,
+                  help="A simulated test of the open case, with warm-up and noise, to see how this page works.")
+        if (one := logs.dropped()) is not None:
+            st.button(f"Bring {escaped(one.name)} back", key="bring back", on_click=logs.bring_back)
 
 
 def _demo_log() -> None:
@@ -139,10 +162,13 @@ def _one_log(name: str) -> None:
     """One log: what it is, its columns until they are confirmed, then what was refused and what looks wrong."""
     with st.container(border=True, key=f"log {name}"):
         one = logs.read_in(name)
-        words, button = st.columns([6, 1], vertical_alignment="center")
+        words, take, button = st.columns([5, 2, 1], vertical_alignment="center")
         words.markdown(f"**{escaped(one.name)}** · {_state(one)}")
         button.button("Remove", key=f"drop {one.name}", on_click=logs.drop, args=(one.name,), width="stretch",
                       help="Takes it out of this session. The file is untouched.")
+        if one.mapping is not None and not one.confirmed:
+            with take:
+                log_columns.confirm(one)
         if one.refused:
             st.error(escaped_lines(one.refused))
         if one.mapping is None:
@@ -169,8 +195,12 @@ def _state(one: logs.Held) -> str:
 
 
 def _noticed(one: logs.Held) -> None:
-    for suspicion in one.log.suspicions:
+    for k, suspicion in enumerate(one.log.suspicions):
         st.warning(escaped(upper_first(str(suspicion))) + ".")
+        mapping = mended(one.mapping, suspicion) if one.data else None
+        if mapping is not None:
+            st.button(f"Read the {CHANNELS[suspicion.channel].label} as {suspicion.mend[1]}", on_click=logs.correct,
+                      key=f"mend {k} of {one.name}", args=(one.name, mapping), help="Undo takes it back.")
     if one.log.rejected_counts:
         with st.expander(f"What was refused, {sum(one.log.rejected_counts.values())} in all"):
             st.table([{"Reason": escaped(reason), "Times": str(count)}
@@ -260,7 +290,8 @@ def _uncertainty(found: Result) -> None:
         if diagram is not None:
             live.show((diagram,), key="result budget", height=480, columns=1)
     with right:
-        st.table([{k: escaped(v) for k, v in row.items()} for row in budget_rows(found, session.units())])
+        st.table([{k: escaped(v) for k, v in row.items()}
+                  for row in budget_rows(found, session.units(), with_sampling=shown != ALONE)])
         if found.better:
             best = found.better[0]
             st.caption(f"Half the doubt of the {escaped(best.group)} would bring U by the instruments from "
