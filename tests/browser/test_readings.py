@@ -62,6 +62,7 @@ def headline(page):
 
 def says(page, words):
     page.locator(".st-key-readings_headline h3").get_by_text(re.compile(words)).first.wait_for()
+    settle(page)
 
 
 def test_a_clean_log_from_upload_to_decision(readings):
@@ -99,6 +100,22 @@ def test_a_messy_log_is_read_with_everything_refused_said(readings):
     page.get_by_text("What was refused, 2 in all").click()
     page.get_by_role("cell", name="the instrument says that it has no value").wait_for()
     assert page.locator("b", has_text="lauter").count() == 0  # what a log says is never markup
+
+
+def test_a_wrong_unit_is_mended_and_taken_back(readings):
+    lines = ["t [s],p1 [bar g],p2 [kPa g],T2 [°C]"] + [f"{10 * k},9.0{k % 7},1.3,{250 + 0.1 * (k % 3):.1f}"
+                                                      for k in range(200)]
+    page = readings()
+    bring(page, "us.csv", "\n".join(lines).encode())
+    confirm(page)
+    says(page, "No quality can be given from these readings")
+    page.get_by_role("button", name="Read the exhaust temperature as °F").click()
+    says(page, r"Quality 0\.97")
+    box = page.locator(".st-key-readings_headline").bounding_box
+    page.get_by_role("heading", name="Decision", exact=True).scroll_into_view_if_needed()
+    assert 0 <= box()["y"] < 120  # the result stays in sight
+    page.get_by_role("button", name="Undo").click()
+    says(page, "No quality can be given from these readings")
 
 
 def test_a_hopeless_file_is_refused_and_the_rest_stays(readings):
@@ -150,6 +167,8 @@ def test_sets_are_typed_into_the_grid_with_a_decimal_comma(readings):
     page.get_by_role("tab", name="Typed sets").click()
     grid = page.get_by_test_id("stDataFrame").first
     grid.wait_for()
+    settle(page)
+    page.wait_for_timeout(500)  # the grid is painted some frames after it is there
     box = grid.bounding_box()  # cells are painted: they are found by their place
     page.mouse.click(box["x"] + 660, box["y"] + 35 + 17)
     for text in ("121,0", "121,2", "121,1"):

@@ -32,7 +32,8 @@ FILES = ["csv", "tsv", "txt", "dat", "log", "asc", "xlsx", "xlsm"]
 # as high with a result as without one, so that the grid stays where it is while sets are typed into it
 _CSS = """
 <style>
-.st-key-readings_answer {min-height: 15rem;}
+.st-key-readings_answer {min-height: 17rem;}
+.st-key-readings_headline {padding-bottom: 1rem;}  /* text reaches a little out of its box */
 .st-key-readings_headline h3 {padding: .3rem 0;}
 @media (min-width: 641px) and (min-height: 700px) {  /* what a switch far below does is seen at once */
   [data-testid="stLayoutWrapper"]:has(> .st-key-readings_headline) {position: sticky; top: 3.75rem; z-index: 50;}
