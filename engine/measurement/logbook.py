@@ -74,17 +74,6 @@ class Log:
     def __len__(self) -> int:
         return self.rows.size
 
-    def present(self, *names: str) -> np.ndarray:
-        """Boolean, shape (rows,): where all the named channels (all there are, if none is named) have a reading."""
-        faults = [Fault("channel of a log", n, "", "one of: " + ", ".join(self.channels), name="channel")
-                  for n in names if n not in self.channels]
-        if faults:
-            raise InputError(*faults)
-        mask = np.ones(self.rows.size, dtype=bool)
-        for name in names or self.channels:
-            mask &= ~np.isnan(self.channels[name])
-        return mask
-
     @property
     def missing(self) -> dict[str, int]:
         """Channel -> number of kept rows without a usable reading of it."""

@@ -170,12 +170,8 @@ def test_only_the_time_and_value_of_kept_rows_count_but_remarks_stay():
 def test_a_sparse_channel_keeps_its_rows():
     log = read_log(b"time [s],p1 [bar g],pa [kPa]\n0,9,100.8\n5,9,\n10,9,\n15,9,100.6\n")
     assert log.missing == {"p_line": 0, "p_barometer": 2}
-    assert log.present().tolist() == [True, False, False, True]
-    assert log.present("p_line").all()
     assert log.rejected == ()
     np.testing.assert_allclose(absolute(log).channels["p_line"], 9e5 + 100.8e3 - np.array([0, 200, 400, 600]) / 3)
-    with pytest.raises(InputError, match="channel of a log: got T_line"):
-        log.present("T_line")
 
 
 def test_absolute_takes_one_barometer_or_one_per_row():

@@ -116,11 +116,6 @@ class Assessment:
             return self.case["power_loss"] is None
         return self.case["heat_loss_method"] == UNDECIDED
 
-    @property
-    def p_thermometer(self) -> float:
-        """Pressure where the deciding temperature is taken [Pa]."""
-        return self.heating.p if self.heating is not None else self.si["p_exhaust"]
-
     def in_quality(self, energy: float) -> float:
         """What an energy [J/kg of the steam at the thermometer] is worth in the quality of the line."""
         kept = 1.0 - self.separation.drain_fraction if self.separation is not None else 1.0

@@ -45,12 +45,6 @@ class InstrumentChart:
     def wetness(self) -> np.ndarray:
         return 1.0 - self.x
 
-    @property
-    def per_degree(self) -> float:
-        """How much the quality rises for one degree of ``unit`` [1], in the middle of the chart."""
-        degree = to_si(1.0, self.unit, "temperature") - to_si(0.0, self.unit, "temperature")
-        return (1.0 - self.x_least) / (self.T_dry - self.T_least) * degree
-
 
 def instrument_chart(plan: ReachAssessment, units: UnitSystem) -> InstrumentChart:
     """The chart for a case as planned, with at most ``ROWS`` rows.

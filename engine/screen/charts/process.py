@@ -17,7 +17,6 @@ from engine.screen.charts.background import AXES, HS, PH, TS, Axes, axis_title, 
 from engine.screen.charts.diagram import Diagram
 from engine.steam.units import UnitSystem
 
-PINNED_COLOURS = ("var:green", "var:pink", "var:muted", "var:blue")
 _MARKS = {"Line": "circle", "Throttled steam": "circle-open", "Drained water": "triangle-down",
           "Dries out": "diamond", "Exhaust": "square", "After the heater": "square"}
 

@@ -10,6 +10,7 @@ from engine.job.result import reduce
 from engine.job.result.decisions import with_removed, with_window
 from engine.job.result.runs import Run, runs_typed
 from engine.job.uncertainty import check
+from engine.screen.charts import readings
 from engine.screen.charts.decision import decision_diagram, draws_diagram
 from engine.screen.charts.readings import MOST, decimated, run_diagram
 from engine.steam.units import SI, US
@@ -79,6 +80,13 @@ def test_readings_that_lie_apart_are_marked_and_what_was_left_out_otherwise():
     marks = next(t for t in diagram.figure["data"] if t["name"] == "apart" and t["yaxis"] == "y")
     assert marks["marker"]["symbol"][marks["x"].index(50.0)] == "circle-open"
     assert any("left out, slug" in text for text in marks["text"])
+
+
+def test_of_too_many_that_lie_apart_the_farthest_are_marked(monkeypatch):
+    monkeypatch.setattr(readings, "MARKED", 1)
+    diagram, _ = drawn(run=a_run(spike=300))
+    marks = next(t for t in diagram.figure["data"] if t["name"] == "apart" and t["yaxis"] == "y")
+    assert marks["x"] == [50.0]
 
 
 def test_units_of_the_axes():
