@@ -84,7 +84,9 @@ def test_readings_that_lie_apart_are_marked_and_what_was_left_out_otherwise():
 
 def test_of_too_many_that_lie_apart_the_farthest_are_marked(monkeypatch):
     monkeypatch.setattr(readings, "MARKED", 1)
-    diagram, _ = drawn(run=a_run(spike=300))
+    run = a_run(spike=300)
+    run.channels["T_exhaust"][320] += 1.0  # apart as well, but less
+    diagram, _ = drawn(run=run)
     marks = next(t for t in diagram.figure["data"] if t["name"] == "apart" and t["yaxis"] == "y")
     assert marks["x"] == [50.0]
 
