@@ -34,11 +34,11 @@ from engine.measurement.instruments import (
     stability,
 )
 from engine.measurement.logbook import Log, absolute, fit_mapping, propose_mapping, read_log
-from engine.measurement.logbook_mapping import Column, Mapping, Question
-from engine.measurement.logbook_propose import Proposal
-from engine.measurement.logbook_rows import Rejected, Remark
-from engine.measurement.logbook_suspicion import Suspicion
-from engine.measurement.logbook_write import write_log
+from engine.measurement.logbook.mapping import Column, Mapping, Question
+from engine.measurement.logbook.propose import Proposal
+from engine.measurement.logbook.rows import Rejected, Remark
+from engine.measurement.logbook.suspicion import Suspicion
+from engine.measurement.logbook.write import write_log
 from engine.measurement.montecarlo import Comparison, Difference, MonteCarlo, compare, monte_carlo
 from engine.measurement.outliers import Outliers, flag_outliers, grubbs_critical, thompson_tau
 from engine.measurement.sources import correlations_from_matrix

@@ -9,8 +9,8 @@ import streamlit as st
 
 from engine.job.result.intake import assigned
 from engine.job.result.runs import told_of
-from engine.measurement.logbook_mapping import Mapping
-from engine.measurement.logbook_words import BASES, CHANNELS, PRESSURES, recognise, units_of
+from engine.measurement.logbook.mapping import Mapping
+from engine.measurement.logbook.words import BASES, CHANNELS, PRESSURES, recognise, units_of
 from engine.screen import logs, session
 from engine.screen.style import escaped, escaped_lines
 from engine.steam.errors import InputError

@@ -19,7 +19,7 @@ from engine.job.result.intake import Layout, layout_of
 from engine.job.result.runs import Run, remembered, run_of_log, runs_typed, told_of
 from engine.job.uncertainty import Check, check
 from engine.measurement.logbook import Log, read_log
-from engine.measurement.logbook_mapping import Mapping
+from engine.measurement.logbook.mapping import Mapping
 from engine.screen import session
 from engine.screen.style import escaped
 from engine.steam.errors import InputError

@@ -25,7 +25,7 @@ from engine.job.rehearsal.readings import (
 from engine.job.rehearsal.said import clock, cost, headline, journal, judged, truth
 from engine.job.rehearsal.scenario import HiddenFault
 from engine.job.rehearsal.verdict import verdict_of
-from engine.measurement.logbook_write import write_log
+from engine.measurement.logbook.write import write_log
 from engine.screen import session
 from engine.screen.rehearsal_faces import decimals_of
 from engine.screen.style import escaped, escaped_lines

@@ -10,7 +10,7 @@ from conftest import settle
 from engine.job.case.casefile import to_link
 from engine.job.case.demo import DEMO
 from engine.job.case.fields_path import UNDECIDED
-from engine.measurement.logbook_write import write_log
+from engine.measurement.logbook.write import write_log
 
 
 @pytest.fixture

@@ -9,7 +9,7 @@ from engine.job.assessment.balance import balance_of
 from engine.job.case import resolve
 from engine.job.uncertainty import leg_pressure, prepare, reading_of
 from engine.measurement.logbook import read_log
-from engine.measurement.logbook_write import write_log
+from engine.measurement.logbook.write import write_log
 from engine.steam import saturation_temperature
 
 

@@ -22,7 +22,7 @@ from engine.job.result.intake import read
 from engine.job.result.runs import run_of_log
 from engine.job.result.said import headline
 from engine.measurement.logbook import read_log
-from engine.measurement.logbook_write import write_log
+from engine.measurement.logbook.write import write_log
 
 ROOT = Path(__file__).parents[2]
 

@@ -34,7 +34,7 @@ from engine.job.rig.tables import points
 from engine.job.runsheet import tick
 from engine.job.runsheet.readings import with_reading
 from engine.job.uncertainty import forecast
-from engine.measurement.logbook_suspicion import Suspicion
+from engine.measurement.logbook.suspicion import Suspicion
 from engine.steam.errors import InputError
 from engine.steam.units import SI, US
 

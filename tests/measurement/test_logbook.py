@@ -7,12 +7,12 @@ from functools import partial
 import numpy as np
 import pytest
 
-from engine.measurement import logbook
 from engine.measurement.logbook import absolute, propose_mapping, read_log
-from engine.measurement.logbook_mapping import Column, Mapping
-from engine.measurement.logbook_rows import LISTED_PER_REASON
-from engine.measurement.logbook_table import MOST_WORDS, Words
-from engine.measurement.logbook_text import text_blocks
+from engine.measurement.logbook import reading as logbook
+from engine.measurement.logbook.mapping import Column, Mapping
+from engine.measurement.logbook.rows import LISTED_PER_REASON
+from engine.measurement.logbook.table import MOST_WORDS, Words
+from engine.measurement.logbook.text import text_blocks
 from engine.steam import InputError
 
 P_LINE = [9.01e5, 9.02e5, 9.03e5]

@@ -7,7 +7,7 @@ import numpy as np
 import pytest
 
 from engine.measurement.logbook import read_log
-from engine.measurement.logbook_write import write_log
+from engine.measurement.logbook.write import write_log
 from engine.steam import InputError
 from tests.measurement.broken_logs import HARMLESS, REFUSED, REPORTED
 

@@ -5,8 +5,8 @@ import math
 import numpy as np
 import pytest
 
-from engine.measurement.logbook_numbers import Signs, number_signs, read_number
-from engine.measurement.logbook_time import (
+from engine.measurement.logbook.numbers import Signs, number_signs, read_number
+from engine.measurement.logbook.time import (
     REASONS,
     count_unit,
     date_order,
@@ -14,7 +14,7 @@ from engine.measurement.logbook_time import (
     read_times,
     text_unit,
 )
-from engine.measurement.logbook_words import recognise, unit_of
+from engine.measurement.logbook.words import recognise, unit_of
 
 
 @pytest.mark.parametrize(("cell", "decimal", "thousands", "value"), [

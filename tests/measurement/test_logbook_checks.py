@@ -3,8 +3,8 @@
 import numpy as np
 import pytest
 
-from engine.measurement.logbook_checks import Checked, suspicions
-from engine.measurement.logbook_mapping import Column
+from engine.measurement.logbook.checks import Checked, suspicions
+from engine.measurement.logbook.mapping import Column
 from engine.steam import saturation_temperature
 from engine.steam.units import P_STANDARD, from_si, to_si
 

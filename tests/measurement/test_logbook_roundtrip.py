@@ -7,11 +7,11 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from engine.measurement import logbook_table
 from engine.measurement.logbook import read_log
-from engine.measurement.logbook_cells import work
-from engine.measurement.logbook_mapping import Column, Mapping
-from engine.measurement.logbook_text import TextBlock
+from engine.measurement.logbook import table as logbook_table
+from engine.measurement.logbook.cells import work
+from engine.measurement.logbook.mapping import Column, Mapping
+from engine.measurement.logbook.text import TextBlock
 from engine.steam import InputError
 
 HEADINGS = {

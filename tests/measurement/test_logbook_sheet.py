@@ -8,8 +8,8 @@ import numpy as np
 import openpyxl
 import pytest
 
-from engine.measurement import logbook_sheet
 from engine.measurement.logbook import propose_mapping, read_log
+from engine.measurement.logbook import sheet as logbook_sheet
 from engine.steam import InputError
 
 HEAD = ["Time", "p1 [bar g]", "T2 [°C]", "Remark"]

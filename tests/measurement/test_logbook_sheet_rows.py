@@ -7,9 +7,9 @@ from xml.parsers.expat import ExpatError
 import openpyxl
 import pytest
 
-from engine.measurement.logbook_sheet import Workbook
-from engine.measurement.logbook_sheet_rows import Formats, UncomputedFormula, sheet_rows
-from engine.measurement.logbook_text import source_of
+from engine.measurement.logbook.sheet import Workbook
+from engine.measurement.logbook.sheet_rows import Formats, UncomputedFormula, sheet_rows
+from engine.measurement.logbook.text import source_of
 
 MAIN = "http://schemas.openxmlformats.org/spreadsheetml/2006/main"
 STRICT = "http://purl.oclc.org/ooxml/spreadsheetml/main"

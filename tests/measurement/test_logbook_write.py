@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 
 from engine.measurement.logbook import read_log
-from engine.measurement.logbook_write import write_log
+from engine.measurement.logbook.write import write_log
 from engine.steam import InputError
 
 ALL = {"p_line": ("gauge", 9.01e5), "p_exhaust": ("absolute", 1.021e5), "T_exhaust": ("", 394.25),

@@ -24,7 +24,7 @@ from engine.job.result.data import as_json
 from engine.job.result.intake import read
 from engine.job.result.runs import run_of_log
 from engine.job.result.said import check_lines, headline
-from engine.measurement.logbook_write import write_log
+from engine.measurement.logbook.write import write_log
 from engine.screen import logs
 from engine.screen.style import escaped
 

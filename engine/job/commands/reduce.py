@@ -20,7 +20,7 @@ from engine.job.result.runs import Run, run_of_log, runs_typed
 from engine.job.result.said import check_lines, correction_rows, rule_text, run_rows, told, unsettled_lines
 from engine.job.uncertainty import Check, check
 from engine.measurement.logbook import Log
-from engine.measurement.logbook_mapping import Mapping
+from engine.measurement.logbook.mapping import Mapping
 from engine.steam.errors import Fault, InputError
 from engine.steam.units import SYSTEMS, UnitSystem
 

@@ -16,9 +16,9 @@ from engine.job.result import Result
 from engine.job.result.data import write_rows
 from engine.job.result.runs import Run, run_of_log, runs_typed
 from engine.measurement.logbook import Log
-from engine.measurement.logbook_mapping import Mapping
-from engine.measurement.logbook_rows import Rejected, Remark
-from engine.measurement.logbook_suspicion import Suspicion
+from engine.measurement.logbook.mapping import Mapping
+from engine.measurement.logbook.rows import Rejected, Remark
+from engine.measurement.logbook.suspicion import Suspicion
 from engine.steam.errors import Fault, InputError
 from engine.steam.quantities import QUANTITIES
 

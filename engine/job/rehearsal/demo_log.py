@@ -16,7 +16,7 @@ from engine.job.rehearsal.readings import basis_of, channels_of
 from engine.job.rehearsal.scenario import HiddenFault, Load, Scenario
 from engine.job.rehearsal.simulation import STEP, by_the_sheet, simulate
 from engine.job.rehearsal.valves import DEED_WORDS
-from engine.measurement.logbook_write import write_log
+from engine.measurement.logbook.write import write_log
 from engine.steam.errors import Fault, InputError
 
 WEIGHED_EVERY = 600.0  # s

@@ -15,7 +15,7 @@ from engine.job.result.result import Result
 from engine.job.result.said import headline, told, verdict_lines
 from engine.job.uncertainty import Check
 from engine.measurement import Budget, Verdict
-from engine.measurement.logbook_write import write_log
+from engine.measurement.logbook.write import write_log
 
 FORMAT = "steam quality result"
 

@@ -9,9 +9,9 @@ from typing import NamedTuple
 from engine.job.case import Case
 from engine.job.result.runs import recalled
 from engine.measurement.logbook import Log, fit_mapping, propose_mapping, read_log
-from engine.measurement.logbook_mapping import Column, Mapping
-from engine.measurement.logbook_suspicion import Suspicion
-from engine.measurement.logbook_text import source_of
+from engine.measurement.logbook.mapping import Column, Mapping
+from engine.measurement.logbook.suspicion import Suspicion
+from engine.measurement.logbook.text import source_of
 from engine.steam.errors import InputError
 
 

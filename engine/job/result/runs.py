@@ -11,7 +11,7 @@ from engine.job.case import ABSOLUTE, GAUGE, Case
 from engine.job.case.fields import FIELDS
 from engine.job.case.rows import Entry, Row
 from engine.measurement.logbook import Log
-from engine.measurement.logbook_mapping import Column, Mapping
+from engine.measurement.logbook.mapping import Column, Mapping
 from engine.steam.errors import Fault, InputError
 from engine.steam.units import to_si
 

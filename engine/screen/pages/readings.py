@@ -18,7 +18,7 @@ from engine.job.result.data import as_json, run_table, write_rows
 from engine.job.result.intake import mended
 from engine.job.result.said import check_lines, counted, decision_words, rule_text, run_rows, told, upper_first
 from engine.job.uncertainty.forecast_words import budget_rows
-from engine.measurement.logbook_words import CHANNELS
+from engine.measurement.logbook.words import CHANNELS
 from engine.screen import entries, live, log_columns, logs, run_view, session, typed
 from engine.screen.charts.decision import decision_diagram, draws_diagram
 from engine.screen.charts.forecast import budget_diagram

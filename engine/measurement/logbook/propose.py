@@ -14,11 +14,11 @@ from typing import NamedTuple
 
 import numpy as np
 
-from engine.measurement.logbook_mapping import Column, Mapping
-from engine.measurement.logbook_numbers import Signs, number_signs, plain_numbers, read_number
-from engine.measurement.logbook_text import refuse
-from engine.measurement.logbook_time import STAMPS, count_unit, date_order, text_unit
-from engine.measurement.logbook_words import CHANNELS, MEASURED, Found, recognise, unit_of
+from engine.measurement.logbook.mapping import Column, Mapping
+from engine.measurement.logbook.numbers import Signs, number_signs, plain_numbers, read_number
+from engine.measurement.logbook.text import refuse
+from engine.measurement.logbook.time import STAMPS, count_unit, date_order, text_unit
+from engine.measurement.logbook.words import CHANNELS, MEASURED, Found, recognise, unit_of
 
 HEADER_ROWS = 250  # how far down a heading is looked for
 LONGEST_HEADING = 80

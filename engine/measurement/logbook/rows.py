@@ -13,11 +13,11 @@ from typing import NamedTuple, TypeVar
 
 import numpy as np
 
-from engine.measurement.logbook_cells import Worked
-from engine.measurement.logbook_mapping import Column, Mapping
-from engine.measurement.logbook_table import Block
-from engine.measurement.logbook_time import OTHER_ZONE
-from engine.measurement.logbook_words import MEASURED
+from engine.measurement.logbook.cells import Worked
+from engine.measurement.logbook.mapping import Column, Mapping
+from engine.measurement.logbook.table import Block
+from engine.measurement.logbook.time import OTHER_ZONE
+from engine.measurement.logbook.words import MEASURED
 
 LISTED_PER_REASON = 200  # per column and reason; the totals go on
 LONGEST_CONTENT = 80

@@ -13,7 +13,7 @@ import unicodedata
 from dataclasses import dataclass
 from typing import NamedTuple
 
-from engine.measurement.logbook_time import TIME_UNITS
+from engine.measurement.logbook.time import TIME_UNITS
 from engine.steam.units import UNITS
 
 

@@ -12,9 +12,9 @@ import json
 from dataclasses import asdict, dataclass, field, fields, replace
 from typing import NamedTuple
 
-from engine.measurement.logbook_text import DELIMITERS, ENCODINGS
-from engine.measurement.logbook_time import DATE_ORDERS, STAMPS
-from engine.measurement.logbook_words import BASES, CHANNELS, MEASURED, units_of
+from engine.measurement.logbook.text import DELIMITERS, ENCODINGS
+from engine.measurement.logbook.time import DATE_ORDERS, STAMPS
+from engine.measurement.logbook.words import BASES, CHANNELS, MEASURED, units_of
 from engine.steam.errors import Fault, InputError
 
 SCHEMA = 1

@@ -20,8 +20,8 @@ from pathlib import Path
 
 import numpy as np
 
-from engine.measurement.logbook import Log
-from engine.measurement.logbook_words import BASES
+from engine.measurement.logbook.reading import Log
+from engine.measurement.logbook.words import BASES
 from engine.steam.arrays import at_the_door
 from engine.steam.errors import Fault, InputError
 from engine.steam.quantities import QUANTITIES

@@ -15,11 +15,11 @@ from contextlib import contextmanager
 
 import numpy as np
 
-from engine.measurement.logbook_mapping import Mapping
-from engine.measurement.logbook_propose import Layout, Proposal, Row, propose
-from engine.measurement.logbook_sheet_rows import Formats, sheet_rows
-from engine.measurement.logbook_table import TOO_MANY_CELLS, Block
-from engine.measurement.logbook_text import HEAD_BYTES, Source, refuse
+from engine.measurement.logbook.mapping import Mapping
+from engine.measurement.logbook.propose import Layout, Proposal, Row, propose
+from engine.measurement.logbook.sheet_rows import Formats, sheet_rows
+from engine.measurement.logbook.table import TOO_MANY_CELLS, Block
+from engine.measurement.logbook.text import HEAD_BYTES, Source, refuse
 from engine.steam.errors import InputError
 
 MOST_UNPACKED = 1 << 30  # bytes, all parts together

@@ -12,10 +12,10 @@ from typing import NamedTuple
 
 import numpy as np
 
-from engine.measurement.logbook_mapping import Column
-from engine.measurement.logbook_physics import physics_suspicions
-from engine.measurement.logbook_suspicion import Suspicion, ranges
-from engine.measurement.logbook_words import CHANNELS
+from engine.measurement.logbook.mapping import Column
+from engine.measurement.logbook.physics import physics_suspicions
+from engine.measurement.logbook.suspicion import Suspicion, ranges
+from engine.measurement.logbook.words import CHANNELS
 
 LEAST_STUCK = 30  # rows; fewer equal readings in a row are no news with a coarse gauge
 STUCK_FACTOR = 20  # times as long as the channel's usual run of equal readings

@@ -15,8 +15,8 @@ from typing import TYPE_CHECKING, NamedTuple
 
 import numpy as np
 
-from engine.measurement.logbook_mapping import Mapping, is_text
-from engine.measurement.logbook_text import TextBlock, split_rows
+from engine.measurement.logbook.mapping import Mapping, is_text
+from engine.measurement.logbook.text import TextBlock, split_rows
 
 if TYPE_CHECKING:
     import pandas as pd

@@ -10,8 +10,8 @@ from dataclasses import dataclass, field
 
 import numpy as np
 
-from engine.measurement.logbook_mapping import Column, Mapping, is_dated, is_text
-from engine.measurement.logbook_numbers import (
+from engine.measurement.logbook.mapping import Column, Mapping, is_dated, is_text
+from engine.measurement.logbook.numbers import (
     FORMULA,
     NO_VALUE,
     NO_VALUE_CODES,
@@ -20,9 +20,9 @@ from engine.measurement.logbook_numbers import (
     plain_numbers,
     read_number,
 )
-from engine.measurement.logbook_sheet_rows import UncomputedFormula
-from engine.measurement.logbook_table import Block, Words
-from engine.measurement.logbook_time import (
+from engine.measurement.logbook.sheet_rows import UncomputedFormula
+from engine.measurement.logbook.table import Block, Words
+from engine.measurement.logbook.time import (
     COUNTS,
     EMPTY_TIME,
     REASONS,
@@ -31,7 +31,7 @@ from engine.measurement.logbook_time import (
     from_objects,
     read_times,
 )
-from engine.measurement.logbook_words import CHANNELS, MEASURED, VACUUM_GAUGE, unit_of
+from engine.measurement.logbook.words import CHANNELS, MEASURED, VACUUM_GAUGE, unit_of
 from engine.steam.units import to_si
 
 IMPOSSIBLE = "outside what this channel can be"

@@ -14,7 +14,7 @@ from collections.abc import Callable, Iterable
 from functools import lru_cache
 from typing import NamedTuple
 
-from engine.measurement.logbook_words import unit_of
+from engine.measurement.logbook.words import unit_of
 
 # The reasons a numeric cell can be refused for; the words are the ones a user reads.
 NOT_A_NUMBER = "not a number"

@@ -14,15 +14,15 @@ from dataclasses import dataclass, field, replace
 import numpy as np
 
 from engine.measurement.given import whole
-from engine.measurement.logbook_cells import Worked, work
-from engine.measurement.logbook_checks import Checked, suspicions
-from engine.measurement.logbook_mapping import Mapping, is_dated, refuse_open
-from engine.measurement.logbook_propose import Layout, Proposal, named_channels, propose
-from engine.measurement.logbook_rows import Collector, Rejected, Remark, Rows, in_order
-from engine.measurement.logbook_sheet import check_archive, is_workbook, propose_sheet, sheet_table
-from engine.measurement.logbook_suspicion import Suspicion, ranges
-from engine.measurement.logbook_table import Words, parse
-from engine.measurement.logbook_text import (
+from engine.measurement.logbook.cells import Worked, work
+from engine.measurement.logbook.checks import Checked, suspicions
+from engine.measurement.logbook.mapping import Mapping, is_dated, refuse_open
+from engine.measurement.logbook.propose import Layout, Proposal, named_channels, propose
+from engine.measurement.logbook.rows import Collector, Rejected, Remark, Rows, in_order
+from engine.measurement.logbook.sheet import check_archive, is_workbook, propose_sheet, sheet_table
+from engine.measurement.logbook.suspicion import Suspicion, ranges
+from engine.measurement.logbook.table import Words, parse
+from engine.measurement.logbook.text import (
     DELIMITERS,
     ENCODINGS,
     Source,
@@ -34,7 +34,7 @@ from engine.measurement.logbook_text import (
     split_rows,
     text_blocks,
 )
-from engine.measurement.logbook_words import CHANNELS, PRESSURES
+from engine.measurement.logbook.words import CHANNELS, PRESSURES
 from engine.steam.arrays import at_the_door, refuse_outside, shortened
 from engine.steam.errors import Fault, InputError
 from engine.steam.units import absolute_from_gauge

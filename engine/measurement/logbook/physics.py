@@ -10,9 +10,9 @@ from __future__ import annotations
 
 import numpy as np
 
-from engine.measurement.logbook_mapping import Column
-from engine.measurement.logbook_suspicion import Suspicion, ranges
-from engine.measurement.logbook_words import CHANNELS
+from engine.measurement.logbook.mapping import Column
+from engine.measurement.logbook.suspicion import Suspicion, ranges
+from engine.measurement.logbook.words import CHANNELS
 from engine.steam import P_SAT_MAX, P_TRIPLE, saturation_temperature
 from engine.steam.units import P_STANDARD, UNITS, from_si, to_si
 
