@@ -19,7 +19,8 @@ from engine.job.rig import assess_rig
 from engine.job.rig.tables import effect_rows
 from engine.job.runsheet import run_sheet
 from engine.job.runsheet.print import runsheet_html
-from engine.job.uncertainty import forecast
+from engine.job.uncertainty import forecast, forecast_or_why
+from engine.job.uncertainty.answer_with import answer_with
 from engine.steam.units import SI, US
 from tests.contract import arrays, call, parts, profile
 from tests.job.any_case import cases
@@ -38,7 +39,8 @@ def recorded(case, units):
 
 # what is made of a case, and how many of the long run's examples it is given
 OF_A_CASE = {resolve: 1.0, assess: 1.0, assess_reach: 0.3, assess_rig: 0.3, forecast: 0.3, typed: 0.3, run_sheet: 0.3}
-WITH_UNITS = {lambda case, units: said(assess_reach(case), units): 0.2,
+WITH_UNITS = {lambda case, units: answer_with(forecast_or_why(case, assess(case)), units).headline: 0.3,
+              lambda case, units: said(assess_reach(case), units): 0.2,
               lambda case, units: effect_rows(assess_rig(case), units): 0.2,
               lambda case, units: runsheet_html(case, units, "A4"): 0.2,
               recorded: 0.2,
