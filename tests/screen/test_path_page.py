@@ -24,6 +24,7 @@ HOSTILE = "**bold** <script>alert(1)</script> [a](http://b.example) ![i](http://
 def opened(case=None, word=None):
     """The page as a first visit, or a link, shows it."""
     app = AppTest.from_file(APP, default_timeout=60)
+    app.session_state["assumed"] = True
     if case is not None or word is not None:
         app.query_params["case"] = word if word is not None else to_link(case)
     app.run()
@@ -146,6 +147,13 @@ def test_cautions_have_their_place(first):
 
 def test_nothing_on_the_page_says_nan_or_none(first):
     assert not {"nan", "None", "none", "inf"} & set(everything(first).replace(".", " ").replace(",", " ").split())
+
+
+def test_what_the_answer_takes_for_granted_is_drawn_once_it_is_opened():
+    app = AppTest.from_file(APP, default_timeout=60).run()
+    assert not [n for n in app.number_input if "leg_height" in n.key]
+    app.session_state["assumed"] = True
+    assert app.run().number_input(key="exact leg_height m").value == 0.8
 
 
 # ---- inputs

@@ -75,8 +75,12 @@ def _inputs() -> None:
 
 
 def _assumed() -> None:
+    box = st.expander("What the answer takes for granted: barometer, water leg, heat loss, velocities, limits",
+                      key="assumed", on_change="rerun")
+    if not box.open:  # fifteen entries that nobody sees would be a fifth of every step of a slider
+        return
     case = session.case()
-    with st.expander("What the answer takes for granted: barometer, water leg, heat loss, velocities, limits"):
+    with box:
         site, loss, speed, limits = st.columns(4, gap="medium")
     with site:
         entries.choice("barometer_source", {BY_ALTITUDE: "From the altitude", "reading": "As read"})
