@@ -22,7 +22,7 @@ from typing import NamedTuple
 
 import numpy as np
 
-from engine.calorimeter.rig_inputs import admit, choose, require
+from engine.calorimeter.rig_inputs import admit, choose, require, require_error
 from engine.steam.arrays import give_back
 
 STEFAN_BOLTZMANN = 5.670374419e-8  # W/(m² K⁴), CODATA 2018 (exact in the SI since 2019)
@@ -116,7 +116,7 @@ def immersion_for(temperature_error, T_exhaust, T_head, outer_diameter, inner_di
     (e, T, T_h, D, d, a, k), scalar = admit(
         temperature_error=temperature_error, T_exhaust=T_exhaust, T_head=T_head, outer_diameter=outer_diameter,
         inner_diameter=inner_diameter, film=film, conductivity=conductivity)
-    require("temperature_error", e, e > 0, "more than 0 K", hint="give the size of the error, without sign")
+    require_error(e)
     require("inner_diameter", d, d < D, "less than the outer diameter", hint="0 for a solid rod")
     ratio = np.maximum(np.abs(T - T_h) / e, 1.0)
     return give_back(np.arccosh(ratio) / np.sqrt(4 * a * D / (k * (D * D - d * d))), scalar)
@@ -177,7 +177,7 @@ def settling_time(step, temperature_error, time_constant):
     7.0
     """
     (step, e, tau), scalar = admit(step=step, temperature_error=temperature_error, time_constant=time_constant)
-    require("temperature_error", e, e > 0, "more than 0 K", hint="give the size of the error, without sign")
+    require_error(e)
     return give_back(tau * np.log(np.maximum(np.abs(step) / e, 1.0)), scalar)
 
 

@@ -20,7 +20,7 @@ from typing import NamedTuple
 
 import numpy as np
 
-from engine.calorimeter.rig_inputs import admit, require
+from engine.calorimeter.rig_inputs import admit, require, require_error
 from engine.steam import saturated, vapour
 from engine.steam.arrays import at_the_door, give_back
 
@@ -168,7 +168,7 @@ def time_to_within(run: WarmUp, temperature_error):
     34.7
     """
     (error, T_steady), scalar = _with_run(run, temperature_error, name="temperature_error")
-    require("temperature_error", error, error > 0, "more than 0 K", hint="give the size of the error, without sign")
+    require_error(error)
     short = np.abs(run.effectiveness * (T_steady - run.stages[2].T))
     return give_back(run.time_condensing + run.time_constant * np.log(np.maximum(short / error, 1.0)), scalar)
 
