@@ -148,7 +148,8 @@ def require(name: str, values: np.ndarray, inside: np.ndarray, limit: str, *, wh
 
 def require_error(size: np.ndarray) -> None:
     """InputError where the size of an error [K] is none, or so small that nothing can be compared with it."""
-    require("temperature_error", size, size >= 1e-12, "1e-12 K or more", hint="give the size of the error, without sign")
+    require("temperature_error", size, size >= 1e-12, "1e-12 K or more",
+            hint="give the size of the error, without sign")
 
 
 def gather(*checks: Callable[[], object]) -> None:
