@@ -116,7 +116,7 @@ def form_fault(field: Field, value: Value) -> Fault | None:
     if field.form == TABLE:
         fits, limit = _is_table(field, value), f"a table of at most {field.most} rows"
     elif field.form == CHOICE:
-        fits, limit = value in field.options, "one of: " + ", ".join(field.options)
+        fits, limit = isinstance(value, str) and value in field.options, "one of: " + ", ".join(field.options)
     elif field.form == TEXT:
         fits, limit = isinstance(value, str), "text"
     elif value is None:
@@ -129,7 +129,7 @@ def form_fault(field: Field, value: Value) -> Fault | None:
         return Fault(f"unit of {label}", _given(value.unit), "", "one of: " + ", ".join(UNITS[field.kind]),
                      name=field.name)
     else:
-        fits = value.basis in (BASES if field.kind == "pressure" else ("",))
+        fits = isinstance(value.basis, str) and value.basis in (BASES if field.kind == "pressure" else ("",))
         limit = " or ".join(BASES) if field.kind == "pressure" else "none"
         return None if fits else Fault(f"basis of {label}", _given(value.basis), "", limit, name=field.name)
     return None if fits else Fault(field.label, _given(value), "", limit, name=field.name)
@@ -146,7 +146,7 @@ def _is_table(field: Field, value: object) -> bool:
 
 
 def _given(value: object) -> str:
-    if value is None or value == "":
+    if value is None or (isinstance(value, str) and not value):
         return "nothing"
     return value[:120] if isinstance(value, str) else shortened(value)
 
@@ -162,7 +162,7 @@ def slots(case: Case) -> dict[str, tuple[Field, Value]]:
     """Everything entered by its place, down to the cells of the tables, with the field that rules it."""
     found = {name: (field, case[name]) for name, field in FIELDS.items()}
     for name, field in FIELDS.items():
-        if field.form == TABLE and case[name] and _is_table(field, case[name]):
+        if field.form == TABLE and _is_table(field, case[name]):
             for number, row in enumerate(case[name], 1):
                 found |= {cell.name: (cell, value)
                           for cell, (_, value) in zip(_cells(name, number), row.cells, strict=True)}
