@@ -140,6 +140,7 @@ def test_an_outlier_leaves_only_with_a_reason(readings):
     confirm(page)
     says(page, r"Quality 0\.97")
     rows = page.get_by_role("combobox", name=re.compile("Rows left out"))
+    page.get_by_text(re.compile(r"draws: mean")).first.wait_for()  # the last that a run of the page says
     settle(page)
     rows.press("ArrowDown")
     page.get_by_role("option", name="row 202").click()
