@@ -270,16 +270,24 @@ def reach_map(p_line, p_exhaust, superheat=5.0, *, heat_loss=0.0, line_velocity=
     rows, _ = door(p_line=P_SAT_MAX, p_exhaust=p_exhaust[:, None], least_superheat=superheat, heat_loss=heat_loss,
                    line_velocity=line_velocity, exhaust_velocity=exhaust_velocity, recovery=recovery)
     gather(lambda: refuse(line), lambda: refuse(rows))
+    shape, others = (p_exhaust.size, line["p_line"].size), rows["p_exhaust"].shape
+    if not _fits(others, shape):
+        raise InputError(Fault("array shapes", f"{others} of all arguments but the line pressures", "",
+                               f"{shape} of the two axes, or what broadcasts to it"))
 
     needed, = in_blocks(lambda *values: (_needed(dict(zip(rows, values, strict=True))),), 1, *rows.values())
     _, h_f, h_g = in_blocks(saturation_enthalpies, 3, line["p_line"])
     x_least = (needed - h_f) / (h_g - h_f)
-    shape = (p_exhaust.size, line["p_line"].size)
-    if x_least.shape != shape:
-        raise InputError(Fault("array shapes", f"{x_least.shape} of all arguments together", "",
-                               f"{shape} of the two axes, or what broadcasts to it"))
     flows = p_exhaust[:, None] < line["p_line"]
     status = np.select([~flows, x_least > 1.0], [Status.OUT_OF_RANGE, Status.NOT_SUPERHEATED],
                        Status.OK).astype(np.int8)
     wetness = np.where(status == Status.OK, np.clip(1.0 - x_least, 0.0, 1.0), 0.0)
     return ReachMap(line["p_line"].copy(), p_exhaust.copy(), wetness, status)
+
+
+def _fits(shape: tuple[int, ...], whole: tuple[int, ...]) -> bool:
+    """Whether an array of one shape broadcasts to another."""
+    try:
+        return np.broadcast_shapes(shape, whole) == whole
+    except ValueError:
+        return False

@@ -47,7 +47,10 @@ def reasons(status) -> list[tuple[Status, str, int, np.ndarray]]:
     >>> [(kind.name, count) for kind, _, count, _ in reasons([0, 2, 2, 5])]
     [('OK', 1), ('NOT_SUPERHEATED', 2), ('MISSING', 1)]
     """
-    flat = np.asarray(status).ravel()
+    try:
+        flat = np.asarray(status).ravel()
+    except ValueError:  # lists of different lengths
+        flat = np.array([None])
     if not np.isin(flat, list(Status)).all():
         raise InputError(Fault("status", shortened(status), "", "statuses of readings, 0 to 5"))
     rows = []

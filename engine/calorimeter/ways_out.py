@@ -87,11 +87,16 @@ def ways_out(p_line, p_exhaust, x, *, superheat=5.0, sample_flow, U_quality=1e-3
     terms = {"heat_loss": heat_loss, "line_velocity": line_velocity, "exhaust_velocity": exhaust_velocity,
              "recovery": recovery}
     named, scalar = door(p_line=p_line, p_exhaust=p_exhaust, x=x, least_superheat=superheat, **terms)
-    if not scalar:
+    single = [scalar]
+
+    def admitted(**given) -> None:
+        single.append(admit(**given)[1])
+
+    gather(lambda: refuse(named), lambda: admitted(sample_flow=sample_flow, water_share=water_share),
+           lambda: admitted(U_quality=U_quality), lambda: admitted(p_exhaust_lowest=p_exhaust_lowest))
+    if not all(single):
         raise InputError(Fault("ways out", "arrays", "", "single values", "they are ranked for one case",
                                "call it once for each"))
-    gather(lambda: refuse(named), lambda: admit(sample_flow=sample_flow, water_share=water_share),
-           lambda: admit(U_quality=U_quality), lambda: admit(p_exhaust_lowest=p_exhaust_lowest))
     wetness = 1.0 - x
     other = WayOut(WayKind.OTHER, True, {"wetness": wetness, "U_quality": U_quality})
     indistinct = wetness <= U_quality
