@@ -57,10 +57,6 @@ def confirm(page):
     settle(page)
 
 
-def case_word(page):
-    return page.evaluate("() => new URLSearchParams(location.search).get('case')")
-
-
 def pick(page, menu, name):
     """Choose from a menu; one that closes because the page is still being drawn is opened again."""
     option = page.get_by_role("option", name=name)
@@ -187,17 +183,15 @@ def test_sets_are_typed_into_the_grid_with_a_decimal_comma(readings):
     grid = page.get_by_test_id("stDataFrame").first
     grid.wait_for()
     settle(page)
-    page.wait_for_timeout(500)  # the grid is painted some frames after it is there
-    box = grid.bounding_box()  # cells are painted: they are found by their place
-    before = case_word(page)
     for number, text in enumerate(("121,0", "121,2", "121,1")):
+        page.wait_for_timeout(1500)  # the grid is painted some frames after it is there
+        box = grid.bounding_box()  # cells are painted: they are found by their place
         page.mouse.click(box["x"] + 660, box["y"] + 35 + 17 + 35 * number)
         page.keyboard.type(text, delay=150)
         page.keyboard.press("Enter")
-        page.wait_for_function("""n => new URLSearchParams(location.search).get('case') !== n""", arg=before)
-        before = case_word(page)
+        page.get_by_text(f"{number + 1} set").first.wait_for()
+        page.get_by_text("draws: mean").first.wait_for()
         settle(page)
-        page.wait_for_timeout(500)
     says(page, r"Quality 0\.97")
     page.get_by_text("3 sets of readings").wait_for()
     page.get_by_role("button", name="Undo").click()
