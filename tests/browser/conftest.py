@@ -34,6 +34,7 @@ def pytest_collection_modifyitems(items: list[pytest.Item]) -> None:
     for item in items:
         if HERE in item.path.parents:
             item.add_marker("browser")
+            item.add_marker(pytest.mark.flaky(reruns=1))  # a busy machine may be late once; -rR tells of each such case
 
 
 @contextmanager
