@@ -187,3 +187,18 @@ def turn_to(page, name: str) -> None:
 def settle(page) -> None:
     """Wait until the script has run and its page stands."""
     page.wait_for_selector("[data-testid=stApp][data-test-script-state=notRunning]")
+
+
+def pick(page, menu, name) -> None:
+    """Choose from a menu; one that closes because the page is still being drawn is opened again."""
+    from playwright.sync_api import TimeoutError  # there is a page, so there is the package
+
+    option = page.get_by_role("option", name=name, exact=True)
+    for _ in range(10):
+        menu.press("ArrowDown")
+        try:
+            option.click(timeout=4000)
+            return
+        except TimeoutError:
+            page.keyboard.press("Escape")
+    raise AssertionError(f"{name} is not offered")

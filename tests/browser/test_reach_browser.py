@@ -3,7 +3,7 @@
 import re
 
 import pytest
-from conftest import settle
+from conftest import pick, settle
 
 from engine.job.case.casefile import from_link, to_link
 from engine.job.case.examples import BOILER_OUTLET, HEATING_STEAM, WET_LINE
@@ -124,8 +124,7 @@ def test_heating_steam_wants_a_condenser(plan):
 def test_examples_are_chosen_from_the_case_bar(plan):
     page = plan(BOILER_OUTLET)
     page.get_by_role("button", name="Case").click()
-    page.get_by_role("combobox", name="Invented examples").click()
-    page.get_by_role("option", name="Plant at 2600 m").click()
+    pick(page, page.get_by_role("combobox", name="Invented examples"), "Plant at 2600 m")
     headline(page, "thinly where it is wettest")
 
 

@@ -5,8 +5,7 @@ import re
 
 import numpy as np
 import pytest
-from conftest import settle
-from playwright.sync_api import TimeoutError
+from conftest import pick, settle
 
 from engine.job.case.casefile import to_link
 from engine.job.case.demo import DEMO
@@ -55,18 +54,6 @@ def bring(page, name, data):
 def confirm(page):
     page.get_by_role("button", name="Read with these columns").first.click()
     settle(page)
-
-
-def pick(page, menu, name):
-    """Choose from a menu; one that closes because the page is still being drawn is opened again."""
-    option = page.get_by_role("option", name=name)
-    for _ in range(10):
-        menu.press("ArrowDown")
-        try:
-            return option.click(timeout=4000)
-        except TimeoutError:
-            page.keyboard.press("Escape")
-    raise AssertionError(f"{name} is not offered")
 
 
 def headline(page):
@@ -172,8 +159,7 @@ def test_the_heat_loss_must_be_decided_first(readings):
     confirm(page)
     says(page, "No quality can be given from these readings")
     page.get_by_text("The heat loss has not been decided").first.wait_for()
-    page.get_by_role("combobox", name=re.compile("Heat loss")).click()
-    page.get_by_role("option", name="Knowingly none").click()
+    pick(page, page.get_by_role("combobox", name=re.compile("Heat loss")), "Knowingly none")
     says(page, r"Quality 0\.971")
 
 

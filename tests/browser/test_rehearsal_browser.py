@@ -6,7 +6,7 @@ import re
 from pathlib import Path
 
 import pytest
-from conftest import PATIENCE, served, settle
+from conftest import PATIENCE, pick, served, settle
 
 from engine.job.case.demo import DEMO
 from engine.job.commands.rehearse import by_the_book
@@ -82,8 +82,7 @@ def test_a_rehearsal_from_cold_to_the_verdict_on_a_tablet(rehearsal):
     from playwright.sync_api import expect  # only where there is a browser
     page.get_by_role("button", name="Take over").click()
     expect(page.get_by_label("Quality of the line")).to_have_value(re.compile(r"0\.9\d+"), timeout=PATIENCE)
-    page.get_by_role("combobox", name="What is wrong with the rig?").click()
-    page.get_by_role("option", name="Wet lagging").click()
+    pick(page, page.get_by_role("combobox", name="What is wrong with the rig?"), "Wet lagging")
     page.keyboard.press("Escape")
     press(page, "State it, and see the truth")
     verdict = page.locator(".st-key-rehearsal-verdict")

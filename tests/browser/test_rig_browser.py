@@ -5,7 +5,7 @@ from __future__ import annotations
 import re
 
 import pytest
-from conftest import settle
+from conftest import pick, settle
 
 from engine.job.case.casefile import to_link
 from engine.job.case.demo import DEMO
@@ -56,8 +56,7 @@ def shows(page, label, text):
 
 
 def choose(page, label, option):
-    page.get_by_role("combobox", name=re.compile(f"^{label}|{label}")).first.click()
-    page.get_by_role("option", name=option, exact=True).click()
+    pick(page, page.get_by_role("combobox", name=re.compile(f"^{label}|{label}")).first, option)
 
 
 def sideways(page):
