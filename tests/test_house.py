@@ -153,4 +153,4 @@ def test_the_files_speak_of_the_product_only():
 def test_such_words_are_found_and_ordinary_ones_are_not():
     assert WORDS.search(codecs.decode("nf va gur Yrpgher", "rot13"))
     assert WORDS.search(codecs.decode("frr /jbex/abgrf", "rot13"))
-    assert not WORDS.search("of course, a network/patchwork, the course of a warm-up")
+    assert not WORDS.search(codecs.decode("bs pbhefr, n argjbex/cngpujbex, gur pbhefr bs n jnez-hc", "rot13"))

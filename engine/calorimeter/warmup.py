@@ -73,7 +73,7 @@ def body_heat_capacity(mass, *, cp=STEEL_SPECIFIC_HEAT):
 
 def warm_up(heat_capacity, area, sample_flow, p_exhaust, T_exhaust, T_start, T_ambient, *, film=100.0,
             conductance=0.0, condensing_film=CONDENSING_FILM) -> WarmUp:
-    """The course of a warm-up, for ``body_temperature``, ``reading_error`` and ``time_to_within``.
+    """A warm-up from start to end, for ``body_temperature``, ``reading_error`` and ``time_to_within``.
 
     ``heat_capacity`` [J/K] and steam-side ``area`` [m²] of the body, ``sample_flow`` [kg/s],
     ``p_exhaust`` [Pa], ``T_exhaust`` of the steam as it enters the body [K], ``T_start`` of the body

@@ -112,3 +112,14 @@ def words(name: str, *, area: bool = False) -> None:
     widget = st.text_area if area else st.text_input
     widget(FIELDS[name].label, key=key, max_chars=4000 if area else 200,
            on_change=session.callback(name, key, lambda v: v))
+
+
+def who_and_where():
+    """Place, permit, people and instruments in two columns; gives the right one, which has room for more."""
+    left, right = st.columns(2, gap="medium")
+    with left:
+        for name in ("place", "permit", "tested_by", "witnessed_by"):
+            words(name)
+    with right:
+        words("instrument_list", area=True)
+    return right

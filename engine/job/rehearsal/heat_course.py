@@ -49,7 +49,7 @@ def due_of(rig: Rig, p, x, flow, p2) -> Due:
 
 @dataclass(frozen=True)
 class Middles:
-    """What the course of the body rests on, one element per piece: the rig at its mean line pressure.
+    """What the heat of the body over time rests on, one element per piece: the rig at its mean line pressure.
 
     ``T_in`` [K] of the steam as it enters the body; ``wall`` [W/K] from metal to surroundings; ``follows`` kelvin
     by which a warm body moves with one of its exhaust; ``warms`` where it gets above saturation at all.

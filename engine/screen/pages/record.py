@@ -75,14 +75,8 @@ def _refuse(faults: tuple[Fault, ...]) -> None:
 
 
 def _by_hand() -> None:
-    with st.expander("Where, who, and what was done otherwise"):
-        left, right = st.columns(2, gap="medium")
-        with left:
-            for name in ("place", "permit", "tested_by", "witnessed_by"):
-                entries.words(name)
-        with right:
-            entries.words("instrument_list", area=True)
-            entries.words("deviations", area=True)
+    with st.expander("Where, who, and what was done otherwise"), entries.who_and_where():
+        entries.words("deviations", area=True)
 
 
 def _preview(facts: Facts) -> None:

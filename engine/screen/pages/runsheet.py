@@ -113,12 +113,7 @@ def _sheet(place) -> RunSheet | None:
 
 def _about() -> None:
     with st.expander("Where, who, how many readings"):
-        left, right = st.columns(2, gap="medium")
-        with left:
-            for name in ("place", "permit", "tested_by", "witnessed_by"):
-                entries.words(name)
-        with right:
-            entries.words("instrument_list", area=True)
+        with entries.who_and_where():
             entries.choice("gas_hazard", {GAS_NONE: "None noted", GAS_NOTED: "Toxic or suffocating gas possible"})
             for name, step in (("runs_planned", 1.0), ("read_every", 0.5), ("duration", 5.0)):
                 entries.number(name, step=step)
